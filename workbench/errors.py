@@ -1,0 +1,57 @@
+"""What can be wrong with an input, said so that it can be mended.
+
+A `Problem` is one fault in something the user gave; `InputError` carries all the faults found at once.
+A `Caution` is something worth knowing about a result that stands.
+"""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class Problem:
+    """One fault in an input: what, where, found, expected, and an action that works."""
+
+    what: str
+    where: str
+    found: str
+    expected: str
+    remedy: str
+
+    def text(self) -> str:
+        """Return the block of lines that the terminal prints and a control shows."""
+        return (
+            f"{self.what}\n"
+            f"  where     {self.where}\n"
+            f"  found     {self.found}\n"
+            f"  expected  {self.expected}\n"
+            f"  try       {self.remedy}"
+        )
+
+
+class InputError(Exception):
+    """Everything that is wrong with one input, told at once."""
+
+    def __init__(self, *problems: Problem) -> None:
+        self.problems = problems
+        super().__init__("\n\n".join(problem.text() for problem in problems))
+
+
+@dataclass(frozen=True, slots=True)
+class Caution:
+    """Something worth knowing about a result that stands: a short code and a sentence."""
+
+    code: str
+    text: str
+
+
+def nearest(word: str, known: Iterable[str]) -> str:
+    """Return a sentence naming the known word nearest to a misspelt one, or all of them."""
+    choices = sorted(known)
+    close = difflib.get_close_matches(word, choices, n=1, cutoff=0.6)
+    if close:
+        return f"write {close[0]!r}"
+    return "use one of: " + ", ".join(choices) if choices else "leave it out"
