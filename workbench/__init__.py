@@ -1,0 +1,69 @@
+"""Posterior odds for signal against background in binned event counts.
+
+Everything public is reachable from here and imported on first use, so that `import workbench` stays light:
+
+    import workbench as wb
+    analysis = wb.read_analysis("skerry.toml")
+"""
+
+from __future__ import annotations
+
+import importlib
+from typing import Any
+
+__version__ = "0.1.0"
+
+_HOMES: dict[str, tuple[str, ...]] = {
+    "workbench.errors": ("Caution", "InputError", "Problem"),
+    "workbench.counts.binning": ("Binning",),
+    "workbench.counts.csv_table": ("read_csv_table",),
+    "workbench.counts.region": ("Region",),
+    "workbench.counts.table": ("Table",),
+    "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
+    "workbench.hypotheses.priors": (
+        "Beta",
+        "Exponential",
+        "Fixed",
+        "Gamma",
+        "HalfNormal",
+        "LogNormal",
+        "LogUniform",
+        "Normal",
+        "Uniform",
+    ),
+    "workbench.hypotheses.processes": ("Contribution", "Process"),
+    "workbench.hypotheses.quantities": ("Curve",),
+    "workbench.hypotheses.reading": ("read_analysis",),
+    "workbench.hypotheses.shapes": (
+        "Bernstein",
+        "BreitWigner",
+        "CrystalBall",
+        "Falling",
+        "Flat",
+        "Gaussian",
+        "PowerLaw",
+        "Template",
+        "Templates",
+        "Voigt",
+    ),
+    "workbench.hypotheses.uncertainties": ("Effect", "Uncertainty"),
+    "workbench.hypotheses.writing": ("write_analysis",),
+}
+_HOME_OF = {name: home for home, names in _HOMES.items() for name in names}
+
+__all__ = sorted(_HOME_OF)  # noqa: PLE0605 -- one list of names, not two that drift apart
+
+
+def __getattr__(name: str) -> Any:
+    """Import a public name from its home on first use."""
+    home = _HOME_OF.get(name)
+    if home is None:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    value = getattr(importlib.import_module(home), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    """List the public names, imported or not."""
+    return [*__all__, "__version__"]

@@ -1,0 +1,1 @@
+"""Commands: the command line, one subcommand a file."""

@@ -1,0 +1,1 @@
+"""Counts: binning, tables, regions; one reader a format."""

@@ -1,0 +1,1 @@
+"""Ensembles: pseudo-experiments drawn and run, adequacy, following, forecasting, calibration."""

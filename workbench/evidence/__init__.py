@@ -1,0 +1,1 @@
+"""Evidence: the integral and its estimators, odds, prior sensitivity, intervals, significance."""

@@ -1,0 +1,1 @@
+"""Hypotheses: priors, parameters, shapes, uncertainties, processes, the analysis and its file."""

@@ -1,0 +1,1 @@
+"""Likelihood: expected counts with derivatives, the log likelihood, fits, profiles, pulls and impacts."""

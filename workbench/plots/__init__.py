@@ -1,0 +1,1 @@
+"""Plots: results and axes in, marks out."""

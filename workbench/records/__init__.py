@@ -1,0 +1,1 @@
+"""Records: results with digests, saved, rerun, sealed, reported."""

@@ -1,0 +1,1 @@
+"""Widgets: the bench's state, actions, bindings, panels and arrangement."""
