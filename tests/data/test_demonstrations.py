@@ -1,0 +1,50 @@
+"""The demonstrations in data/ are what their script makes, byte by byte."""
+
+from __future__ import annotations
+
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+DATA = Path(__file__).parents[2] / "data"
+MADE = (
+    "skerry/skerry-peak.csv",
+    "skerry/skerry-fixed-mass.toml",
+    "skerry/counts.csv",
+    "tarn/tarn-line.csv",
+    "tarn/tarn-sideband.csv",
+    "sorrel/sorrel-signal.csv",
+    "sorrel/sorrel-control.csv",
+)
+
+
+@pytest.fixture(scope="module")
+def remade(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("data")
+    subprocess.run([sys.executable, DATA / "make.py", folder], check=True)
+    return folder
+
+
+@pytest.mark.parametrize("name", MADE)
+def test_the_script_makes_the_same_bytes_again(remade: Path, name: str) -> None:
+    assert (remade / name).read_bytes() == (DATA / name).read_bytes()
+
+
+def test_the_script_makes_nothing_else(remade: Path) -> None:
+    made = {path.relative_to(remade).as_posix() for path in remade.rglob("*") if path.is_file()}
+    assert made == set(MADE)
+
+
+def test_every_table_in_the_folders_is_made_by_the_script() -> None:
+    tables = {path.relative_to(DATA).as_posix() for path in DATA.rglob("*.csv")}
+    assert tables == {name for name in MADE if name.endswith(".csv")}
+
+
+@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel"])
+def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
+    text = (DATA / folder / "README.md").read_text(encoding="utf-8")
+    before, after = text.split("\n## The truth behind it\n")
+    assert "seed" in before
+    assert "\n## " not in after
