@@ -133,7 +133,7 @@ def make_tarn(folder: Path) -> None:
     truth = np.concatenate([3.1 / 20.0 + 0.8 * surface, 3.1 * np.array([2.0, 2.0]) + 0.8 * side_surface])
     observed = drawn(SEEDS["tarn"], truth)
     write_table(folder / "tarn-line.csv", low, high, {"observed": observed[:20], "surface": surface})
-    sideband = {"observed": observed[20:], "surface": side_surface}
+    sideband: dict[str, npt.ArrayLike] = {"observed": observed[20:], "surface": side_surface}
     write_table(folder / "tarn-sideband.csv", side_low, side_high, sideband)
 
 
