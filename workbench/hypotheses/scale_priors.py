@@ -1,0 +1,298 @@
+"""Priors on positive numbers: exponential, half-normal, log-normal, gamma."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field, replace
+from typing import ClassVar, Self
+
+import numpy as np
+import numpy.typing as npt
+from scipy import special
+
+from workbench.hypotheses.prior_family import (
+    LN_SQRT_TWO_PI,
+    ROOT_TWO,
+    SERIES_BELOW,
+    TAIL_KNOWN,
+    TINY,
+    Array,
+    ContinuousPrior,
+    Derivatives,
+    Moments,
+    as_array,
+    normal_density,
+    numbers_faults,
+    positive_fault,
+    refuse,
+    standard_from_ln_tails,
+    standard_from_tails,
+)
+
+LN_TWO = float(np.log(2.0))
+
+
+def _hazard(t: Array) -> Array:
+    """Return phi(t)/Phi(-t), finite everywhere."""
+    upper = np.sqrt(2.0 / np.pi) / special.erfcx(np.maximum(t, 0.0) / ROOT_TWO)
+    lower: Array = normal_density(t) / special.ndtr(-np.minimum(t, 0.0))
+    return np.where(t > 0.0, upper, lower)
+
+
+class PositivePrior(ContinuousPrior):
+    """A prior on the numbers above 0."""
+
+    __slots__ = ()
+
+    @property
+    def support(self) -> tuple[float, float]:
+        """Return 0 and infinity."""
+        return (0.0, float("inf"))
+
+
+@dataclass(frozen=True, slots=True)
+class Exponential(PositivePrior):
+    """Exponential with a mean."""
+
+    family: ClassVar[str] = "exponential"
+    mean: float = field()  # field() keeps the inherited property from being its default
+
+    def __post_init__(self) -> None:
+        refuse(self.family, *numbers_faults(mean=self.mean), positive_fault("mean", self.mean))
+
+    @property
+    def moments(self) -> Moments:
+        """Return the mean twice."""
+        return Moments(self.mean, self.mean)
+
+    def from_standard(self, t: npt.ArrayLike) -> Derivatives:
+        """Return x = -mean ln Phi(-t) with derivatives."""
+        u = as_array(t)
+        hazard = _hazard(u)
+        return Derivatives(
+            -self.mean * special.log_ndtr(-u), self.mean * hazard, self.mean * hazard * (hazard - u)
+        )
+
+    def to_standard(self, x: npt.ArrayLike) -> Array:
+        """Return t of x."""
+        reach = np.maximum(as_array(x) / self.mean, 0.0)
+        with np.errstate(divide="ignore"):
+            return standard_from_ln_tails(np.log(-np.expm1(-reach)), -reach)
+
+    def ln_density(self, x: npt.ArrayLike) -> Array:
+        """Return -x/mean - ln mean."""
+        place = as_array(x)
+        return np.where(place >= 0.0, -place / self.mean - np.log(self.mean), -np.inf)
+
+    def fit_penalty(self, x: npt.ArrayLike) -> Derivatives:
+        """Return -x/mean."""
+        place = as_array(x)
+        zero = np.zeros(place.shape)
+        return Derivatives(-place / self.mean, zero - 1.0 / self.mean, zero)
+
+    def scaled(self, factor: float) -> Self | None:
+        """Return the exponential with its mean scaled."""
+        return replace(self, mean=factor * self.mean)
+
+    def text(self) -> str:
+        """Return the prior in words."""
+        return f"exponential with mean {self.mean:g}"
+
+
+@dataclass(frozen=True, slots=True)
+class HalfNormal(PositivePrior):
+    """The positive half of a normal around 0; sd is that of the whole normal."""
+
+    family: ClassVar[str] = "halfnormal"
+    sd: float = field()
+
+    def __post_init__(self) -> None:
+        refuse(self.family, *numbers_faults(sd=self.sd), positive_fault("sd", self.sd))
+
+    @property
+    def moments(self) -> Moments:
+        """Return sd sqrt(2/pi) and sd sqrt(1 - 2/pi)."""
+        part = 2.0 / float(np.pi)
+        return Moments(self.sd * part**0.5, self.sd * (1.0 - part) ** 0.5)
+
+    def from_standard(self, t: npt.ArrayLike) -> Derivatives:
+        """Return x = sd u, where 2 Phi(u) - 1 = Phi(t), with derivatives."""
+        t = as_array(t)
+        below = ROOT_TWO * special.erfinv(special.ndtr(np.minimum(t, 0.0)))
+        above = -special.ndtri_exp(special.log_ndtr(-np.maximum(t, 0.0)) - LN_TWO)
+        u = np.where(t < 0.0, below, above)
+        slope = 0.5 * np.exp(0.5 * (u - t) * (u + t))
+        return Derivatives(self.sd * u, self.sd * slope, self.sd * slope * (u * slope - t))
+
+    def to_standard(self, x: npt.ArrayLike) -> Array:
+        """Return t of x."""
+        u = np.maximum(as_array(x) / self.sd, 0.0)
+        with np.errstate(divide="ignore"):
+            return standard_from_ln_tails(np.log(special.erf(u / ROOT_TWO)), LN_TWO + special.log_ndtr(-u))
+
+    def ln_density(self, x: npt.ArrayLike) -> Array:
+        """Return ln 2 plus the normal ln density."""
+        place = as_array(x)
+        inner = LN_TWO - 0.5 * (place / self.sd) ** 2 - LN_SQRT_TWO_PI - np.log(self.sd)
+        return np.where(place >= 0.0, inner, -np.inf)
+
+    def fit_penalty(self, x: npt.ArrayLike) -> Derivatives:
+        """Return -(x/sd)^2/2."""
+        u = as_array(x) / self.sd
+        return Derivatives(-0.5 * u * u, -u / self.sd, np.zeros(u.shape) - self.sd**-2)
+
+    def scaled(self, factor: float) -> Self | None:
+        """Return the half-normal with its sd scaled."""
+        return replace(self, sd=factor * self.sd)
+
+    def text(self) -> str:
+        """Return the prior in words."""
+        return f"half-normal with sd {self.sd:g}"
+
+
+@dataclass(frozen=True, slots=True)
+class LogNormal(PositivePrior):
+    """ln x is normal around ln median; one standard deviation multiplies by factor."""
+
+    family: ClassVar[str] = "lognormal"
+    median: float = field()
+    factor: float
+
+    def __post_init__(self) -> None:
+        refuse(
+            self.family,
+            *numbers_faults(median=self.median, factor=self.factor),
+            positive_fault("median", self.median),
+            (
+                not self.factor > 1.0,
+                "The prior's factor is not above 1",
+                self.factor,
+                "a number above 1: one standard deviation multiplies by it",
+                "write 1.2 for twenty per cent",
+            ),
+        )
+
+    @property
+    def _ln_sd(self) -> float:
+        return float(np.log(self.factor))
+
+    @property
+    def moments(self) -> Moments:
+        """Return median exp(s^2/2), and that times sqrt(exp(s^2) - 1), with s = ln factor."""
+        square = self._ln_sd**2
+        mean = self.median * float(np.exp(0.5 * square))
+        return Moments(mean, mean * float(np.sqrt(np.expm1(square))))
+
+    def from_standard(self, t: npt.ArrayLike) -> Derivatives:
+        """Return x = median factor**t with derivatives."""
+        x = self.median * np.exp(self._ln_sd * as_array(t))
+        return Derivatives(x, self._ln_sd * x, self._ln_sd**2 * x)
+
+    def to_standard(self, x: npt.ArrayLike) -> Array:
+        """Return t = ln(x/median)/ln factor."""
+        with np.errstate(divide="ignore"):
+            t: Array = np.log(np.maximum(as_array(x), 0.0) / self.median) / self._ln_sd
+        return t
+
+    def ln_density(self, x: npt.ArrayLike) -> Array:
+        """Return the normal ln density of ln x, less ln x."""
+        place = as_array(x)
+        ln_place = np.log(np.where(place > 0.0, place, 1.0))
+        t = (ln_place - np.log(self.median)) / self._ln_sd
+        inner = -0.5 * t * t - LN_SQRT_TWO_PI - np.log(self._ln_sd) - ln_place
+        return np.where(place > 0.0, inner, -np.inf)
+
+    def fit_penalty(self, x: npt.ArrayLike) -> Derivatives:
+        """Return -t^2/2 with t = ln(x/median)/ln factor."""
+        place = np.maximum(as_array(x), TINY**0.25)
+        t = np.log(place / self.median) / self._ln_sd
+        slope = 1.0 / (self._ln_sd * place)
+        return Derivatives(-0.5 * t * t, -t * slope, slope * (t / place - slope))
+
+    def scaled(self, factor: float) -> Self | None:
+        """Return the log-normal whose ln factor is scaled."""
+        return replace(self, factor=self.factor**factor)
+
+    def text(self) -> str:
+        """Return the prior in words."""
+        return f"log-normal with median {self.median:g}, times or over {self.factor:g}"
+
+
+@dataclass(frozen=True, slots=True)
+class Gamma(PositivePrior):
+    """Gamma with density proportional to x**(shape - 1) exp(-rate x)."""
+
+    family: ClassVar[str] = "gamma"
+    shape: float
+    rate: float
+
+    def __post_init__(self) -> None:
+        refuse(
+            self.family,
+            *numbers_faults(shape=self.shape, rate=self.rate),
+            positive_fault("shape", self.shape),
+            positive_fault("rate", self.rate),
+        )
+
+    @property
+    def moments(self) -> Moments:
+        """Return shape/rate and sqrt(shape)/rate."""
+        return Moments(self.shape / self.rate, self.shape**0.5 / self.rate)
+
+    def _ln_inside(self, t: Array) -> Array:
+        """Return ln(rate x); the first term of the power series where rate x would underflow."""
+        tail = special.ndtr(-np.abs(t))
+        inside = np.where(
+            t < 0.0, special.gammaincinv(self.shape, tail), special.gammainccinv(self.shape, tail)
+        )
+        ln_end: Array = (special.log_ndtr(t) + special.gammaln(self.shape + 1.0)) / self.shape
+        return np.where(ln_end < SERIES_BELOW, ln_end, np.log(np.maximum(inside, TINY)))
+
+    def _ln_slope(self, t: Array, ln_y: Array) -> Array:
+        """Return d ln(rate x)/dt."""
+        ln_slope = -0.5 * t * t - LN_SQRT_TWO_PI + special.gammaln(self.shape) - self.shape * ln_y
+        slope: Array = np.exp(ln_slope + np.exp(ln_y))
+        return slope
+
+    def from_standard(self, t: npt.ArrayLike) -> Derivatives:
+        """Return the gamma quantile of Phi(t) with derivatives."""
+        u = as_array(t)
+        held = np.clip(u, -TAIL_KNOWN, TAIL_KNOWN)
+        ln_y = self._ln_inside(held)
+        if np.any(held != u):
+            slope = self._ln_slope(held, ln_y)
+            bend = slope * (-held - (self.shape - np.exp(ln_y)) * slope)
+            series = ln_y + (u - held) * (slope + 0.5 * (u - held) * bend)
+            ln_y = np.where(held == u, ln_y, series)
+        y, rate = np.exp(ln_y), self._ln_slope(u, ln_y)
+        first = y * rate / self.rate
+        second = first * (-u - (self.shape - 1.0 - y) * rate)
+        return Derivatives(np.maximum(y, TINY) / self.rate, first, second)
+
+    def to_standard(self, x: npt.ArrayLike) -> Array:
+        """Return t of x."""
+        y = np.maximum(as_array(x) * self.rate, 0.0)
+        return standard_from_tails(special.gammainc(self.shape, y), special.gammaincc(self.shape, y))
+
+    def ln_density(self, x: npt.ArrayLike) -> Array:
+        """Return the gamma ln density."""
+        place = as_array(x)
+        y = np.maximum(place * self.rate, 0.0)
+        with np.errstate(divide="ignore"):
+            inner = special.xlogy(self.shape - 1.0, y) - y - special.gammaln(self.shape) + np.log(self.rate)
+        return np.where(place >= 0.0, inner, -np.inf)
+
+    def fit_penalty(self, x: npt.ArrayLike) -> Derivatives:
+        """Return (shape - 1) ln(rate x) - rate x, 0 at its largest."""
+        y = np.maximum(as_array(x) * self.rate, TINY**0.25)
+        power = self.shape - 1.0
+        peak = float(special.xlogy(power, power) - power) if power > 0.0 else 0.0
+        value = special.xlogy(power, y) - y - peak
+        return Derivatives(value, (power / y - 1.0) * self.rate, -power / y**2 * self.rate**2)
+
+    def scaled(self, factor: float) -> Self | None:
+        """Return the gamma with its sd scaled and its mean kept."""
+        return replace(self, shape=self.shape / factor**2, rate=self.rate / factor**2)
+
+    def text(self) -> str:
+        """Return the prior in words."""
+        return f"gamma with shape {self.shape:g}, rate {self.rate:g}"
