@@ -1,0 +1,240 @@
+"""The reader for histogram tables in CSV and TSV."""
+
+from __future__ import annotations
+
+import csv
+import difflib
+import re
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.counts.binning import Binning, order_problems
+from workbench.counts.files import digest_of, read_bytes, text_of
+from workbench.counts.places import Places, as_written, listed
+from workbench.counts.table import BIN_COLUMNS, ERROR_ENDING, Table, name_problems, value_problems
+from workbench.errors import InputError, Problem
+
+Array = npt.NDArray[np.float64]
+
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
+_DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+", re.ASCII)
+_NOT_FINITE = frozenset({"nan", "inf", "infinity"})
+
+
+@dataclass(frozen=True, slots=True)
+class _Line:
+    number: int
+    cells: tuple[str, ...]
+
+
+def read_csv_table(path: Path, shown: str | None = None) -> Table:
+    """Return the histogram that a CSV or TSV file holds.
+
+    The first line names the columns: `low`, `high`, `observed` (left out when planning), then one column a
+    template, and optionally `NAME error` for the standard deviations of the template NAME. Lines starting with #
+    and blank lines are passed over. Tabs separate the cells if the first line has tabs, and no commas unless the
+    file's name ends in .tsv; else commas do.
+
+    Args:
+        path: the file.
+        shown: its name as the user gave it, for messages and records; the path itself if left out.
+
+    Returns:
+        The table, with the line of every bin and the digest of the file's bytes.
+
+    Raises:
+        InputError: with everything that keeps the file from being a histogram, each with its line and column.
+
+    Source:
+        none, definition
+    """
+    shown = str(path) if shown is None else shown
+    data = read_bytes(path, shown)
+    lines = _lines(text_of(data, shown), shown, path.suffix.lower() == ".tsv")
+    header, rows = lines[0], lines[1:]
+    problems = _header_problems(header, shown)
+    if problems:
+        raise InputError(*problems)
+    names = header.cells
+    problems = _ragged_problems(rows, len(names), shown)
+    rows = [row for row in rows if len(row.cells) == len(names)]
+    cells = {name: [row.cells[index] for row in rows] for index, name in enumerate(names)}
+    places = Places(shown, tuple(row.number for row in rows), cells)
+    return _table(places, digest_of(data), problems)
+
+
+def _table(places: Places, digest: str, problems: list[Problem]) -> Table:
+    """Return the table whose cells are cut, or raise what is wrong with it beside the problems known so far."""
+    parsed = {name: _numbers(name, places) for name in places.cells}
+    numbers = {name: values for name, (values, _) in parsed.items()}
+    observed = numbers.get("observed")
+    columns, errors = {}, {}
+    for name, values in numbers.items():
+        if name.endswith(ERROR_ENDING):
+            errors[name.removesuffix(ERROR_ENDING)] = values
+        elif name not in BIN_COLUMNS:
+            columns[name] = values
+    problems = problems + [problem for _, found in parsed.values() for problem in found]
+    problems += name_problems(columns, errors, places)
+    problems += order_problems(numbers["low"], numbers["high"], places)
+    problems += value_problems(observed, errors, places)
+    if problems:
+        raise InputError(*problems)
+    binning = Binning(numbers["low"], numbers["high"])
+    return Table(binning, observed, columns, errors, places.source, digest, places.lines)
+
+
+def _lines(text: str, shown: str, is_tsv: bool) -> list[_Line]:
+    """Return the header and the lines of numbers, each cut into cells without the spaces around them."""
+    kept = [
+        (number, line)
+        for number, line in enumerate(text.split("\n"), start=1)
+        if line.strip() and not line.lstrip().startswith("#")
+    ]
+    if len(kept) < 2:
+        raise InputError(
+            Problem(
+                "A table without bins" if kept else "An empty table",
+                shown,
+                "a line of column names and nothing below it"
+                if kept
+                else "no line but comments and blank ones",
+                "a line of column names, then one line a bin",
+                "write the columns low,high,observed and one line a bin below them",
+            )
+        )
+    first = kept[0][1]
+    delimiter = "\t" if "\t" in first and (is_tsv or "," not in first) else ","
+    if delimiter not in first and ";" in first:
+        raise InputError(
+            Problem(
+                "Cells that are separated by semicolons",
+                f"{shown}, line {kept[0][0]}",
+                as_written(first.strip()),
+                "commas between the cells and points in the numbers (or tabs, in a .tsv file)",
+                "save the file again with the comma as separator and 1.5 written for one and a half",
+            )
+        )
+    return [_Line(number, _cells(line, number, delimiter, shown)) for number, line in kept]
+
+
+def _cells(line: str, number: int, delimiter: str, shown: str) -> tuple[str, ...]:
+    try:
+        (cells,) = csv.reader([line], delimiter=delimiter, skipinitialspace=True, strict=True)
+    except csv.Error as error:
+        raise InputError(
+            Problem(
+                "A line that can't be cut into cells",
+                f"{shown}, line {number}",
+                str(error),
+                "cells on one line, quotes closed where opened",
+                "close the quotes, or leave them out: only names with a comma need them",
+            )
+        ) from error
+    return tuple(cell.strip() for cell in cells)
+
+
+def _header_problems(header: _Line, shown: str) -> list[Problem]:
+    where = f"{shown}, line {header.number}"
+    names = header.cells
+    if all(_NUMBER.fullmatch(name) for name in names):
+        return [
+            Problem(
+                "A table without column names",
+                where,
+                as_written(",".join(names)),
+                "the names of the columns on the first line",
+                "write a first line such as low,high,observed,background",
+            )
+        ]
+    problems = [_missing(name, names, where) for name in ("low", "high") if name not in names]
+    if "observed" not in names and difflib.get_close_matches(
+        "observed", [name.lower() for name in names], 1, 0.7
+    ):
+        problems.append(_missing("observed", names, where))
+    problems += [
+        Problem(
+            "Two columns of the same name",
+            f"{where}, column {name!r}",
+            f"{name!r} {names.count(name)} times",
+            "each name once",
+            "rename one of the columns, or leave it out",
+        )
+        for name in dict.fromkeys(names)
+        if name and names.count(name) > 1
+    ]
+    problems += [
+        Problem(
+            "A column without a name",
+            f"{where}, column {index}",
+            "nothing between the separators",
+            "a name for every column",
+            "name the column, or leave out the separator that opens it",
+        )
+        for index, name in enumerate(names, start=1)
+        if not name
+    ]
+    return problems
+
+
+def _missing(name: str, names: tuple[str, ...], where: str) -> Problem:
+    lowered = {other.lower(): other for other in names if other}
+    close = difflib.get_close_matches(name, lowered, n=1, cutoff=0.7)
+    return Problem(
+        f"A table without the column {name!r}",
+        where,
+        "the columns " + listed([repr(other) for other in names]),
+        "low, high, observed, then one column a template",
+        f"rename {lowered[close[0]]!r} to {name!r}" if close else f"add the column {name!r}",
+    )
+
+
+def _ragged_problems(rows: list[_Line], expected: int, shown: str) -> list[Problem]:
+    found: dict[int, list[str]] = {}
+    for row in rows:
+        if len(row.cells) != expected:
+            found.setdefault(len(row.cells), []).append(str(row.number))
+    return [
+        Problem(
+            "Fewer cells than column names" if number < expected else "More cells than column names",
+            f"{shown}, {'line' if len(lines) == 1 else 'lines'} {listed(lines)}",
+            f"{number} cells",
+            f"{expected}, one a column",
+            "give every column a number, 0 where there is nothing"
+            if number < expected
+            else "leave out what is too much; if commas stand for decimal points, write 1.5 instead of 1,5",
+        )
+        for number, lines in found.items()
+    ]
+
+
+def _numbers(name: str, places: Places) -> tuple[Array, list[Problem]]:
+    """Return a column as numbers, nan where a cell holds none, and what to say about those cells."""
+    texts = places.cells[name]
+    values = np.array(
+        [float(text) if _NUMBER.fullmatch(text) else np.nan for text in texts], dtype=np.float64
+    )
+    faults: dict[tuple[str, str], list[int]] = {}
+    for row in np.flatnonzero(~np.isfinite(values)).tolist():
+        faults.setdefault(_fault(texts[row]), []).append(row)
+    values[~np.isfinite(values)] = np.nan
+    return values, [
+        Problem(
+            what, places.where(rows, name), places.found(rows, name, values) or "nothing", "a number", remedy
+        )
+        for (what, remedy), rows in faults.items()
+    ]
+
+
+def _fault(text: str) -> tuple[str, str]:
+    """Return what is wrong with a cell that holds no finite number, and what to do."""
+    if not text:
+        return "An empty cell", "write 0 if nothing was counted or predicted"
+    if text.lstrip("+-").lower() in _NOT_FINITE or _NUMBER.fullmatch(text):
+        return "A number that is not finite", "find out what made it; an empty bin is written 0"
+    if _DECIMAL_COMMA.fullmatch(text):
+        return "A decimal comma", "write a point: 1.5 for one and a half"
+    return "A cell that holds no number", "write a plain number such as 12, 0.5 or 3e-2"
