@@ -158,12 +158,13 @@ def order_problems(low: Array, high: Array, places: Places) -> list[Problem]:
     problems = []
     empty = np.flatnonzero(high <= low)
     if empty.size:
+        upper, lower = places.found(empty, "high", high), places.found(empty, "low", low)
         problems.append(
             Problem(
-                "Bins without a width",
+                "Upper edges that are not above the lower ones",
                 places.where(empty, "high"),
-                f"upper edge {places.found(empty, 'high', high)}, lower edge {places.found(empty, 'low', low)}",
-                "an upper edge above the lower edge",
+                f"{upper}, with the lower edge at {lower}",
+                "more than the lower edge",
                 "swap the two edges, or mend the wrong one",
             )
         )

@@ -34,9 +34,9 @@ def read_csv_table(path: Path, shown: str | None = None) -> Table:
     """Return the histogram that a CSV or TSV file holds.
 
     The first line names the columns: `low`, `high`, `observed` (left out when planning), then one column a
-    template, and optionally `NAME error` for the standard deviations of the template NAME. Lines starting with #
-    and blank lines are passed over. Tabs separate the cells if the first line has tabs, and no commas unless the
-    file's name ends in .tsv; else commas do.
+    template, and optionally `NAME error` for the standard deviations of the template NAME. Lines starting
+    with # and blank lines are passed over. Tabs separate the cells if the first line has tabs, and no commas
+    unless the file's name ends in .tsv; else commas do.
 
     Args:
         path: the file.
@@ -67,7 +67,7 @@ def read_csv_table(path: Path, shown: str | None = None) -> Table:
 
 
 def _table(places: Places, digest: str, problems: list[Problem]) -> Table:
-    """Return the table whose cells are cut, or raise what is wrong with it beside the problems known so far."""
+    """Return the table from its cells, or raise what is wrong with them beside the problems known so far."""
     parsed = {name: _numbers(name, places) for name in places.cells}
     numbers = {name: values for name, (values, _) in parsed.items()}
     observed = numbers.get("observed")

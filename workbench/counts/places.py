@@ -56,7 +56,7 @@ class Places:
 
 
 def as_written(text: str) -> str:
-    """Return a text from a file fit for a terminal: cut when long, escaped when it holds control characters."""
+    """Return a file's text fit for a terminal: cut when long, escaped when it holds control characters."""
     short = text if len(text) <= _LONGEST else text[: _LONGEST - 3] + "..."
     return short if short.isprintable() else repr(short)
 
