@@ -1,0 +1,75 @@
+"""Faults of an analysis, named by the key that holds them, and the places they are shown at.
+
+A fault knows the key path only; the reader of a file adds the file and the line, Python shows the path alone.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+
+from workbench.errors import Problem
+
+KeyPath = tuple[str | int, ...]
+Place = Callable[[KeyPath], str]
+
+BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
+LONGEST_SHOWN = 60
+
+
+@dataclass(frozen=True, slots=True)
+class Fault:
+    """One thing wrong with what a key holds."""
+
+    path: KeyPath
+    what: str
+    found: str
+    expected: str
+    remedy: str
+
+    def problem(self, place: Place) -> Problem:
+        """Return the problem with its place in words."""
+        return Problem(self.what, place(self.path), self.found, self.expected, self.remedy)
+
+
+def dotted(path: KeyPath) -> str:
+    """Return a key path as the file would write it, list positions in brackets from 1."""
+    text = ""
+    for step in path:
+        if isinstance(step, int):
+            text += f"[{step + 1}]"
+        else:
+            text += ("." if text else "") + (step if BARE_KEY.fullmatch(step) else quoted(step))
+    return text or "the whole analysis"
+
+
+def quoted(word: str) -> str:
+    """Return a text in double quotes on one line, cut where it is long."""
+    safe = "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in word)
+    return '"' + shortened(safe) + '"'
+
+
+def shortened(text: str) -> str:
+    """Return a text cut to what fits on a line of the terminal."""
+    return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
+
+
+def shown(value: object) -> str:
+    """Return a value as the file would write it, on one line, cut where it is long."""
+    if isinstance(value, bool):
+        return "true" if value else "false"
+    if isinstance(value, int) and value.bit_length() > 64:
+        return f"a whole number of {value.bit_length()} bits"
+    if isinstance(value, int | float):
+        return f"{value:.15g}"
+    if isinstance(value, str):
+        return quoted(value)
+    if isinstance(value, list | tuple):
+        return shortened(
+            "[" + ", ".join(shown(one) for one in value[:6]) + (", ..." if len(value) > 6 else "") + "]"
+        )
+    if isinstance(value, Mapping):
+        inner = ", ".join(f"{dotted((str(key),))} = {shown(one)}" for key, one in list(value.items())[:4])
+        return shortened("{ " + inner + " }") if inner else "an empty table"
+    return shortened(str(value))

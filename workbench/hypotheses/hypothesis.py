@@ -1,0 +1,22 @@
+"""A hypothesis: a list of processes with a prior probability."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from workbench.hypotheses.frozen import FrozenMapping
+
+
+@dataclass(frozen=True, slots=True)
+class Hypothesis:
+    """A list of processes with a prior probability (relative), some parameters perhaps held."""
+
+    name: str
+    processes: tuple[str, ...]
+    prior: float = 1.0
+    fix: Mapping[str, float] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "processes", tuple(self.processes))
+        object.__setattr__(self, "fix", FrozenMapping(self.fix))

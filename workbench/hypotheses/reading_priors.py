@@ -1,0 +1,123 @@
+"""Priors as the analysis file and the command line say them."""
+
+from __future__ import annotations
+
+import math
+import tomllib
+from dataclasses import MISSING, fields
+from typing import Any
+
+import numpy as np
+
+from workbench.errors import InputError, nearest
+from workbench.hypotheses.faults import Fault, shortened, shown
+from workbench.hypotheses.keys import Findings, Section
+from workbench.hypotheses.priors import FAMILIES, Prior
+
+PRIOR = "{ FAMILY = { ... } }"
+IMPROPER = (
+    "finite numbers: a prior that goes on for ever cannot be normalised, and the evidence would depend on "
+    "where it was cut off"
+)
+
+
+def read_prior(section: Section, key: str = "prior") -> Prior | None:
+    """Return the prior under a key; None, with the faults noted, where it cannot be read."""
+    holder = section.section(key, PRIOR)
+    if holder is None:
+        return None
+    section.is_sound = False
+    if len(holder.content) != 1:
+        section.refuse(
+            key,
+            "A prior has exactly one family",
+            shown(holder.content),
+            PRIOR,
+            "keep one family: " + ", ".join(FAMILIES),
+        )
+        return None
+    family = next(iter(holder.content))
+    if family not in FAMILIES:
+        section.refuse(
+            key,
+            "A prior family that is not known",
+            shortened(family),
+            "a family of proper priors",
+            nearest(family, FAMILIES),
+        )
+        return None
+    inner = holder.section(family, "a table with the family's numbers")
+    prior = None if inner is None else _prior(family, inner)
+    section.is_sound = prior is not None
+    return prior
+
+
+def _prior(family: str, section: Section) -> Prior | None:
+    made = FAMILIES[family]
+    numbers: dict[str, Any] = {}
+    for field in fields(made):
+        if section.has(field.name) or field.default is MISSING:
+            numbers[field.name] = _number(section, field.name)
+    section.close()
+    if not section.is_sound:
+        return None
+    try:
+        with np.errstate(all="ignore"):
+            return made(**numbers)
+    except InputError as error:
+        for problem in error.problems:
+            section.findings.add(
+                Fault(section.path, problem.what, problem.found, problem.expected, problem.remedy)
+            )
+    return None
+
+
+def _number(section: Section, key: str) -> float:
+    value = section.content.get(key)
+    if isinstance(value, float) and math.isinf(value):
+        section.refuse(
+            key,
+            "An improper prior",
+            f"{key} = {shown(value)}",
+            IMPROPER,
+            "write a finite range, or a family that falls off, such as exponential or halfnormal",
+        )
+        return 0.0
+    return section.number(key)
+
+
+def parse_prior(text: str, shown_as: str = "--strength") -> Prior:
+    """Return the prior that an inline TOML value writes, as after `prior =` in an analysis file.
+
+    Args:
+        text: for instance "{ halfnormal = { sd = 1.0 } }".
+        shown_as: what the user calls it, for the messages.
+
+    Returns:
+        The prior.
+
+    Raises:
+        InputError: if the text is no prior.
+    """
+    findings = Findings(lambda path: ", ".join([shown_as, *(str(step) for step in path[1:])]))
+    try:
+        content = tomllib.loads("prior = " + text)
+    except (ValueError, RecursionError) as error:
+        fault = Fault(
+            ("prior",),
+            "A prior that cannot be read",
+            shown(text),
+            f"TOML: {PRIOR}",
+            f"quote the whole value for the shell; {_reason(error)}",
+        )
+        raise InputError(fault.problem(findings.place)) from error
+    section = Section(content, (), findings)
+    prior = read_prior(section)
+    section.close()
+    if prior is None or findings.problems:
+        raise InputError(*findings.problems)
+    return prior
+
+
+def _reason(error: Exception) -> str:
+    return "the brackets are nested too deeply" if isinstance(error, RecursionError) else str(error)

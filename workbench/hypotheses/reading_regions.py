@@ -1,0 +1,171 @@
+"""Regions as the analysis file says them: a table beside the file, or bins written in it."""
+
+from __future__ import annotations
+
+from pathlib import Path, PurePosixPath, PureWindowsPath
+
+import numpy as np
+
+from workbench.counts.binning import Binning
+from workbench.counts.csv_table import read_csv_table
+from workbench.counts.region import Region
+from workbench.counts.table import Table
+from workbench.errors import Caution, InputError, Problem
+from workbench.hypotheses.faults import KeyPath, dotted, quoted, shortened, shown
+from workbench.hypotheses.keys import Findings, Section
+
+INLINE_SOURCE = "edges and counts in the analysis file"
+
+
+def read_region(name: str, section: Section, folder: Path) -> Region | None:
+    """Return a region; None, with the faults noted, where it cannot be read.
+
+    Args:
+        name: the region's name.
+        section: its table of the file.
+        folder: what `table` is relative to.
+
+    Returns:
+        The region, or None.
+    """
+    choices = {
+        "observable": section.text("observable", ""),
+        "unit": section.text("unit", ""),
+        "template_errors": section.truth("template_errors", False),
+        "negative_templates": section.text("negative_templates", "refuse"),
+        "empty_bin_events": section.number_if_given("empty_bin_events"),
+    }
+    table = _table(section, folder)
+    section.close()
+    if table is None or not section.is_sound:
+        return None
+    findings = section.findings
+    if table.errors and not section.has("template_errors"):
+        findings.cautions.append(_errors_left_out(name, table))
+    try:
+        region = Region(name=name, table=table, **choices)  # type: ignore[arg-type]  # one dict of several types
+    except InputError as error:
+        findings.problems += [_placed(problem, name, findings) for problem in error.problems]
+        return None
+    findings.cautions += region.cautions
+    return region
+
+
+def _table(section: Section, folder: Path) -> Table | None:
+    """Return the region's table from the file that it names, or from the bins that it writes."""
+    if section.has("table"):
+        for key in ("edges", "observed"):
+            if section.has(key):
+                section.refuse(
+                    key,
+                    f"{key} beside a table",
+                    f"table and {key}",
+                    "a table, or edges and observed",
+                    f"leave out table or {key}",
+                )
+        name = section.text("table")
+        return _table_file(name, section, folder) if section.is_sound else None
+    if not section.has("edges"):
+        section.refuse(
+            None,
+            "A region without bins",
+            "neither table nor edges",
+            "a table, or edges and observed",
+            'add table = "FILE.csv"',
+        )
+        return None
+    edges = section.numbers("edges")
+    observed = section.numbers("observed") if section.has("observed") else None
+    if not section.is_sound:
+        return None
+    try:
+        counts = None if observed is None else np.array(observed)
+        return Table(Binning.from_edges(np.array(edges)), counts, source=INLINE_SOURCE)
+    except InputError as error:
+        section.is_sound = False
+        section.findings.problems += [_inline(problem, section) for problem in error.problems]
+        return None
+
+
+def _table_file(name: str, section: Section, folder: Path) -> Table | None:
+    remedy = "keep the table beside the analysis file and write its name alone"
+    if PurePosixPath(name).is_absolute() or PureWindowsPath(name).anchor or not name.strip():
+        section.refuse(
+            "table",
+            "A table that is not beside the analysis file",
+            shown(name),
+            "a path relative to the analysis file",
+            remedy,
+        )
+        return None
+    try:
+        path = folder / name
+        leads_away = not _stays_where_it_says(name, folder)
+        is_special = path.exists() and not path.is_file() and not path.is_dir()
+    except (OSError, ValueError, RuntimeError) as error:
+        section.refuse(
+            "table",
+            "A table whose path cannot be followed",
+            shown(name),
+            f"a path that can be opened ({shortened(str(error))})",
+            remedy,
+        )
+        return None
+    if leads_away or is_special:
+        found = f"{quoted(name)}, " + (
+            "a link that leads to another folder" if leads_away else "no regular file"
+        )
+        section.refuse(
+            "table",
+            "A table that is not the file it says",
+            found,
+            "a regular file in the folder that the path names",
+            remedy,
+        )
+        return None
+    try:
+        return read_csv_table(path, name)
+    except InputError as error:
+        section.is_sound = False
+        section.findings.problems += error.problems
+        return None
+
+
+def _stays_where_it_says(name: str, folder: Path) -> bool:
+    """Tell whether links keep the file inside the folder that the path's leading dots name."""
+    parts = PurePosixPath(name).parts
+    ups = 0
+    while ups < len(parts) and parts[ups] == "..":
+        ups += 1
+    root = folder.joinpath(*parts[:ups]).resolve()
+    return (folder / name).resolve().is_relative_to(root)
+
+
+def _placed(problem: Problem, name: str, findings: Findings) -> Problem:
+    """Return a region's problem with the place in the file instead of the region's name."""
+    subject = f"region {name!r}"
+    if not problem.where.startswith(subject):
+        return problem
+    key = problem.where.removeprefix(subject).removeprefix(", ")
+    path: KeyPath = ("regions", name, key) if key else ("regions", name)
+    return Problem(problem.what, findings.place(path), problem.found, problem.expected, problem.remedy)
+
+
+def _inline(problem: Problem, section: Section) -> Problem:
+    """Return a problem of bins written in the analysis, with the place in the file."""
+    key = "observed" if "'observed'" in problem.where else "edges"
+    where = section.findings.place((*section.path, key))
+    _, _, detail = problem.where.partition(", ")
+    bins = detail.partition(", column")[0] if detail.startswith("bin") else ""
+    return Problem(
+        problem.what, where + (f", {bins}" if bins else ""), problem.found, problem.expected, problem.remedy
+    )
+
+
+def _errors_left_out(name: str, table: Table) -> Caution:
+    columns = ", ".join(f"'{column} error'" for column in table.errors)
+    return Caution(
+        "template-errors-unused",
+        f"{table.source} has error columns ({columns}) that are not used: "
+        f"write template_errors = true or false in {dotted(('regions', name))}.",
+    )

@@ -1,0 +1,30 @@
+"""What to say about a name that nobody declared."""
+
+from __future__ import annotations
+
+from collections.abc import Collection
+
+from workbench.errors import nearest
+from workbench.hypotheses.faults import Fault, KeyPath, quoted, shortened
+
+
+def unknown_fault(
+    path: KeyPath, kind: str, name: str, known: Collection[str], owner: str = "declared"
+) -> Fault:
+    """Return the fault of a name that stands for nothing, with the nearest one that does.
+
+    Args:
+        path: where the name is used.
+        kind: what it should name, such as "parameter".
+        name: the name as given.
+        known: the names that stand for something.
+        owner: what declares them, for the message.
+
+    Returns:
+        The fault.
+    """
+    listed = ", ".join(sorted(known)) if known else f"none is {owner}"
+    remedy = nearest(name, known) if known else f"declare the {kind} {quoted(name)}, or write a number"
+    return Fault(
+        path, f"A {kind} that is not {owner}", quoted(name), f"a {kind}: {shortened(listed)}", remedy
+    )
