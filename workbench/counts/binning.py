@@ -13,6 +13,9 @@ from workbench.errors import InputError, Problem
 
 Array = npt.NDArray[np.float64]
 
+LARGEST = 1e100  # in size; beyond it the squares and sums of later steps would overflow
+FINITE = "finite numbers, at most 1e100 in size"
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Binning:
@@ -56,7 +59,7 @@ class Binning:
             raise InputError(
                 Problem(
                     "Fewer than two edges",
-                    "binning, 'edges'",
+                    Places("binning").column("edges"),
                     f"{values.size}",
                     "at least two: one bin has two edges",
                     "give the edges of all bins, the last bin's upper one included",
@@ -113,7 +116,7 @@ def locked(values: npt.ArrayLike, column: str, places: Places) -> Array:
         raise InputError(
             Problem(
                 "A column that is no list of numbers",
-                f"{places.source}, column {column!r}",
+                places.column(column),
                 "something else" if copy is None else f"an array with {copy.ndim} axes",
                 "one number a bin",
                 "give a list or a one-dimensional array of real numbers",
@@ -124,15 +127,15 @@ def locked(values: npt.ArrayLike, column: str, places: Places) -> Array:
 
 
 def not_finite_problem(values: Array, column: str, places: Places) -> Problem | None:
-    """Return what to say about nan and infinite numbers in a column, if there are any."""
-    rows = np.flatnonzero(~np.isfinite(values))
+    """Return what to say about nan, infinite and overlarge numbers in a column, if there are any."""
+    rows = np.flatnonzero(~(np.abs(values) <= LARGEST))
     if not rows.size:
         return None
     return Problem(
         "Numbers that are not finite",
         places.where(rows, column),
         places.found(rows, column, values),
-        "finite numbers",
+        FINITE,
         "find out what made them; an empty bin is written 0",
     )
 

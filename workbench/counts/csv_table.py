@@ -4,14 +4,16 @@ from __future__ import annotations
 
 import csv
 import difflib
+import math
 import re
 from dataclasses import dataclass
 from pathlib import Path
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
 
-from workbench.counts.binning import Binning, order_problems
+from workbench.counts.binning import FINITE, LARGEST, Binning, order_problems
 from workbench.counts.files import digest_of, read_bytes, text_of
 from workbench.counts.places import Places, as_written, listed
 from workbench.counts.table import BIN_COLUMNS, ERROR_ENDING, Table, name_problems, value_problems
@@ -62,7 +64,7 @@ def read_csv_table(path: Path, shown: str | None = None) -> Table:
     problems = _ragged_problems(rows, len(names), shown)
     rows = [row for row in rows if len(row.cells) == len(names)]
     cells = {name: [row.cells[index] for row in rows] for index, name in enumerate(names)}
-    places = Places(shown, tuple(row.number for row in rows), cells)
+    places = Places(shown, tuple(row.number for row in rows), cells, header.number)
     return _table(places, digest_of(data), problems)
 
 
@@ -95,17 +97,7 @@ def _lines(text: str, shown: str, is_tsv: bool) -> list[_Line]:
         if line.strip() and not line.lstrip().startswith("#")
     ]
     if len(kept) < 2:
-        raise InputError(
-            Problem(
-                "A table without bins" if kept else "An empty table",
-                shown,
-                "a line of column names and nothing below it"
-                if kept
-                else "no line but comments and blank ones",
-                "a line of column names, then one line a bin",
-                "write the columns low,high,observed and one line a bin below them",
-            )
-        )
+        raise InputError(_empty(text, bool(kept), shown))
     first = kept[0][1]
     delimiter = "\t" if "\t" in first and (is_tsv or "," not in first) else ","
     if delimiter not in first and ";" in first:
@@ -121,6 +113,20 @@ def _lines(text: str, shown: str, is_tsv: bool) -> list[_Line]:
     return [_Line(number, _cells(line, number, delimiter, shown)) for number, line in kept]
 
 
+def _empty(text: str, has_names: bool, shown: str) -> Problem:
+    return Problem(
+        "A table without bins" if has_names else "An empty table",
+        shown,
+        "a line of column names, nothing below it"
+        if has_names
+        else "only comments"
+        if text.strip()
+        else "nothing",
+        "a line of column names, then one line a bin",
+        "write the columns low,high,observed and one line a bin below them",
+    )
+
+
 def _cells(line: str, number: int, delimiter: str, shown: str) -> tuple[str, ...]:
     try:
         (cells,) = csv.reader([line], delimiter=delimiter, skipinitialspace=True, strict=True)
@@ -129,7 +135,7 @@ def _cells(line: str, number: int, delimiter: str, shown: str) -> tuple[str, ...
             Problem(
                 "A line that can't be cut into cells",
                 f"{shown}, line {number}",
-                str(error),
+                as_written(line),
                 "cells on one line, quotes closed where opened",
                 "close the quotes, or leave them out: only names with a comma need them",
             )
@@ -211,30 +217,47 @@ def _ragged_problems(rows: list[_Line], expected: int, shown: str) -> list[Probl
     ]
 
 
+def _number(text: str) -> float:
+    """Return a cell's number, nan where it holds none that can be used."""
+    number = float(text) if _NUMBER.fullmatch(text) else math.nan
+    return number if abs(number) <= LARGEST else math.nan
+
+
 def _numbers(name: str, places: Places) -> tuple[Array, list[Problem]]:
     """Return a column as numbers, nan where a cell holds none, and what to say about those cells."""
     texts = places.cells[name]
-    values = np.array(
-        [float(text) if _NUMBER.fullmatch(text) else np.nan for text in texts], dtype=np.float64
-    )
-    faults: dict[tuple[str, str], list[int]] = {}
-    for row in np.flatnonzero(~np.isfinite(values)).tolist():
+    values = np.array([_number(text) for text in texts], dtype=np.float64)
+    faults: dict[_Fault, list[int]] = {}
+    for row in np.flatnonzero(np.isnan(values)).tolist():
         faults.setdefault(_fault(texts[row]), []).append(row)
-    values[~np.isfinite(values)] = np.nan
     return values, [
         Problem(
-            what, places.where(rows, name), places.found(rows, name, values) or "nothing", "a number", remedy
+            fault.what,
+            places.where(rows, name),
+            places.found(rows, name, values) or "nothing",
+            fault.expected,
+            fault.remedy,
         )
-        for (what, remedy), rows in faults.items()
+        for fault, rows in faults.items()
     ]
 
 
-def _fault(text: str) -> tuple[str, str]:
-    """Return what is wrong with a cell that holds no finite number, and what to do."""
+class _Fault(NamedTuple):
+    what: str
+    expected: str
+    remedy: str
+
+
+_EMPTY = _Fault("An empty cell", "a number", "write 0 if nothing was counted or predicted")
+_UNBOUNDED = _Fault("Numbers that are not finite", FINITE, "find out what made it; an empty bin is written 0")
+_COMMA = _Fault("A decimal comma", "a number with a decimal point", "write 1.5 for one and a half")
+_WORD = _Fault("A cell that holds no number", "a number", "write a plain number such as 12, 0.5 or 3e-2")
+
+
+def _fault(text: str) -> _Fault:
+    """Return what is wrong with a cell that holds no finite number."""
     if not text:
-        return "An empty cell", "write 0 if nothing was counted or predicted"
+        return _EMPTY
     if text.lstrip("+-").lower() in _NOT_FINITE or _NUMBER.fullmatch(text):
-        return "A number that is not finite", "find out what made it; an empty bin is written 0"
-    if _DECIMAL_COMMA.fullmatch(text):
-        return "A decimal comma", "write a point: 1.5 for one and a half"
-    return "A cell that holds no number", "write a plain number such as 12, 0.5 or 3e-2"
+        return _UNBOUNDED
+    return _COMMA if _DECIMAL_COMMA.fullmatch(text) else _WORD

@@ -26,11 +26,18 @@ class Places:
         source: the file's name as the user gave it, or a description of where the data came from.
         lines: (bin,) line numbers in the file; empty when there is no file, then bins are counted from 1.
         cells: column name to (bin,) text as written, where there is a text.
+        header: line number of the column names in the file; None when there is no file.
     """
 
     source: str
     lines: tuple[int, ...] = ()
     cells: Mapping[str, Sequence[str]] = field(default_factory=dict)
+    header: int | None = None
+
+    def column(self, name: str) -> str:
+        """Return where a column is named."""
+        line = "" if self.header is None else f" line {self.header},"
+        return f"{self.source},{line} column {name!r}"
 
     def row(self, index: int) -> str:
         """Return the name of one bin's row."""
@@ -66,5 +73,5 @@ def listed(texts: Sequence[str]) -> str:
     if len(texts) == 1:
         return texts[0]
     if len(texts) > _MOST + 1:
-        return f"{', '.join(texts[:_MOST])} and {len(texts) - _MOST} more"
+        return f"{', '.join(texts[:_MOST])} and {len(texts) - _MOST} others"
     return f"{', '.join(texts[:-1])} and {texts[-1]}"

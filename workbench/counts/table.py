@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import difflib
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
@@ -90,7 +91,7 @@ def length_problems(bins: int, named: Mapping[str, Array], places: Places) -> li
     return [
         Problem(
             "A column of another length than the bins",
-            f"{places.source}, column {name!r}",
+            places.column(name),
             f"{values.size} numbers",
             f"{bins}, one a bin",
             "give every bin a number, 0 where there is nothing",
@@ -107,7 +108,7 @@ def name_problems(
     problems = [
         Problem(
             "A template with a name that means something else",
-            f"{places.source}, column {name!r}",
+            places.column(name),
             repr(name),
             f"any name but {', '.join(BIN_COLUMNS)}",
             "rename the template",
@@ -120,11 +121,14 @@ def name_problems(
 
 def _orphan(name: str, columns: Mapping[str, object], places: Places) -> Problem:
     remedy = f"add the column {name!r}, or leave its errors out"
+    close = difflib.get_close_matches(name, columns, n=1)
+    if close:
+        remedy = f"rename it to {close[0] + ERROR_ENDING!r}, or add the column {name!r}"
     if name in BIN_COLUMNS:
         remedy = "leave it out: the law of the counts says how far they spread"
     return Problem(
         "Errors of a template that is not there",
-        f"{places.source}, column {name + ERROR_ENDING!r}",
+        places.column(name + ERROR_ENDING),
         f"no column {name!r}" if name not in BIN_COLUMNS else f"errors of {name!r}, which is no template",
         "the name of one of the templates: " + (", ".join(columns) or "(there are none)"),
         remedy,
