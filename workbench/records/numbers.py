@@ -1,0 +1,162 @@
+"""Numbers as text: rounded to their error, odds as ratios, huge Bayes factors by their power of ten.
+
+Texts use the true minus sign, ± and ×; `workbench.records.screens.layout.plain_ascii` has the fallback.
+"""
+
+from __future__ import annotations
+
+import math
+
+_LN_10 = math.log(10.0)
+_PLAIN_BELOW = math.log(1e6)  # longer numbers are read wrongly, so they are shown by their power of ten
+_PLAIN_ABOVE = math.log(1e-4)
+
+
+def decimals_for(error: float) -> int:
+    """Return the number of decimals that an error is worth; negative for errors of hundreds and more.
+
+    Two digits of the error when its first three are 100 to 354, one when they are 355 to 949, and 1000 above.
+
+    Source:
+        Particle Data Group, Review of Particle Physics, introduction, "Rounding"; from memory.
+    """
+    if not (math.isfinite(error) and error > 0.0):
+        return 4
+    exponent = math.floor(math.log10(error))
+    leading = round(error / 10.0 ** (exponent - 2))
+    if leading >= 1000:
+        exponent, leading = exponent + 1, 100
+    return (1 if leading <= 354 else 0) - exponent
+
+
+def fixed(value: float, decimals: int) -> str:
+    """Return a number with so many decimals, thousands grouped; negative decimals round to tens and up."""
+    if not math.isfinite(value):
+        return "no number"
+    rounded = round(value, decimals)
+    text = f"{rounded:,.{max(decimals, 0)}f}"
+    if text.strip("-0.,") == "":
+        text = text.lstrip("-")
+    return text.replace("-", "−")
+
+
+def significant(value: float, digits: int = 3) -> str:
+    """Return a number with so many significant digits, by its power of ten where that is shorter to read."""
+    if value == 0.0 or not math.isfinite(value):
+        return "0" if value == 0.0 else "no number"
+    exponent = math.floor(math.log10(abs(value)))
+    if round(abs(value) / 10.0**exponent, digits - 1) >= 10.0:
+        exponent += 1
+    if -5 <= exponent < 6:
+        return fixed(value, digits - 1 - exponent)
+    return f"{fixed(value / 10.0**exponent, digits - 1)} × 10^{_power(exponent)}"
+
+
+def as_written(value: float) -> str:
+    """Return a number as a person would type it: 30, 0.5, 1.2e−7; never padded with zeros."""
+    return f"{value:.10g}".replace("-", "−")
+
+
+def count(number: float) -> str:
+    """Return a whole number with its thousands grouped."""
+    return f"{round(number):,}".replace("-", "−")
+
+
+def with_error(value: float, error: float | None) -> str:
+    """Return "value ± error" with matching digits; "value (exact)" when the error is 0.
+
+    Args:
+        value: the number.
+        error: one standard error of it; None when there is none to show.
+    """
+    if error is None or not math.isfinite(error):
+        return significant(value, 4)
+    if error <= 0.0:
+        return f"{fixed(value, 4)} (exact)"
+    size = max(abs(value), error)
+    if 1e-4 <= size < 1e6:
+        decimals = min(decimals_for(error), 8)
+        size_of_error = fixed(error, decimals) if round(error, decimals) > 0.0 else "below 10^−8"
+        return f"{fixed(value, decimals)} ± {size_of_error}"
+    exponent = math.floor(math.log10(size))
+    scale = 10.0**exponent
+    decimals = max(min(decimals_for(error / scale), 10), 0)
+    return f"({fixed(value / scale, decimals)} ± {fixed(error / scale, decimals)}) × 10^{_power(exponent)}"
+
+
+def with_sides(value: float, low: float | None, high: float | None) -> str:
+    """Return "value +high −low" with matching digits; a side without an error says "none".
+
+    Args:
+        value: the number.
+        low: its error downwards, negative; None where there is none.
+        high: its error upwards; None where there is none.
+    """
+    sizes = [abs(side) for side in (low, high) if side is not None and side != 0.0]
+    decimals = max((min(decimals_for(size), 10) for size in sizes), default=4)
+    up = f"+{fixed(high, decimals)}" if high is not None else "+none"
+    down = f"−{fixed(abs(low), decimals)}" if low is not None else "−none"
+    return f"{fixed(value, decimals)} {up} {down}"
+
+
+def factor(ln_value: float, ln_error: float | None = None) -> str:
+    """Return exp(ln_value) as text, with its error where one is given, however large or small.
+
+    Args:
+        ln_value: logarithm of the number, which itself may be far outside what a float holds [nats].
+        ln_error: one standard error of it [nats]; None or 0 for a number shown to three digits.
+    """
+    has_error = ln_error is not None and ln_error > 0.0
+    if _PLAIN_ABOVE <= ln_value < _PLAIN_BELOW:
+        value = math.exp(ln_value)
+        if ln_error is not None and has_error and ln_error < 1.0:
+            return with_error(value, value * ln_error)
+        return trimmed(value)
+    exponent = math.floor(ln_value / _LN_10 + 1e-12)
+    mantissa = math.exp(ln_value - exponent * _LN_10)
+    if not (ln_error is not None and has_error and ln_error < 1.0):
+        return f"{fixed(mantissa, 1)} × 10^{_power(exponent)}"
+    decimals = max(decimals_for(mantissa * ln_error), 0)
+    return f"({fixed(mantissa, decimals)} ± {fixed(mantissa * ln_error, decimals)}) × 10^{_power(exponent)}"
+
+
+def trimmed(value: float, digits: int = 3) -> str:
+    """Return a number with at most so many significant digits, no zeros at its end: 10, 1, 9.09, 2,240."""
+    if value >= 10.0**digits:
+        return significant(value, digits)
+    text = significant(value, digits)
+    return text.rstrip("0").rstrip(".") if "." in text and "×" not in text else text
+
+
+def odds(ln_odds: float, ln_error: float | None = None) -> str:
+    """Return odds as "7.7 : 1" or "1 : 9.1", the side that is favoured with its number.
+
+    Args:
+        ln_odds: logarithm of the odds [nats].
+        ln_error: one standard error of it [nats]; None where the odds are a choice and not a result.
+    """
+    if ln_odds >= -1e-12:
+        return f"{factor(max(ln_odds, 0.0), ln_error)} : 1"
+    return f"1 : {factor(-ln_odds, ln_error)}"
+
+
+def probability(value: float, rest: float, error: float | None = None) -> str:
+    """Return a probability; one that is nearly 1 as 1 minus what is left.
+
+    Args:
+        value: the probability.
+        rest: 1 - value, summed from the other probabilities so that it keeps its digits.
+        error: one standard error; None when there is none to show.
+    """
+    if value > 0.9995:
+        if rest <= 0.0:
+            return "1 (what is left is below 10^−300)"
+        left = with_error(rest, error) if error else significant(rest, 3)
+        return f"1 − ({left})" if "±" in left and not left.startswith("(") else f"1 − {left}"
+    if value <= 0.0:
+        return "below 10^−300"
+    return with_error(value, error) if error else trimmed(value, 4)
+
+
+def _power(exponent: int) -> str:
+    return str(exponent).replace("-", "−")

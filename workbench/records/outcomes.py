@@ -1,0 +1,85 @@
+"""What one run of a command found, held together with the analysis and where it came from."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from workbench.ensembles.predictive import PriorPredictive
+from workbench.ensembles.results import Adequacy
+from workbench.errors import Caution
+from workbench.evidence.results import Comparison, Weighing
+from workbench.hypotheses.analysis import Analysis
+from workbench.likelihood.results import Fit
+
+
+@dataclass(frozen=True, slots=True)
+class Origin:
+    """Where an outcome came from: what it takes to make it again.
+
+    Attributes:
+        file: the input's name as the user gave it; empty for an analysis made in Python.
+        digest: "sha256:..." of the analysis file's bytes, or of the analysis' content when there is no file.
+        seed: the seed that every random number came from.
+        options: further options of the command that change its numbers, by name.
+        notes: sentences on choices made for the user, said in the output.
+    """
+
+    file: str
+    digest: str
+    seed: int = 1
+    options: Mapping[str, str | float | None] = field(default_factory=dict)
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Weighed:
+    """What `weigh` found; fits and adequacies are one a hypothesis, in file order."""
+
+    analysis: Analysis
+    origin: Origin
+    weighing: Weighing
+    adequacies: tuple[Adequacy, ...]
+    fits: tuple[Fit, ...]
+
+    @property
+    def cautions(self) -> tuple[Caution, ...]:
+        """Return what reading and weighing warned of, each once."""
+        return tuple(dict.fromkeys((*self.analysis.cautions, *self.weighing.cautions)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Checked:
+    """What `check` found; `adequacies` is empty when nothing was observed yet."""
+
+    analysis: Analysis
+    origin: Origin
+    predictives: tuple[PriorPredictive, ...]
+    adequacies: tuple[Adequacy, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FittedAll:
+    """What `fit` found, one fit a hypothesis in file order."""
+
+    analysis: Analysis
+    origin: Origin
+    fits: tuple[Fit, ...]
+
+
+def spread_of_ln_bayes_factor(comparison: Comparison) -> tuple[float, float] | None:
+    """Return the lowest and highest ln B over the declared, halved and doubled strength priors.
+
+    Args:
+        comparison: one hypothesis against the first.
+
+    Returns:
+        Two numbers [nats], or None where no width could be scaled or ln B is missing.
+    """
+    if comparison.ln_bayes_factor is None:
+        return None
+    scaled = [value for item in comparison.sensitivity for value in (item.halved, item.doubled)]
+    known = [value for value in scaled if value is not None]
+    if not known:
+        return None
+    return min(comparison.ln_bayes_factor, *known), max(comparison.ln_bayes_factor, *known)

@@ -1,0 +1,109 @@
+"""The screen of `fit`: one block a hypothesis, correlations apart."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+from workbench.likelihood.results import Fit, Fitted
+from workbench.records.numbers import fixed, significant, with_error, with_sides
+from workbench.records.outcomes import FittedAll
+from workbench.records.screens.counted import NONE, counted_lines, title_lines
+from workbench.records.screens.layout import aligned_at, bullet, columns, heading, one_line, paragraph, screen
+
+NOTABLE = 0.2
+
+
+def fit_screen(outcome: FittedAll) -> str:
+    """Return what `fit` found as text.
+
+    Args:
+        outcome: what was found.
+    """
+    lines = title_lines(outcome.analysis, outcome.origin)
+    for note in outcome.origin.notes:
+        lines += paragraph(note)
+    lines += counted_lines(outcome.analysis)
+    for fit in outcome.fits:
+        lines += fit_lines(fit)
+    for fit in outcome.fits:
+        lines += correlation_lines(fit)
+    if outcome.analysis.cautions:
+        lines += heading("Warnings")
+        for caution in outcome.analysis.cautions:
+            lines += bullet(caution.text)
+    return screen(lines)
+
+
+def fit_lines(fit: Fit) -> list[str]:
+    """Return one hypothesis' block: how the fit ended, then a line a parameter."""
+    lines = heading(f"Fit of {one_line(fit.hypothesis)}")
+    lines += paragraph(f"The fit {fit.ending.value}. ln likelihood {fixed(fit.ln_likelihood, 3)}.")
+    if fit.fitted:
+        header = ["parameter", "value", "pull", "contraction"]
+        values = aligned_values(fit.fitted)
+        body = [
+            [_name(item), value, _signed(item.pull), _contraction(item)]
+            for item, value in zip(fit.fitted, values, strict=True)
+        ]
+        lines += ["", *columns([header, *body], "llrr")]
+    for note in fit.notes:
+        lines += bullet(note)
+    return lines
+
+
+def correlation_lines(fit: Fit) -> list[str]:
+    """Return the correlations above 0.2 in size, largest first."""
+    rows = [
+        [_signed(value), f"{one_line(first)}, {one_line(second)}"]
+        for value, first, second in notable_correlations(fit)
+    ]
+    if not rows:
+        return []
+    title = f"Correlations above {NOTABLE:g} under {one_line(fit.hypothesis)}"
+    return [*heading(title), *columns(rows, "rl")]
+
+
+def notable_correlations(fit: Fit, above: float = NOTABLE) -> Iterator[tuple[float, str, str]]:
+    """Yield (correlation, parameter, parameter) of each strongly correlated pair, largest size first."""
+    pairs = [
+        (float(fit.correlations[row, column]), fit.fitted[row].name, fit.fitted[column].name)
+        for row in range(len(fit.fitted))
+        for column in range(row + 1, len(fit.fitted))
+        if abs(fit.correlations[row, column]) > above
+    ]
+    yield from sorted(pairs, key=lambda pair: -abs(pair[0]))
+
+
+def aligned_values(fitted: Sequence[Fitted]) -> list[str]:
+    """Return the value of each parameter with its error, the errors in one column."""
+    symmetric = [index for index, item in enumerate(fitted) if item.low is None and item.high is None]
+    texts = [value_text(item) for item in fitted]
+    lined = aligned_at(" ", texts)
+    if len(symmetric) == len(fitted):
+        lined = aligned_at(" ±", texts)
+    return lined
+
+
+def value_text(item: Fitted) -> str:
+    """Return a fitted value with its error: +high −low where these were asked for, ± otherwise."""
+    end = ", at the end of its range" if item.at_limit else ""
+    if item.low is not None or item.high is not None:
+        return with_sides(item.value, item.low, item.high) + end
+    if item.error is None:
+        return significant(item.value, 4) + (end or ", no error")
+    return with_error(item.value, item.error) + end
+
+
+def _name(item: Fitted) -> str:
+    return one_line(f"{item.name} [{item.unit}]" if item.unit else item.name)
+
+
+def _contraction(item: Fitted) -> str:
+    return NONE if item.contraction is None else fixed(item.contraction, 2)
+
+
+def _signed(value: float | None) -> str:
+    if value is None:
+        return NONE
+    text = fixed(value, 2)
+    return text if text.startswith("−") else f"+{text}"

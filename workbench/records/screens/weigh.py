@@ -1,0 +1,147 @@
+"""The screen of `weigh`: a short argument from what was counted to what follows."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from workbench.evidence.results import Comparison, Evidence, Posterior, ScaledPrior
+from workbench.records.numbers import count, decimals_for, factor, fixed, odds, probability, with_error
+from workbench.records.outcomes import Weighed
+from workbench.records.screens.counted import (
+    NONE,
+    adequacy_lines,
+    claimed_lines,
+    counted_lines,
+    loud_lines,
+    title_lines,
+)
+from workbench.records.screens.layout import (
+    aligned_at,
+    bullet,
+    columns,
+    framed,
+    heading,
+    one_line,
+    paragraph,
+    screen,
+)
+from workbench.records.sentences import ln_posterior_odds, usual_cautions, verdict_on_all
+
+
+def weigh_screen(outcome: Weighed) -> str:
+    """Return what `weigh` found as text; adequacy stands before the odds, and above all when nothing fits.
+
+    Args:
+        outcome: what was found.
+    """
+    weighing, adequacies = outcome.weighing, outcome.adequacies
+    title = title_lines(outcome.analysis, outcome.origin)
+    loud = loud_lines(adequacies)
+    lines = [*loud, "", *title] if verdict_on_all(adequacies) else [*title, *([""] if loud else []), *loud]
+    for note in outcome.origin.notes:
+        lines += paragraph(note)
+    lines += counted_lines(outcome.analysis)
+    lines += claimed_lines(outcome.analysis, outcome.fits)
+    lines += adequacy_lines(adequacies)
+    lines += evidence_lines(weighing.evidences)
+    for comparison in weighing.comparisons:
+        lines += comparison_lines(comparison, weighing.evidences)
+    lines += probability_lines(weighing.posteriors)
+    lines += heading("Cautions")
+    for caution in usual_cautions(outcome.analysis, weighing.comparisons):
+        lines += bullet(caution.text)
+    if outcome.cautions:
+        lines += heading("Warnings")
+        for caution in outcome.cautions:
+            lines += bullet(caution.text)
+    return screen(lines)
+
+
+def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
+    """Return each hypothesis' evidence by every estimator, side by side, and whether they agree."""
+    labels: list[str] = []
+    values: list[str] = []
+    rest: list[list[str]] = []
+    for evidence in evidences:
+        for place, estimate in enumerate(evidence.estimates):
+            labels.append(one_line(evidence.hypothesis) if place == 0 else "")
+            values.append(with_error(estimate.ln_evidence, estimate.error))
+            k_hat = NONE if estimate.k_hat is None else fixed(estimate.k_hat, 2)
+            rest.append([estimate.name, k_hat, count(estimate.draws) if estimate.draws else NONE])
+        if not evidence.estimates:
+            labels.append(one_line(evidence.hypothesis))
+            values.append(NONE)
+            rest.append(["no estimate", NONE, NONE])
+    cells = zip(labels, rest, aligned_at(" ±", values), strict=True)
+    rows = [["hypothesis", "estimator", "ln evidence", "k-hat", "points"]]
+    rows += [[label, other[0], value, other[1], other[2]] for label, other, value in cells]
+    lines = [*heading("Evidences"), *columns(rows, "lllrr")]
+    for evidence in evidences:
+        if not evidence.established:
+            lines += bullet(f"{evidence.hypothesis} is not established: {evidence.reason}.")
+    if all(evidence.established for evidence in evidences):
+        lines += paragraph("Every evidence is established: error, k-hat and agreement are all in order.")
+    return lines
+
+
+def comparison_lines(comparison: Comparison, evidences: Sequence[Evidence]) -> list[str]:
+    """Return one hypothesis against the first: Bayes factor, odds, and what the strength's prior does."""
+    names = f"{one_line(comparison.hypothesis)} against {one_line(comparison.against)}"
+    lines = heading(f"Odds: {names}")
+    ln_factor, ln_odds = comparison.ln_bayes_factor, ln_posterior_odds(comparison)
+    if ln_factor is None or ln_odds is None:
+        return lines + _not_established(comparison, evidences)
+    error = comparison.ln_bayes_factor_error or 0.0
+    rows = [
+        ["ln B", with_error(ln_factor, error)],
+        ["Bayes factor B", factor(ln_factor, error)],
+        ["log10 B", with_error(ln_factor / math.log(10.0), error / math.log(10.0))],
+        ["prior odds", odds(math.log(comparison.prior_odds))],
+        ["posterior odds", odds(ln_odds, error)],
+    ]
+    lines += columns(rows, "ll")
+    for item in comparison.sensitivity:
+        lines += ["", *_sensitivity_lines(item, comparison, ln_factor)]
+    return lines
+
+
+def probability_lines(posteriors: Sequence[Posterior]) -> list[str]:
+    """Return every hypothesis' prior and posterior probability."""
+    known = [posterior.probability for posterior in posteriors]
+    rows = [["hypothesis", "prior", "posterior"]]
+    for place, posterior in enumerate(posteriors):
+        value = posterior.probability
+        rest = sum(other for index, other in enumerate(known) if index != place and other is not None)
+        after = "not established" if value is None else probability(value, rest, posterior.error)
+        prior_rest = 1.0 - posterior.prior
+        rows.append([one_line(posterior.hypothesis), probability(posterior.prior, prior_rest), after])
+    return [*heading("Probabilities"), *columns(rows, "lrl")]
+
+
+def _not_established(comparison: Comparison, evidences: Sequence[Evidence]) -> list[str]:
+    concerned = {comparison.hypothesis, comparison.against}
+    reasons = [
+        f"{evidence.hypothesis}: {evidence.reason}."
+        for evidence in evidences
+        if evidence.hypothesis in concerned and not evidence.established
+    ]
+    closing = "What each estimator says stands above; none of it is a result."
+    frame = framed("NOT ESTABLISHED: NO ODDS ARE GIVEN", [*reasons, closing])
+    return [*frame, *columns([["prior odds", odds(math.log(comparison.prior_odds))]], "ll")]
+
+
+def _sensitivity_lines(item: ScaledPrior, comparison: Comparison, ln_factor: float) -> list[str]:
+    name = one_line(item.parameter)
+    if item.halved is None and item.doubled is None:
+        return paragraph(f"The prior of {name} ({item.prior}) has no width to halve or double.")
+    decimals = max(decimals_for(comparison.ln_bayes_factor_error or 0.01), 1)
+    rows = [[f"prior of {name}", "ln B", "posterior odds"]]
+    for label, value in (
+        ("half as wide", item.halved),
+        (f"as declared, {item.prior}", ln_factor),
+        ("twice as wide", item.doubled),
+    ):
+        after = NONE if value is None else odds(value + math.log(comparison.prior_odds))
+        rows.append([label, NONE if value is None else fixed(value, decimals), after])
+    return columns(rows, "lrl")

@@ -1,0 +1,122 @@
+"""Sentences that every place where a result is read says in the same words."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from workbench.ensembles.results import Adequacy
+from workbench.errors import Caution
+from workbench.evidence.results import Comparison
+from workbench.hypotheses.analysis import Analysis, Parameter
+from workbench.records.numbers import with_error
+
+FAILS_BELOW = 0.01
+
+
+def verdict_on_all(adequacies: Sequence[Adequacy]) -> str:
+    """Return the sentence for when no hypothesis describes the data; empty otherwise."""
+    if not adequacies or not all(adequacy.fails for adequacy in adequacies):
+        return ""
+    if len(adequacies) == 2:
+        return "neither hypothesis describes the data"
+    return "no hypothesis describes the data"
+
+
+def adequacy_number(adequacy: Adequacy) -> str:
+    """Return "p = 0.41 ± 0.03"."""
+    return f"p = {with_error(adequacy.p, adequacy.p_error)}"
+
+
+def adequacy_verdict(adequacy: Adequacy) -> str:
+    """Return whether a hypothesis describes the data, and what that rests on."""
+    verdict = "DOES NOT DESCRIBE THE DATA" if adequacy.fails else "describes the data"
+    basis = f"{adequacy.pseudo_experiments:,} pseudo-experiments"
+    if adequacy.unfinished_fits:
+        basis += f", {adequacy.unfinished_fits:,} of their fits unfinished"
+    return f"{verdict} ({basis})"
+
+
+def ln_posterior_odds(comparison: Comparison) -> float | None:
+    """Return ln of the posterior odds, which stays a number where the odds themselves overflow.
+
+        ln(posterior odds) = ln B + ln(prior odds)
+
+    Args:
+        comparison: one hypothesis against the first.
+
+    Returns:
+        The ln odds [nats]; None where they are not established.
+
+    Source:
+        None, definition.
+    """
+    if not comparison.established or comparison.ln_bayes_factor is None:
+        return None
+    return comparison.ln_bayes_factor + math.log(comparison.prior_odds)
+
+
+def usual_cautions(analysis: Analysis, comparisons: Sequence[Comparison]) -> tuple[Caution, ...]:
+    """Return what holds for every claim that rests on odds, worded for this analysis.
+
+    Args:
+        analysis: the analysis.
+        comparisons: its comparisons.
+    """
+    strengths = {item.parameter for comparison in comparisons for item in comparison.sensitivity}
+    cautions = [
+        Caution(
+            "conditional",
+            "The odds are between the hypotheses listed here, under the priors stated here. What is not "
+            "listed, another background or a fault of the instrument, has no share in them.",
+        ),
+        Caution(
+            "numerical",
+            "Every ± on an evidence, a Bayes factor or odds is numerical only; how far the answer depends "
+            "on the priors is said beside it.",
+        ),
+    ]
+    if strengths:
+        cautions.append(
+            Caution(
+                "strength-prior",
+                f"The Bayes factor depends on how wide the prior of {' and '.join(sorted(strengths))} is: "
+                "defend that width from what was known before the data.",
+            )
+        )
+    cautions.append(_look_elsewhere(analysis, comparisons, strengths))
+    cautions.append(
+        Caution(
+            "review",
+            "Odds are one input to a claim of discovery; the decision belongs to the collaboration's own "
+            "review.",
+        )
+    )
+    return tuple(cautions)
+
+
+def _look_elsewhere(analysis: Analysis, comparisons: Sequence[Comparison], strengths: set[str]) -> Caution:
+    searched: dict[str, str] = {}
+    for comparison in comparisons:
+        held = analysis.hypothesis(comparison.hypothesis).fix
+        for name in analysis.signal_parameters(comparison.hypothesis):
+            if name not in strengths and name not in held:
+                parameter = analysis.parameter(name)
+                searched[name] = f"{name} ({prior_words(parameter)})"
+    if searched:
+        return Caution(
+            "look-elsewhere",
+            f"The range that was searched is inside the prior of {' and '.join(searched.values())}, so the "
+            "odds pay for it already; a range chosen after looking is not paid for.",
+        )
+    return Caution(
+        "look-elsewhere",
+        "The place of the signal is taken as known beforehand; if these data suggested it, the odds are too "
+        "high.",
+    )
+
+
+def prior_words(parameter: Parameter) -> str:
+    """Return a parameter's prior in words, with its unit."""
+    text = parameter.prior.text()
+    return f"{text}, in {parameter.unit}" if parameter.unit else text
