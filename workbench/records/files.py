@@ -15,9 +15,14 @@ FORMAT = 1
 COMMANDS = ("weigh", "check", "fit")
 
 
-def record_text(record: Mapping[str, Any]) -> str:
-    """Return a record as JSON text; numbers that JSON has no word for (infinity, nan) become null."""
-    return json.dumps(_finite(record), indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+def record_text(record: Mapping[str, Any], *, only_ascii: bool = False) -> str:
+    """Return a record as JSON text; numbers that JSON has no word for (infinity, nan) become null.
+
+    Args:
+        record: what `weigh_record`, `check_record` or `fit_record` made.
+        only_ascii: True to escape every other character, for a terminal that can't show it.
+    """
+    return json.dumps(_finite(record), indent=1, ensure_ascii=only_ascii, allow_nan=False) + "\n"
 
 
 def write_record(record: Mapping[str, Any], path: str | Path) -> None:

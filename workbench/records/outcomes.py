@@ -20,14 +20,14 @@ class Origin:
     Attributes:
         file: the input's name as the user gave it; empty for an analysis made in Python.
         digest: "sha256:..." of the analysis file's bytes, or of the analysis' content when there is no file.
-        seed: the seed that every random number came from.
+        seed: the seed that every random number came from; None where nothing is drawn.
         options: further options of the command that change its numbers, by name.
         notes: sentences on choices made for the user, said in the output.
     """
 
     file: str
     digest: str
-    seed: int = 1
+    seed: int | None = 1
     options: Mapping[str, str | float | None] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
 

@@ -33,7 +33,8 @@ def title_lines(analysis: Analysis, origin: Origin) -> list[str]:
     if analysis.exposure is not None:
         unit = f" {analysis.exposure.unit}" if analysis.exposure.unit else ""
         parts.append(f"exposure {as_written(analysis.exposure.collected)}{unit}")
-    parts.append(f"seed {origin.seed}")
+    if origin.seed is not None:
+        parts.append(f"seed {origin.seed}")
     lines = paragraph(analysis.title or "Untitled analysis", "")
     return [*lines, *paragraph(" · ".join(parts), "")]
 

@@ -1,0 +1,65 @@
+"""`oddsbench weigh`: evidences, Bayes factors and posterior odds."""
+
+from __future__ import annotations
+
+import argparse
+from dataclasses import replace
+
+from workbench.commands.delivery import add_delivery_options, deliver, refuse_unwritable
+from workbench.commands.inputs import (
+    add_histogram_options,
+    add_pseudo_experiments_option,
+    add_seed_option,
+    load,
+    refuse_planning,
+)
+from workbench.commands.parsing import Parser
+from workbench.commands.terminal import Progress
+from workbench.ensembles.adequacy import adequacy
+from workbench.evidence.weigh import weigh
+from workbench.likelihood.fit import fit
+from workbench.records.outcomes import Weighed
+from workbench.records.screens.weigh import weigh_screen
+from workbench.records.weigh_record import weigh_record
+
+
+def add_options(parser: Parser) -> None:
+    """Give the command its options."""
+    add_delivery_options(parser)
+    add_seed_option(parser)
+    add_pseudo_experiments_option(parser)
+    add_histogram_options(parser)
+    parser.add_argument("--picture", metavar="FILE", help="draw odds and counts into a .png, .svg or .pdf")
+
+
+def run(options: argparse.Namespace) -> int:
+    """Weigh the hypotheses and return the exit code: 0, or 1 when an evidence is not established."""
+    refuse_unwritable("--output", options.output)
+    if options.picture is not None:
+        from workbench.commands.pictures import refuse_other_kinds  # noqa: PLC0415 -- seldom asked for
+
+        refuse_other_kinds("--picture", options.picture)
+    outcome = _weighed(options)
+    if options.picture is not None:
+        from workbench.commands.pictures import save_weighed  # noqa: PLC0415 -- matplotlib is slow to import
+
+        save_weighed(outcome, options.picture)
+    deliver(options, lambda: weigh_screen(outcome), lambda: weigh_record(outcome), outcome.cautions)
+    return 0 if outcome.weighing.established else 1
+
+
+def _weighed(options: argparse.Namespace) -> Weighed:
+    analysis, origin = load(options, seed=options.seed)
+    refuse_planning(analysis, "weigh")
+    most = options.pseudo_experiments
+    with Progress() as progress:
+        fits, adequacies = [], []
+        for hypothesis in analysis.hypotheses:
+            progress.say(f"fitting {hypothesis.name}")
+            fits.append(fit(analysis, hypothesis.name, asymmetric=False))
+            progress.say(f"pseudo-experiments of {hypothesis.name}")
+            adequacies.append(adequacy(analysis, hypothesis.name, seed=options.seed, most=most))
+        progress.say("weighing")
+        weighing = weigh(analysis, seed=options.seed)
+    asked = {**origin.options, "pseudo_experiments": most}
+    return Weighed(analysis, replace(origin, options=asked), weighing, tuple(adequacies), tuple(fits))
