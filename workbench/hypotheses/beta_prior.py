@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     LN_SQRT_TWO_PI,
     SERIES_BELOW,
@@ -16,7 +17,6 @@ from workbench.hypotheses.prior_family import (
     TINY,
     Array,
     ContinuousPrior,
-    Derivatives,
     Moments,
     as_array,
     numbers_faults,

@@ -9,11 +9,11 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     LN_SQRT_TWO_PI,
     Array,
     ContinuousPrior,
-    Derivatives,
     Moments,
     as_array,
     ln_normal_mass,

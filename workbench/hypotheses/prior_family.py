@@ -14,6 +14,7 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.errors import InputError, Problem
+from workbench.hypotheses.jets import Derivatives
 
 Array = npt.NDArray[np.float64]
 FARTHEST = 38.0  # a standard normal is never farther from 0 in double precision
@@ -22,14 +23,6 @@ TAIL_KNOWN = 37.4  # Phi(-37.4) is still a normal double; scipy's inverses fail 
 SERIES_BELOW = -58.0  # ln 1e-25: below it the first term of a power series is all there is
 ROOT_TWO = float(np.sqrt(2.0))
 LN_SQRT_TWO_PI = 0.5 * float(np.log(2.0 * np.pi))
-
-
-class Derivatives(NamedTuple):
-    """A function's value with its first and second derivative."""
-
-    value: Array
-    first: Array
-    second: Array
 
 
 class Moments(NamedTuple):

@@ -6,8 +6,9 @@ from types import MappingProxyType
 from typing import Final
 
 from workbench.hypotheses.beta_prior import Beta
+from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.normal_prior import Normal
-from workbench.hypotheses.prior_family import ContinuousPrior, Derivatives, Moments
+from workbench.hypotheses.prior_family import ContinuousPrior, Moments
 from workbench.hypotheses.range_priors import Fixed, LogUniform, Uniform
 from workbench.hypotheses.scale_priors import Exponential, Gamma, HalfNormal, LogNormal
 

@@ -9,10 +9,10 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     Array,
     ContinuousPrior,
-    Derivatives,
     Moments,
     as_array,
     normal_density,

@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     LN_SQRT_TWO_PI,
     ROOT_TWO,
@@ -17,7 +18,6 @@ from workbench.hypotheses.prior_family import (
     TINY,
     Array,
     ContinuousPrior,
-    Derivatives,
     Moments,
     as_array,
     normal_density,
