@@ -28,7 +28,9 @@ class Printed:
 
     def check(self, computed: float) -> None:
         """Fail unless a computed number lands on the printed one, and on its sharper recomputation."""
-        origin = f"{self.name}: computed {computed!r}, printed {self.value!r} in {self.source} ({self.known_by})"
+        origin = (
+            f"{self.name}: computed {computed!r}, printed {self.value!r} in {self.source} ({self.known_by})"
+        )
         if self.relation == "upper bound":
             assert computed < self.value, origin
         else:

@@ -1,6 +1,6 @@
 """Bayes factors that lectures and papers printed.
 
-Sources stand beside each value in values.toml. Those known "from memory" confirm the number, not its attribution.
+Sources stand beside each value in values.toml. Those known "from memory" confirm the number, not its origin.
 """
 
 from __future__ import annotations
@@ -15,26 +15,28 @@ from workbench.evidence import closed_forms, count_mixtures, on_off, reference_o
 
 def gamma_background(what: str, n: int, s: float, q: float, k: float) -> float:
     """The lecture's background: Q counts elsewhere with k times the exposure, flat prior before."""
-    shape, rate = closed_forms.measured((1.0, 0.0), 0, 0.0)[0] + q, k
+    shape, rate = q + 1.0, k
     ln_p0 = float(count_mixtures.ln_gamma_mixture(n, shape, rate))
     ln_p1 = closed_forms.ln_known_background(n, s, shape, rate)
     tail = float(on_off.gamma_averaged_tail(n, shape, rate))
-    return {
+    values = {
         "p_h0": np.exp(ln_p0),
         "p_h1": np.exp(ln_p1),
         "B10": np.exp(ln_p1 - ln_p0),
         "sqrt_2lnB": np.sqrt(2.0 * (ln_p1 - ln_p0)),
         "tail": tail,
-        "z": float(on_off.significance(tail)),
-    }[what]
+        "z": on_off.significance(tail),
+    }
+    return float(values[what])
 
 
 def intrinsic(what: str, x: int, b: float) -> float:
-    return {
-        "p": float(on_off.known_tail(x, b)),
+    values = {
+        "p": on_off.known_tail(x, b),
         "B01": np.exp(reference_odds.ln_intrinsic(x, b)),
         "max_lr_bound": np.exp(reference_odds.ln_largest_support(x, b)),
-    }[what]
+    }
+    return float(values[what])
 
 
 def jeffreys(what: str, n_on: int, n_off: int, alpha_num: float, alpha_den: float) -> float:
@@ -43,9 +45,10 @@ def jeffreys(what: str, n_on: int, n_off: int, alpha_num: float, alpha_den: floa
 
 
 def jeffreys_by_quadrature(n_on: int, n_off: int, alpha: float) -> float:
-    """Integrate both Jeffreys priors: 1/sqrt(m b) over means m > alpha b, and sqrt((1 + alpha)/b) on the line.
+    """Integrate both Jeffreys priors: 1/sqrt(m b) over means m > alpha b, and sqrt(1/b) on the line.
 
-    With m = r^2 cos^2, b = r^2 sin^2 the plane's integral is one over r times one over the angle; constants from no counts.
+    With m = r^2 cos^2 and b = r^2 sin^2 the plane's integral is one over r times one over the angle. The
+    constants make the odds 1 without counts.
     """
 
     def plane(on: int, off: int) -> float:
@@ -127,7 +130,7 @@ def test_the_intrinsic_bayes_factor_is_its_integral(observed: int, background: f
 
     near = max(observed - background, 1.0)
     evidence = sum(
-        integrate.quad(integrand, low, high, epsrel=1e-12)[0]
+        integrate.quad(integrand, low, high, epsabs=0.0, epsrel=1e-12)[0]
         for low, high in [(0.0, near), (near, 4.0 * near + 40.0), (4.0 * near + 40.0, np.inf)]
     )
     odds = stats.poisson.pmf(observed, background) / evidence

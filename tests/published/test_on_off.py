@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Any
 
 import numpy as np
@@ -27,7 +28,7 @@ def rate_difference(x1: int, t1: float, x2: int, t2: float, test: Any) -> float:
     return two_rates.difference_tail((x1, x2), (t1, t2), test)
 
 
-METHODS = {
+METHODS: dict[str, Callable[..., float]] = {
     "z_on_off_binomial": lambda **of: float(on_off.significance(on_off.binomial_tail(**of))),
     "z_likelihood_ratio_on_off": lambda **of: float(on_off.likelihood_ratio(**of)),
     "z_profile_gauss": lambda n, b, sigma: float(on_off.profiled(n, b, sigma)),
@@ -71,7 +72,9 @@ def test_the_gaussian_average_is_the_integral_of_the_tail(n: int, b: float, sd: 
     assert on_off.gaussian_averaged_tail(n, b, sd) == pytest.approx(direct, rel=1e-8)
 
 
-@pytest.mark.parametrize(("n", "b", "sd"), [(4, 1.0, 0.447), (0, 2.0, 1.0), (5, 9.0, 4.0), (10**6, 990_000, 2000.0)])
+@pytest.mark.parametrize(
+    ("n", "b", "sd"), [(4, 1.0, 0.447), (0, 2.0, 1.0), (5, 9.0, 4.0), (10**6, 990_000, 2000.0)]
+)
 def test_the_profiled_background_is_where_the_likelihood_is_largest(n: int, b: float, sd: float) -> None:
     """An independent route: minimise over a grid refined around its best point."""
 
@@ -84,7 +87,9 @@ def test_the_profiled_background_is_where_the_likelihood_is_largest(n: int, b: f
         grid = np.linspace(low, high, 201)
         best = int(np.argmin(badness(grid)))
         low, high = grid[max(best - 1, 0)], grid[min(best + 1, 200)]
-    assert abs(float(on_off.profiled(n, b, sd))) == pytest.approx(np.sqrt(badness(grid[best])), rel=1e-6, abs=1e-6)
+    assert abs(float(on_off.profiled(n, b, sd))) == pytest.approx(
+        np.sqrt(badness(grid[best])), rel=1e-6, abs=1e-6
+    )
 
 
 def test_the_likelihood_ratio_tends_to_the_known_background_for_a_long_control_region() -> None:
