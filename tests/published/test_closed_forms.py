@@ -236,7 +236,7 @@ def test_half_a_line_under_a_parabola_is_a_gaussian_integral() -> None:
 
 
 def test_the_half_line_form_repairs_laplace_at_a_boundary() -> None:
-    """Worked numerically elsewhere, with a flat prior on s >= 0, for counts of 5 on 10, 80 on 100, 900 on 1000.
+    """Worked numerically elsewhere, flat prior on s >= 0, for counts of 5 on 10, 80 on 100, 900 on 1000.
 
     The ordinary form at the boundary is off by +1.84, +1.86, +2.20, the half-line form by -0.024, -0.007,
     -0.001.
