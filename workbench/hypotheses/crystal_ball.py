@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
 from typing import ClassVar
 
 import numpy as np
@@ -11,7 +12,7 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.counts.binning import Binning
-from workbench.hypotheses.jets import Jet, choose
+from workbench.hypotheses.jets import Jet, compose
 from workbench.hypotheses.quantities import Quantity
 from workbench.hypotheses.shape_family import (
     AnalyticShape,
@@ -57,17 +58,15 @@ class CrystalBall(AnalyticShape):
     def integrals(self, binning: Binning, arguments: Mapping[str, Jet]) -> Jet:
         """Return the fraction of events in each bin."""
         edges, mean, sd = edges_of(binning), arguments["mean"], arguments["sd"]
-        low, p_low, high, p_high = (arguments[name] for name in TAILS)
-        if any(jet.moves for jet in (low, p_low, high, p_high)):
-            return _with_moving_tails(edges, mean, sd, (low, p_low), (high, p_high))
+        tails = [arguments[name] for name in TAILS]
         z = (edges.values - mean.value[..., None]) / sd.value[..., None]
+        low, p_low, high, p_high = (jet.value[..., None] for jet in tails)
         right = z >= 0.0
-        a, p = (
-            np.where(right, above.value[..., None], below.value[..., None])
-            for above, below in ((high, low), (p_high, p_low))
-        )
-        beyond, total = _beyond(np.abs(z), a, p), _total(low, p_low, high, p_high)
-        value = from_tails(edges, z, beyond, total) / total
+        a, p = np.where(right, high, low), np.where(right, p_high, p_low)
+        total = _beyond(np.zeros(1), low, p_low) + _beyond(np.zeros(1), high, p_high)
+        value = from_tails(edges, z, _beyond(np.abs(z), a, p), total) / total
+        if any(jet.moves for jet in tails):
+            return _with_moving_tails(edges, z, value, total, (mean, sd, *tails))
 
         def density(z: Array) -> tuple[Array, Array]:
             return _density(z, a, p, total)
@@ -89,12 +88,6 @@ def _beyond(u: Array, a: Array, p: Array) -> Array:
     return beyond
 
 
-def _total(low: Jet, p_low: Jet, high: Jet, p_high: Jet) -> Array:
-    zero = np.zeros(())
-    total = _beyond(zero, low.value, p_low.value) + _beyond(zero, high.value, p_high.value)
-    return np.asarray(total)[..., None]
-
-
 def _density(z: Array, a: Array, p: Array, total: Array) -> tuple[Array, Array]:
     """Return the normalised density and its slope."""
     u = np.abs(z)
@@ -103,32 +96,105 @@ def _density(z: Array, a: Array, p: Array, total: Array) -> tuple[Array, Array]:
     return height, -np.sign(z) * height * np.minimum(u, a) / ratio
 
 
-def _with_moving_tails(
-    edges: Edges, mean: Jet, sd: Jet, below: tuple[Jet, Jet], above: tuple[Jet, Jet]
-) -> Jet:
-    """Return the integrals where a tail moves too, by arithmetic on jets."""
-    z = (edges.values - mean.over_bins()) / sd.over_bins()
-    right = z.value >= 0.0
-    a, p = (choose(right, above[k].over_bins(), below[k].over_bins()) for k in (0, 1))
-    beyond = _beyond_jet(choose(right, z, -z), a, p)
-    zero = Jet.constant(np.zeros(1), z.variables)
-    total = zero
-    for tail, power in (below, above):
-        total = total + _beyond_jet(zero, tail.over_bins(), power.over_bins())
-    signed = choose(right, -beyond, beyond)
-    across = right[..., edges.high] & ~right[..., edges.low]
-    return (_at(signed, edges.high) - _at(signed, edges.low) + total * across.astype(float)) / total
+def _with_moving_tails(edges: Edges, z: Array, value: Array, total: Array, arguments: tuple[Jet, ...]) -> Jet:
+    """Return value = C/N, C the integral over the bin and N that over the line, as a jet in all six numbers.
+
+    f_k = (C_k - f N_k)/N,      f_kl = (C_kl - f_k N_l - f_l N_k - f N_kl)/N
+    """
+    unnormalised = _Pieces(edges, z, arguments)
+
+    @cache
+    def slope(k: int) -> Array:
+        return np.asarray((unnormalised.slope(k) - value * unnormalised.whole_slope(k)) / total)
+
+    def bend(k: int, l: int) -> Array:  # noqa: E741
+        crossed = slope(k) * unnormalised.whole_slope(l) + slope(l) * unnormalised.whole_slope(k)
+        change = unnormalised.bend(k, l) - crossed - value * unnormalised.whole_bend(k, l)
+        return np.asarray(change / total)
+
+    return compose(value, arguments, slope, bend)
 
 
-def _at(jet: Jet, bins: slice) -> Jet:
-    return Jet(jet.value[..., bins], jet.first[..., bins], jet.second[..., bins])
+class _Pieces:
+    """Derivatives of the integrals over bins and line before normalisation.
+
+    Numbers are counted mean, sd, tail_low, power_low, tail_high, power_high. An edge carries q = B(|z|) on the
+    left and -B(|z|) on the right, B the integral outwards; a bin's integral is the change of q, plus N where
+    the bin holds the centre.
+    """
+
+    def __init__(self, edges: Edges, z: Array, arguments: tuple[Jet, ...]) -> None:
+        self.edges, self.z = edges, z
+        self.inverse = 1.0 / arguments[1].value[..., None]
+        low, p_low, high, p_high = (jet.value[..., None] for jet in arguments[2:])
+        right = z >= 0.0
+        self.side = (~right, right)
+        self.sign = np.where(right, -1.0, 1.0)
+        self.across = right[..., edges.high] & ~right[..., edges.low]
+        self.first, self.second = _beyond_derivatives(
+            np.abs(z), np.where(right, high, low), np.where(right, p_high, p_low)
+        )
+        centre = np.zeros(1)
+        self.whole = (_beyond_derivatives(centre, low, p_low), _beyond_derivatives(centre, high, p_high))
+
+    def whole_slope(self, k: int) -> Array | float:
+        """Return dN/dk."""
+        return 0.0 if k < 2 else self.whole[k // 2 - 1][0][1 + k % 2]
+
+    def whole_bend(self, k: int, l: int) -> Array | float:  # noqa: E741
+        """Return d2N/dk dl."""
+        return 0.0 if k < 2 or k // 2 != l // 2 else self.whole[k // 2 - 1][1][1 + k % 2][1 + l % 2]
+
+    def slope(self, k: int) -> Array:
+        """Return dC/dk by bins."""
+        if k < 2:
+            at_edges = self.first[0] * self.inverse * (self.z if k else 1.0)
+            return self.edges.differences(at_edges)
+        at_edges = self.side[k // 2 - 1] * self.sign * self.first[1 + k % 2]
+        return np.asarray(self.edges.differences(at_edges) + self.across * self.whole_slope(k))
+
+    def bend(self, k: int, l: int) -> Array:  # noqa: E741
+        """Return d2C/dk dl by bins, k <= l."""
+        if l < 2:
+            tilt = self.sign * self.second[0][0]
+            if k == 0:
+                at_edges = tilt if l == 0 else self.z * tilt - self.first[0]
+            else:
+                at_edges = self.z * (self.z * tilt - 2.0 * self.first[0])
+            return self.edges.differences(self.inverse**2 * at_edges)
+        if k < 2:
+            at_edges = self.side[l // 2 - 1] * self.second[0][1 + l % 2] * self.inverse
+            return self.edges.differences(at_edges * (self.z if k else 1.0))
+        if k // 2 != l // 2:
+            return np.zeros(self.across.shape)
+        at_edges = self.side[k // 2 - 1] * self.sign * self.second[1 + k % 2][1 + l % 2]
+        return np.asarray(self.edges.differences(at_edges) + self.across * self.whole_bend(k, l))
 
 
-def _beyond_jet(u: Jet, a: Jet, p: Jet) -> Jet:
-    """Return the integral from u >= 0 outwards of one side."""
-    in_tail = u.value > a.value
-    ratio = choose(in_tail, (u - a) * a / p + 1.0, Jet.constant(np.ones(1), a.variables))
-    whole_tail = (a * a * -0.5).exp() * p / (a * (p - 1.0))
-    power_law = whole_tail * ((1.0 - p) * ratio.log()).exp()
-    core = ((-choose(in_tail, a, u)).normal_cdf() - (-a).normal_cdf()) * ROOT_TWO_PI
-    return power_law + core
+def _beyond_derivatives(u: Array, a: Array, p: Array) -> tuple[list[Array], list[list[Array]]]:
+    """Return first and second derivatives of the integral outwards in u, a and p.
+
+    Beyond the core it is B = exp(b), b = -a^2/2 + ln p - ln a - ln(p - 1) + (1 - p) ln r, r = 1 + a (u - a)/p,
+    so that B_xy = B (b_xy + b_x b_y). Inside, r stays 1 and the normal integral from u to a is added.
+    """
+    out = u > a
+    r = _ratio(u, a, p)
+    power_law = np.exp(-0.5 * a * a) * p / (a * (p - 1.0)) * r ** (1.0 - p)
+    s = [out * one / r for one in (a / p, (u - 2.0 * a) / p, (1.0 - r) / p)]
+    r_uu, r_ua, r_up = np.zeros(1), 1.0 / p, -a / p**2
+    r_aa, r_ap, r_pp = -2.0 / p, -(u - 2.0 * a) / p**2, 2.0 * (r - 1.0) / p**2
+    mixed = [[r_uu, r_ua, r_up], [r_ua, r_aa, r_ap], [r_up, r_ap, r_pp]]
+    b = [(1.0 - p) * one for one in s]
+    b[1] = b[1] - a - 1.0 / a
+    b[2] = b[2] + 1.0 / p - 1.0 / (p - 1.0) - np.log(r)
+    bends = [[(1.0 - p) * (out * mixed[x][y] / r - s[x] * s[y]) for y in range(3)] for x in range(3)]
+    for x, y in ((0, 2), (1, 2), (2, 2)):
+        bends[x][y] = bends[x][y] - s[x] * (2.0 if x == y else 1.0)
+    bends[1][1] = bends[1][1] - 1.0 + 1.0 / a**2
+    bends[2][2] = bends[2][2] - 1.0 / p**2 + 1.0 / (p - 1.0) ** 2
+    first = [power_law * one for one in b]
+    second = [[power_law * (bends[min(x, y)][max(x, y)] + b[x] * b[y]) for y in range(3)] for x in range(3)]
+    core, edge = ~out * np.exp(-0.5 * u * u), ~out * np.exp(-0.5 * a * a)
+    first[0], first[1] = first[0] - core, first[1] + edge
+    second[0][0], second[1][1] = second[0][0] + u * core, second[1][1] - a * edge
+    return first, second

@@ -29,7 +29,7 @@ class Spline:
     __slots__ = ("_at", "_coefficients")
 
     def __init__(self, at: npt.ArrayLike, values: npt.ArrayLike) -> None:
-        from scipy.interpolate import PchipInterpolator  # noqa: PLC0415  # slow to import, seldom needed
+        from scipy.interpolate import PchipInterpolator  # slow to import, seldom needed
 
         self._at = np.array(at, dtype=float)
         self._coefficients: Array = PchipInterpolator(self._at, np.array(values, dtype=float), axis=0).c

@@ -9,7 +9,7 @@ import numpy.typing as npt
 
 from workbench.hypotheses.jets import Derivatives
 
-KNEE = 0.25
+KNEE = 0.25  # where the curve turns from a parabola to a line [standard deviations]
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,8 +1,8 @@
 """The Voigt peak: a Lorentz peak smeared by a normal one.
 
 With q = sd sqrt(2) and z = (x - mean + i width/2)/q the density is Re w(z)/(q sqrt(pi)), w the Faddeeva
-function, so that the distribution function is 1/2 + Re W(z)/sqrt(pi) with W' = w. No quadrature is needed: near
-the centre Weideman's series of w is integrated term by term, far away the asymptotic series.
+function, so that the distribution function is 1/2 + Re W(z)/sqrt(pi) with W' = w. No quadrature is needed:
+near the centre Weideman's series of w is integrated term by term, far away the asymptotic series.
 """
 
 from __future__ import annotations
