@@ -37,8 +37,8 @@ class Analysis:
 
     Attributes:
         title: the analysis' title.
-        regions, parameters, processes, uncertainties, hypotheses: by declaration order; no hypotheses at all stands
-            for "background only" and "signal plus background", equally probable.
+        regions, parameters, processes, uncertainties, hypotheses: by declaration order; no hypotheses at all
+            stands for "background only" and "signal plus background", equally probable.
         exposure: what yields are proportional to; None if not said.
         cautions: what is worth knowing about the declarations; not part of the content.
 
@@ -198,8 +198,8 @@ def default_hypotheses(processes: Sequence[Process]) -> tuple[Hypothesis, ...]:
         processes: every process of the analysis.
 
     Returns:
-        "background only" and "signal plus background"; where one of them would be empty or both the same, only the
-        other.
+        "background only" and "signal plus background"; where one of them would be empty or both the same,
+        only the other.
 
     Source:
         none, definition

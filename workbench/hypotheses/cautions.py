@@ -13,7 +13,7 @@ from workbench.counts.binning import Binning
 from workbench.counts.region import Region
 from workbench.errors import Caution
 from workbench.hypotheses.effects import regions_acted_on
-from workbench.hypotheses.faults import quoted, shown
+from workbench.hypotheses.faults import dotted, quoted, shown
 from workbench.hypotheses.shapes import Template, Templates
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 
@@ -51,8 +51,8 @@ def _hypotheses(analysis: Analysis) -> Iterator[Caution]:
     if signals:
         yield Caution(
             "first-hypothesis-has-signal",
-            f"Everything is compared with the first hypothesis, {quoted(first.name)}, which is not background only: "
-            f"it contains the signal {', '.join(quoted(name) for name in signals)}.",
+            f"Everything is compared with the first hypothesis, {quoted(first.name)}, which is not "
+            f"background only: it contains the signal {', '.join(quoted(name) for name in signals)}.",
         )
     if not any(process.is_signal for process in analysis.processes):
         yield Caution("no-signal", "No process is a signal: there is nothing to search for.")
@@ -85,8 +85,9 @@ def _spaced_templates(analysis: Analysis) -> Iterator[Caution]:
                     yield Caution(
                         "templates-spaced-wide",
                         f"The templates of {quoted(process.name)} in {quoted(name)} at {shown(left)} and "
-                        f"{shown(right)} lie {abs(b[0] - a[0]):.3g} apart, wider than the peak ({max(a[1], b[1]):.3g}): "
-                        "between them the interpolation has two peaks instead of one. Give templates in between.",
+                        f"{shown(right)} lie {abs(b[0] - a[0]):.3g} apart, wider than the peak "
+                        f"({max(a[1], b[1]):.3g}): between them the interpolation has two peaks instead of "
+                        "one. Give templates in between.",
                     )
                     break
 
@@ -124,8 +125,8 @@ def _one_sided_caution(source: Uncertainty, effect: Effect, sizes: str) -> Cauti
     return Caution(
         "one-sided-uncertainty",
         f"{quoted(source.name)} moves {quoted(effect.process)} to the same side both ways ({sizes}): "
-        "the source can hardly be measured, and its posterior may have two peaks. If one side stands for the size "
-        f"alone, write effects.{effect.process} = one number.",
+        "the source can hardly be measured, and its posterior may have two peaks. If one side stands for the "
+        f"size alone, write one number: effects.{dotted((effect.process,))} = ...",
     )
 
 
@@ -160,6 +161,6 @@ def _variation(source: Uncertainty, effect: Effect, region: Region, column: str)
     if number:
         yield Caution(
             "additive-variation",
-            f"{quoted(source.name)} varies {quoted(column)} in {quoted(region.name)} additively in {number} of "
-            f"{nominal.size} bins, where the nominal or a varied column is 0 and ratios do not exist.",
+            f"{quoted(source.name)} varies {quoted(column)} in {quoted(region.name)} additively in {number} "
+            f"of {nominal.size} bins, where the nominal or a varied column is 0 and ratios do not exist.",
         )

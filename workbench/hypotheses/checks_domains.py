@@ -1,4 +1,4 @@
-"""Priors under which a model makes no sense: negative expected counts, widths below 0, points not interpolated.
+"""Priors under which a model makes no sense: counts or widths below 0, points beyond those interpolated.
 
 A fault is laid at the door of the prior, or of the held number, that reaches too far.
 """
@@ -8,12 +8,14 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from workbench.hypotheses.faults import Fault, KeyPath, dotted, quoted, shown
+from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shown
 from workbench.hypotheses.priors import Normal
 from workbench.hypotheses.processes import Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, product_range
-from workbench.hypotheses.shapes import Shape, Template, Templates
+from workbench.hypotheses.shapes import Falling, Shape, Template, Templates
+
+NEVER = 1e-6  # a part of a prior that is passed over
 
 
 def contribution_domain_faults(
@@ -49,9 +51,28 @@ def _shape_domain_faults(path: KeyPath, shape: Shape, reaches: dict[str, Reach])
         return
     for key, quantity in shape.quantities.items():
         bound = shape.lower_bounds.get(key.partition("[")[0])
+        if isinstance(shape, Falling) and _is_as_good_as_positive(quantity, reaches):
+            continue
         if bound is not None:
-            where = (*path, "shape", shape.family, key)
+            where = (*path, "shape", shape.family, *field_path(key))
             yield from _bound_faults(where, quantity, bound, f"{key} of {shape.family}", reaches)
+
+
+def _is_as_good_as_positive(quantity: Quantity, reaches: dict[str, Reach]) -> bool:
+    """Tell whether a scale is above 0 but for a part of its priors that no data will ever favour.
+
+    A falling exponential of negative scale rises; its counts are never below 0, so that a normal prior far
+    above 0 needs no cut.
+    """
+    names = [reaches.get(one) for one in atoms(quantity) if isinstance(one, str)]
+    others = [one for one in atoms(quantity) if not isinstance(one, str)]
+    lowest = [min(one.values, default=0.0) if isinstance(one, Curve) else one for one in others]
+    return all(one > 0 for one in lowest) and all(
+        reach is not None
+        and float(reach.prior.quantile(NEVER)) > 0
+        and all(number > 0 for number in reach.held.values())
+        for reach in names
+    )
 
 
 def _bound_faults(
@@ -187,7 +208,8 @@ def interpolation_faults(
     if low < min(at) or high > max(at):
         remedy = "narrow the prior, or give points further out"
         if isinstance(reach.prior, Normal):
-            remedy = f"cut the prior off: low = {shown(min(at))}, high = {shown(max(at))}; or give points further out"
+            ends = f"low = {shown(min(at))}, high = {shown(max(at))}"
+            remedy = f"cut the prior off: {ends}; or give points further out"
         yield Fault(("parameters", name, "prior"), what, reach.prior.text(), expected, remedy)
     for hypothesis, number in reach.held.items():
         if not min(at) <= number <= max(at):

@@ -10,7 +10,7 @@ from workbench.counts.region import Region
 from workbench.errors import nearest
 from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
-from workbench.hypotheses.faults import Fault, KeyPath, shown
+from workbench.hypotheses.faults import Fault, KeyPath, field_path, shown
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, reaches_of
@@ -68,7 +68,7 @@ def _contribution(
             path, "The key yield is left out", "no such key", "yield = the expected events", "add yield"
         )
     for key, quantity in contribution.quantities.items():
-        where = (*path, "yield") if key == "yield" else (*path, "shape", shape.family, key)
+        where = (*path, "yield") if key == "yield" else (*path, "shape", shape.family, *field_path(key))
         yield from _quantity(where, quantity, declared, reaches)
     if isinstance(shape, Templates):
         where = (*path, "shape", shape.family)
@@ -84,18 +84,18 @@ def _shape_in_region(
     path: KeyPath, shape: Shape, contribution: Contribution, region: Region
 ) -> Iterator[Fault]:
     """Yield what is wrong with a shape and the bins and columns that it is given."""
-    columns = {"column": shape.column} if isinstance(shape, Template) else {}
+    columns: dict[KeyPath, str] = {("column",): shape.column} if isinstance(shape, Template) else {}
     if isinstance(shape, Templates):
-        columns = {f"columns[{place + 1}]": column for place, column in enumerate(shape.columns)}
+        columns = {("columns", place): column for place, column in enumerate(shape.columns)}
     for key, column in columns.items():
         values = region.table.columns.get(column)
         if values is None:
             yield unknown_fault(
-                (*path, key), "template column", column, region.table.columns, f"in {region.table.source}"
+                (*path, *key), "template column", column, region.table.columns, f"in {region.table.source}"
             )
         elif contribution.events is not None and not float(values.sum()) > 0:
             yield Fault(
-                (*path, key),
+                (*path, *key),
                 "A template without events, but a yield to share out",
                 f"{column}: the column's sum is 0",
                 "a column with a sum above 0",

@@ -25,6 +25,18 @@ if TYPE_CHECKING:  # the analysis asks this module for its digest
 
 Content = dict[str, object]
 
+# What a key means that is left out; a hypothesis' `prior` is a number, a parameter's is a table.
+LEFT_OUT: Content = {
+    "factors": [],
+    "fix": {},
+    "follows_exposure": True,
+    "negative_templates": "refuse",
+    "observable": "",
+    "prior": 1.0,
+    "template_errors": False,
+    "unit": "",
+}
+
 
 def content_of(analysis: Analysis) -> Content:
     """Return the analysis as nested tables, with the regions' bins and columns left to the caller.
@@ -57,7 +69,7 @@ def content_of(analysis: Analysis) -> Content:
 
 
 def digest_of_analysis(analysis: Analysis) -> str:
-    """Return "sha256:..." of what an analysis says: every declaration, in order, and every number of its tables.
+    """Return "sha256:..." of what an analysis says: declarations, in order, and every number of its tables.
 
     Args:
         analysis: the analysis.
@@ -117,7 +129,7 @@ def prior_content(prior: Prior) -> Content:
     numbers: Content = {}
     for field in fields(prior):
         value = getattr(prior, field.name)
-        if value is not None:
+        if value is not None and value != field.default:
             numbers[field.name] = float(value)
     return {prior.family: numbers}
 
@@ -148,8 +160,7 @@ def quantity_content(quantity: Quantity) -> object:
 
 
 def _given(content: Content) -> Content:
-    """Return the keys that say something: empty texts and None are the same as a key left out."""
-    return {key: value for key, value in content.items() if value is not None and value != ""}
+    return {key: value for key, value in content.items() if value is not None}
 
 
 def _parameter(parameter: Parameter) -> Content:
@@ -157,13 +168,12 @@ def _parameter(parameter: Parameter) -> Content:
 
 
 def _process(process: Process) -> Content:
-    content: Content = {"kind": process.kind}
-    if process.factors:
-        content["factors"] = [one if isinstance(one, str) else float(one) for one in process.factors]
-    if not process.follows_exposure:
-        content["follows_exposure"] = False
-    content["regions"] = {name: _contribution(one) for name, one in process.regions.items()}
-    return content
+    return {
+        "kind": process.kind,
+        "factors": [one if isinstance(one, str) else float(one) for one in process.factors],
+        "follows_exposure": process.follows_exposure,
+        "regions": {name: _contribution(one) for name, one in process.regions.items()},
+    }
 
 
 def _contribution(contribution: Contribution) -> Content:
@@ -197,7 +207,8 @@ def _size(effect: Effect) -> object:
 
 
 def _hypothesis(hypothesis: Hypothesis) -> Content:
-    content: Content = {"processes": list(hypothesis.processes), "prior": float(hypothesis.prior)}
-    if hypothesis.fix:
-        content["fix"] = {name: float(number) for name, number in hypothesis.fix.items()}
-    return content
+    return {
+        "processes": list(hypothesis.processes),
+        "prior": float(hypothesis.prior),
+        "fix": {name: float(hypothesis.fix[name]) for name in sorted(hypothesis.fix)},
+    }

@@ -17,8 +17,8 @@ from workbench.hypotheses.uncertainties import Uncertainty
 class Declared:
     """Everything declared, by name and in order.
 
-    A name whose content could not be read has None, so that a mention of it is not taken for a misspelling and what
-    depends on its content is left unchecked.
+    A name whose content could not be read has None, so that a mention of it is not taken for a misspelling
+    and what depends on its content is left unchecked.
 
     Attributes:
         regions, parameters, processes, uncertainties, hypotheses: name to content.

@@ -44,6 +44,12 @@ def dotted(path: KeyPath) -> str:
     return text or "the whole analysis"
 
 
+def field_path(key: str) -> KeyPath:
+    """Return the key path of a shape's number from its name, such as coefficients[0]."""
+    name, _, rest = key.partition("[")
+    return (name, int(rest.rstrip("]"))) if rest else (name,)
+
+
 def quoted(word: str) -> str:
     """Return a text in double quotes on one line, cut where it is long."""
     safe = "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in word)

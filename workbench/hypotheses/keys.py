@@ -1,7 +1,7 @@
 """Reading the keys of one table of a TOML file: types, left-out keys, unknown keys.
 
-Every reading method notes what is wrong and goes on with a stand-in, so that one pass tells everything; what was
-read is used only where nothing was noted.
+Every reading method notes what is wrong and goes on with a stand-in, so that one pass tells everything; what
+was read is used only where nothing was noted.
 """
 
 from __future__ import annotations
@@ -10,7 +10,7 @@ import math
 from collections.abc import Iterator, Mapping
 
 from workbench.errors import Caution, Problem, nearest
-from workbench.hypotheses.faults import Fault, KeyPath, Place, shown, shortened
+from workbench.hypotheses.faults import Fault, KeyPath, Place, shortened, shown
 
 
 class Findings:

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from workbench.hypotheses.frozen import FrozenMapping
-from workbench.hypotheses.quantities import Curve, Quantity
+from workbench.hypotheses.quantities import Quantity, parameters_of
 from workbench.hypotheses.shapes import Shape, Template, Templates
 
 
@@ -17,7 +17,7 @@ class Contribution:
 
     Attributes:
         shape: how its events spread over the bins.
-        events: expected events for the collected exposure (the file's `yield`); None for a template's own sum.
+        events: expected events for the collected exposure (the file's `yield`); None: the template's own sum.
     """
 
     shape: Shape
@@ -36,9 +36,7 @@ class Contribution:
         """Return the names of the parameters that it depends on, in the order met."""
         names: dict[str, None] = {}
         for quantity in self.quantities.values():
-            for one in quantity if isinstance(quantity, tuple) else (quantity,):
-                if isinstance(one, str | Curve):
-                    names[one if isinstance(one, str) else one.parameter] = None
+            names |= dict.fromkeys(parameters_of(quantity))
         if isinstance(self.shape, Templates):
             names[self.shape.parameter] = None
         return tuple(names)

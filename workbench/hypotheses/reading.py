@@ -64,7 +64,7 @@ def analysis_from_text(text: str, folder: Path, shown_as: str) -> Analysis:
     Raises:
         InputError: with everything that is wrong.
     """
-    content = _parsed(text, shown_as)
+    content = parsed(text, shown_as)
     lines = key_lines(text)
 
     def place(path: KeyPath) -> str:
@@ -85,7 +85,8 @@ def analysis_from_text(text: str, folder: Path, shown_as: str) -> Analysis:
     return replace(analysis, cautions=(*findings.cautions, *cautions_of(analysis)))
 
 
-def _parsed(text: str, shown_as: str) -> dict[str, object]:
+def parsed(text: str, shown_as: str) -> dict[str, object]:
+    """Return the tables of a TOML text, or raise an InputError that names the line."""
     try:
         return tomllib.loads(text)
     except (ValueError, RecursionError) as error:

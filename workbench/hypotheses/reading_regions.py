@@ -88,47 +88,56 @@ def _table(section: Section, folder: Path) -> Table | None:
 
 
 def _table_file(name: str, section: Section, folder: Path) -> Table | None:
-    remedy = "keep the table beside the analysis file and write its name alone"
-    if PurePosixPath(name).is_absolute() or PureWindowsPath(name).anchor or not name.strip():
-        section.refuse(
-            "table",
-            "A table that is not beside the analysis file",
-            shown(name),
-            "a path relative to the analysis file",
-            remedy,
-        )
+    fault = _path_fault(name, folder)
+    if fault is not None:
+        what, found, expected = fault
+        remedy = "keep the table beside the analysis file and write its name alone"
+        section.refuse("table", what, found, expected, remedy)
         return None
+    try:
+        return read_csv_table(folder / name, name)
+    except InputError as error:
+        section.is_sound = False
+        section.findings.problems += error.problems
+        return None
+
+
+def read_table_beside(name: str, folder: Path) -> Table | None:
+    """Return the table of that name as an analysis file in that folder would read it.
+
+    Args:
+        name: a path relative to the folder.
+        folder: where the analysis file lies.
+
+    Returns:
+        The table; None where an analysis file may not name it.
+
+    Raises:
+        InputError: if it is no table.
+
+    Source:
+        none, definition
+    """
+    return None if _path_fault(name, folder) is not None else read_csv_table(folder / name, name)
+
+
+def _path_fault(name: str, folder: Path) -> tuple[str, str, str] | None:
+    """Return what, found and expected of a path that an analysis file may not name; None where it may."""
+    if PurePosixPath(name).is_absolute() or PureWindowsPath(name).anchor or not name.strip():
+        what = "A table that is not beside the analysis file"
+        return what, shown(name), "a path relative to the analysis file"
     try:
         path = folder / name
         leads_away = not _stays_where_it_says(name, folder)
         is_special = path.exists() and not path.is_file() and not path.is_dir()
     except (OSError, ValueError, RuntimeError) as error:
-        section.refuse(
-            "table",
-            "A table whose path cannot be followed",
-            shown(name),
-            f"a path that can be opened ({shortened(str(error))})",
-            remedy,
-        )
-        return None
+        what = "A table whose path cannot be followed"
+        return what, shown(name), f"a path that can be opened ({shortened(str(error))})"
     if leads_away or is_special:
-        found = f"{quoted(name)}, " + (
-            "a link that leads to another folder" if leads_away else "no regular file"
-        )
-        section.refuse(
-            "table",
-            "A table that is not the file it says",
-            found,
-            "a regular file in the folder that the path names",
-            remedy,
-        )
-        return None
-    try:
-        return read_csv_table(path, name)
-    except InputError as error:
-        section.is_sound = False
-        section.findings.problems += error.problems
-        return None
+        found = "a link that leads to another folder" if leads_away else "no regular file"
+        what = "A table that is not the file it says"
+        return what, f"{quoted(name)}, {found}", "a regular file in the folder that the path names"
+    return None
 
 
 def _stays_where_it_says(name: str, folder: Path) -> bool:
