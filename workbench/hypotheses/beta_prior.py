@@ -29,7 +29,14 @@ from workbench.hypotheses.prior_family import (
 
 @dataclass(frozen=True, slots=True)
 class Beta(ContinuousPrior):
-    """Beta with exponents a and b, stretched over low to high."""
+    """Beta with exponents a and b, stretched over low to high.
+
+    Attributes:
+        a: exponent at the lower end: the density goes like y**(a - 1) there; > 0.
+        b: exponent at the upper end; > 0.
+        low: lower end.
+        high: upper end, above it.
+    """
 
     family: ClassVar[str] = "beta"
     a: float

@@ -39,7 +39,11 @@ class Flat(AnalyticShape):
 
 @dataclass(frozen=True, slots=True)
 class Falling(AnalyticShape):
-    """Density ~ exp(-(x - first edge)/scale) (the file's `exponential`)."""
+    """Density ~ exp(-(x - first edge)/scale) (the file's `exponential`).
+
+    Attributes:
+        scale: distance over which the density falls to 1/e; > 0.
+    """
 
     family: ClassVar[str] = "exponential"
     lower_bounds: ClassVar[Bounds] = {"scale": (0.0, True)}
@@ -53,7 +57,11 @@ class Falling(AnalyticShape):
 
 @dataclass(frozen=True, slots=True)
 class PowerLaw(AnalyticShape):
-    """Density ~ x**-index; the first edge is above 0."""
+    """Density ~ x**-index; the first edge is above 0.
+
+    Attributes:
+        index: the power, of either sign.
+    """
 
     family: ClassVar[str] = "powerlaw"
     index: Quantity
@@ -68,7 +76,11 @@ class PowerLaw(AnalyticShape):
 
 @dataclass(frozen=True, slots=True)
 class Bernstein(AnalyticShape):
-    """A polynomial in Bernstein form: coefficients >= 0, of which only the ratios matter."""
+    """A polynomial in Bernstein form: coefficients >= 0, of which only the ratios matter.
+
+    Attributes:
+        coefficients: as many as the degree plus 1; >= 0, not all 0.
+    """
 
     family: ClassVar[str] = "bernstein"
     lower_bounds: ClassVar[Bounds] = {"coefficients": (0.0, False)}
@@ -85,6 +97,9 @@ class Bernstein(AnalyticShape):
         With M_ji the integral of the j-th basis polynomial, normalised to 1, over bin i, and S the sum of c:
             p_i = sum_j c_j M_ji / S,      dp/dc_j = (M_j - p)/S,
             d2p/dc_j dc_l = (2 p - M_j - M_l)/S^2
+
+        Source:
+            None, definition.
         """
         weights = [arguments[key] for key in self.quantities]
         basis = _bernstein_basis(binning, len(weights))

@@ -36,6 +36,14 @@ class CrystalBall(AnalyticShape):
     With t = (x - mean)/sd and a, p the tail and power of a side, the density is proportional to exp(-t^2/2)
     up to |t| = a, and beyond to (p/a)^p exp(-a^2/2) (p/a - a + |t|)^-p, which continues value and slope.
 
+    Attributes:
+        mean: centre of the core.
+        sd: standard deviation of the core; > 0.
+        tail_low: where the lower tail begins, in sd below the mean; > 0.
+        power_low: power of the lower tail; > 1.
+        tail_high: where the upper tail begins, in sd above the mean; > 0.
+        power_high: power of the upper tail; > 1.
+
     Source:
         J. E. Gaiser, PhD thesis, SLAC-R-255 (1982), appendix F, with a tail on both sides; from memory.
     """
@@ -118,9 +126,9 @@ def _with_moving_tails(edges: Edges, z: Array, value: Array, total: Array, argum
 class _Pieces:
     """Derivatives of the integrals over bins and line before normalisation.
 
-    Numbers are counted mean, sd, tail_low, power_low, tail_high, power_high. An edge carries q = B(|z|) on the
-    left and -B(|z|) on the right, B the integral outwards; a bin's integral is the change of q, plus N where
-    the bin holds the centre.
+    Numbers are counted mean, sd, tail_low, power_low, tail_high, power_high. An edge carries q = B(|z|) on
+    the left and -B(|z|) on the right, B the integral outwards; a bin's integral is the change of q, plus N
+    where the bin holds the centre.
     """
 
     def __init__(self, edges: Edges, z: Array, arguments: tuple[Jet, ...]) -> None:
@@ -174,8 +182,9 @@ class _Pieces:
 def _beyond_derivatives(u: Array, a: Array, p: Array) -> tuple[list[Array], list[list[Array]]]:
     """Return first and second derivatives of the integral outwards in u, a and p.
 
-    Beyond the core it is B = exp(b), b = -a^2/2 + ln p - ln a - ln(p - 1) + (1 - p) ln r, r = 1 + a (u - a)/p,
-    so that B_xy = B (b_xy + b_x b_y). Inside, r stays 1 and the normal integral from u to a is added.
+    Beyond the core it is B = exp(b), b = -a^2/2 + ln p - ln a - ln(p - 1) + (1 - p) ln r, with
+    r = 1 + a (u - a)/p, so that B_xy = B (b_xy + b_x b_y). Inside, r stays 1 and the normal integral from u
+    to a is added.
     """
     out = u > a
     r = _ratio(u, a, p)

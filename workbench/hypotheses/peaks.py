@@ -20,7 +20,12 @@ Array = npt.NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True)
 class Gaussian(AnalyticShape):
-    """A normal peak."""
+    """A normal peak.
+
+    Attributes:
+        mean: its centre.
+        sd: its standard deviation; > 0.
+    """
 
     family: ClassVar[str] = "gaussian"
     lower_bounds: ClassVar[Bounds] = {"sd": (0.0, True)}
@@ -37,7 +42,12 @@ class Gaussian(AnalyticShape):
 
 @dataclass(frozen=True, slots=True)
 class BreitWigner(AnalyticShape):
-    """A Lorentz peak; width is the full width at half maximum."""
+    """A Lorentz peak (non-relativistic).
+
+    Attributes:
+        mean: its centre.
+        width: its full width at half maximum; > 0.
+    """
 
     family: ClassVar[str] = "breitwigner"
     lower_bounds: ClassVar[Bounds] = {"width": (0.0, True)}

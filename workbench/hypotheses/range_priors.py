@@ -32,7 +32,12 @@ def _from_nearer_end(low: float, high: float, t: Array) -> Array:
 
 @dataclass(frozen=True, slots=True)
 class Uniform(ContinuousPrior):
-    """Uniform between low and high."""
+    """Uniform between low and high.
+
+    Attributes:
+        low: lower end.
+        high: upper end, above it.
+    """
 
     family: ClassVar[str] = "uniform"
     low: float
@@ -89,7 +94,12 @@ class Uniform(ContinuousPrior):
 
 @dataclass(frozen=True, slots=True)
 class LogUniform(ContinuousPrior):
-    """Uniform in ln x between low and high."""
+    """Uniform in ln x between low and high.
+
+    Attributes:
+        low: lower end; > 0.
+        high: upper end, above it.
+    """
 
     family: ClassVar[str] = "loguniform"
     low: float
@@ -160,7 +170,11 @@ class LogUniform(ContinuousPrior):
 
 @dataclass(frozen=True, slots=True)
 class Fixed:
-    """A parameter held at one value: it has no coordinate."""
+    """A parameter held at one value: it has no coordinate.
+
+    Attributes:
+        value: the value.
+    """
 
     family: ClassVar[str] = "fixed"
     value: float

@@ -1,4 +1,4 @@
-"""Priors on positive numbers: exponential, half-normal, log-normal, gamma."""
+"""Priors on positive numbers: exponential, half-normal, log-normal."""
 
 from __future__ import annotations
 
@@ -13,8 +13,6 @@ from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     LN_SQRT_TWO_PI,
     ROOT_TWO,
-    SERIES_BELOW,
-    TAIL_KNOWN,
     TINY,
     Array,
     ContinuousPrior,
@@ -25,7 +23,6 @@ from workbench.hypotheses.prior_family import (
     positive_fault,
     refuse,
     standard_from_ln_tails,
-    standard_from_tails,
 )
 
 LN_TWO = float(np.log(2.0))
@@ -51,7 +48,11 @@ class PositivePrior(ContinuousPrior):
 
 @dataclass(frozen=True, slots=True)
 class Exponential(PositivePrior):
-    """Exponential with a mean."""
+    """Exponential with a mean.
+
+    Attributes:
+        mean: the mean; > 0.
+    """
 
     family: ClassVar[str] = "exponential"
     mean: float = field()  # field() keeps the inherited property from being its default
@@ -100,7 +101,11 @@ class Exponential(PositivePrior):
 
 @dataclass(frozen=True, slots=True)
 class HalfNormal(PositivePrior):
-    """The positive half of a normal around 0; sd is that of the whole normal."""
+    """The positive half of a normal around 0.
+
+    Attributes:
+        sd: standard deviation of the whole normal; > 0. `moments` are those of the half.
+    """
 
     family: ClassVar[str] = "halfnormal"
     sd: float = field()
@@ -151,7 +156,12 @@ class HalfNormal(PositivePrior):
 
 @dataclass(frozen=True, slots=True)
 class LogNormal(PositivePrior):
-    """ln x is normal around ln median; one standard deviation multiplies by factor."""
+    """ln x is normal.
+
+    Attributes:
+        median: the median; > 0.
+        factor: what one standard deviation multiplies by; > 1.
+    """
 
     family: ClassVar[str] = "lognormal"
     median: float = field()
@@ -215,84 +225,3 @@ class LogNormal(PositivePrior):
     def text(self) -> str:
         """Return the prior in words."""
         return f"log-normal with median {self.median:g}, times or over {self.factor:g}"
-
-
-@dataclass(frozen=True, slots=True)
-class Gamma(PositivePrior):
-    """Gamma with density proportional to x**(shape - 1) exp(-rate x)."""
-
-    family: ClassVar[str] = "gamma"
-    shape: float
-    rate: float
-
-    def __post_init__(self) -> None:
-        refuse(
-            self.family,
-            *numbers_faults(shape=self.shape, rate=self.rate),
-            positive_fault("shape", self.shape),
-            positive_fault("rate", self.rate),
-        )
-
-    @property
-    def moments(self) -> Moments:
-        """Return shape/rate and sqrt(shape)/rate."""
-        return Moments(self.shape / self.rate, self.shape**0.5 / self.rate)
-
-    def _ln_inside(self, t: Array) -> Array:
-        """Return ln(rate x); the first term of the power series where rate x would underflow."""
-        tail = special.ndtr(-np.abs(t))
-        inside = np.where(
-            t < 0.0, special.gammaincinv(self.shape, tail), special.gammainccinv(self.shape, tail)
-        )
-        ln_end: Array = (special.log_ndtr(t) + special.gammaln(self.shape + 1.0)) / self.shape
-        return np.where(ln_end < SERIES_BELOW, ln_end, np.log(np.maximum(inside, TINY)))
-
-    def _ln_slope(self, t: Array, ln_y: Array) -> Array:
-        """Return d ln(rate x)/dt."""
-        ln_slope = -0.5 * t * t - LN_SQRT_TWO_PI + special.gammaln(self.shape) - self.shape * ln_y
-        slope: Array = np.exp(ln_slope + np.exp(ln_y))
-        return slope
-
-    def from_standard(self, t: npt.ArrayLike) -> Derivatives:
-        """Return the gamma quantile of Phi(t) with derivatives."""
-        u = as_array(t)
-        held = np.clip(u, -TAIL_KNOWN, TAIL_KNOWN)
-        ln_y = self._ln_inside(held)
-        if np.any(held != u):
-            slope = self._ln_slope(held, ln_y)
-            bend = slope * (-held - (self.shape - np.exp(ln_y)) * slope)
-            series = ln_y + (u - held) * (slope + 0.5 * (u - held) * bend)
-            ln_y = np.where(held == u, ln_y, series)
-        y, rate = np.exp(ln_y), self._ln_slope(u, ln_y)
-        first = y * rate / self.rate
-        second = first * (-u - (self.shape - 1.0 - y) * rate)
-        return Derivatives(np.maximum(y, TINY) / self.rate, first, second)
-
-    def to_standard(self, x: npt.ArrayLike) -> Array:
-        """Return t of x."""
-        y = np.maximum(as_array(x) * self.rate, 0.0)
-        return standard_from_tails(special.gammainc(self.shape, y), special.gammaincc(self.shape, y))
-
-    def ln_density(self, x: npt.ArrayLike) -> Array:
-        """Return the gamma ln density."""
-        place = as_array(x)
-        y = np.maximum(place * self.rate, 0.0)
-        with np.errstate(divide="ignore"):
-            inner = special.xlogy(self.shape - 1.0, y) - y - special.gammaln(self.shape) + np.log(self.rate)
-        return np.where(place >= 0.0, inner, -np.inf)
-
-    def fit_penalty(self, x: npt.ArrayLike) -> Derivatives:
-        """Return (shape - 1) ln(rate x) - rate x, 0 at its largest."""
-        y = np.maximum(as_array(x) * self.rate, TINY**0.25)
-        power = self.shape - 1.0
-        peak = float(special.xlogy(power, power) - power) if power > 0.0 else 0.0
-        value = special.xlogy(power, y) - y - peak
-        return Derivatives(value, (power / y - 1.0) * self.rate, -power / y**2 * self.rate**2)
-
-    def scaled(self, factor: float) -> Self | None:
-        """Return the gamma with its sd scaled and its mean kept."""
-        return replace(self, shape=self.shape / factor**2, rate=self.rate / factor**2)
-
-    def text(self) -> str:
-        """Return the prior in words."""
-        return f"gamma with shape {self.shape:g}, rate {self.rate:g}"

@@ -15,7 +15,11 @@ from workbench.hypotheses.voigt import Voigt
 
 @dataclass(frozen=True, slots=True)
 class Template:
-    """Expected events per bin from a column of the region's table."""
+    """Expected events per bin from a column of the region's table.
+
+    Attributes:
+        column: the column's name.
+    """
 
     family: ClassVar[str] = "template"
     column: str
@@ -23,7 +27,13 @@ class Template:
 
 @dataclass(frozen=True, slots=True)
 class Templates:
-    """Templates at several values of a parameter, interpolated bin by bin."""
+    """Templates at several values of a parameter, interpolated bin by bin.
+
+    Attributes:
+        parameter: the parameter's name.
+        at: its values, ascending.
+        columns: the column for each of them.
+    """
 
     family: ClassVar[str] = "templates"
     parameter: str

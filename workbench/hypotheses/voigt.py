@@ -57,7 +57,13 @@ _FAR_TAIL = np.append(0.0, _FAR[1:] / (2 * _ORDERS[1:]))
 
 @dataclass(frozen=True, slots=True)
 class Voigt(AnalyticShape):
-    """A Lorentz peak of a full width, smeared by a normal one of a standard deviation."""
+    """A Lorentz peak of a full width, smeared by a normal one of a standard deviation.
+
+    Attributes:
+        mean: its centre.
+        width: full width at half maximum of the Lorentz peak; > 0.
+        sd: standard deviation of the smearing; > 0.
+    """
 
     family: ClassVar[str] = "voigt"
     lower_bounds: ClassVar[Bounds] = {"width": (0.0, True), "sd": (0.0, True)}
