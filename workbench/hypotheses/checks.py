@@ -10,7 +10,7 @@ from workbench.hypotheses.checks_processes import process_faults
 from workbench.hypotheses.checks_uncertainties import uncertainty_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
-from workbench.hypotheses.faults import Fault, quoted, shortened, shown
+from workbench.hypotheses.faults import Fault, quoted, shown
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.unknown_names import unknown_fault
 
@@ -117,7 +117,7 @@ def _hypothesis_faults(name: str, hypothesis: Hypothesis, declared: Declared) ->
             "A prior probability that is not above 0",
             shown(hypothesis.prior),
             "a number > 0, relative to the other hypotheses",
-            "leave out a hypothesis that is ruled out beforehand",
+            "write a number above 0, or leave out a hypothesis that is ruled out",
         )
     if not hypothesis.processes:
         yield Fault(
@@ -136,7 +136,7 @@ def _hypothesis_faults(name: str, hypothesis: Hypothesis, declared: Declared) ->
             yield Fault(
                 path,
                 "A process listed twice",
-                shortened(process),
+                quoted(process),
                 "each process once",
                 "leave out the second; two of a kind are a factor 2",
             )
@@ -159,7 +159,7 @@ def _fix_faults(name: str, hypothesis: Hypothesis, declared: Declared) -> Iterat
             yield Fault(
                 path,
                 "A held parameter that the hypothesis does not use",
-                shortened(parameter),
+                quoted(parameter),
                 "a parameter of one of its processes",
                 nearest(parameter, used),
             )

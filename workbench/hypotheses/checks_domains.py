@@ -55,7 +55,7 @@ def _shape_domain_faults(path: KeyPath, shape: Shape, reaches: dict[str, Reach])
             continue
         if bound is not None:
             where = (*path, "shape", shape.family, *field_path(key))
-            yield from _bound_faults(where, quantity, bound, f"{key} of {shape.family}", reaches)
+            yield from _bound_faults(where, quantity, bound, f"The {key} of the {shape.family}", reaches)
 
 
 def _is_as_good_as_positive(quantity: Quantity, reaches: dict[str, Reach]) -> bool:
@@ -86,7 +86,7 @@ def _bound_faults(
     condition = f"{'above' if is_strict else 'at least'} {shown(lowest)}"
     if low_high[0] < lowest:
         placed: list[tuple[KeyPath, float | str | Curve]] = [(path, one) for one in ones]
-        reason = f"{subject} is {condition}"
+        reason = f"{subject.lower()} is {condition}"
         yield from _culprits(placed, lowest, f"{subject} can be below {shown(lowest)}", reason, reaches)
         return
     if is_strict and len(ones) == 1:

@@ -10,7 +10,7 @@ from workbench.counts.region import Region
 from workbench.errors import nearest
 from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
-from workbench.hypotheses.faults import Fault, KeyPath, field_path, shown
+from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shown
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, reaches_of
@@ -43,7 +43,7 @@ def _process(
             "A process in no region",
             "none",
             "at least one region",
-            f"add [processes.NAME.regions.REGION] for one of: {', '.join(declared.regions)}",
+            f"add [{dotted((*path, 'regions'))}.REGION], REGION one of: {', '.join(declared.regions)}",
         )
     for place, factor in enumerate(process.factors):
         yield from _atom((*path, "factors", place), factor, declared, reaches)
@@ -97,7 +97,7 @@ def _shape_in_region(
             yield Fault(
                 (*path, *key),
                 "A template without events, but a yield to share out",
-                f"{column}: the column's sum is 0",
+                f"{quoted(column)}, whose sum is 0",
                 "a column with a sum above 0",
                 "fill the column, or leave the yield out",
             )

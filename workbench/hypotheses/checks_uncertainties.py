@@ -85,7 +85,12 @@ def _effect(
                 "add the region to the source, or leave the effect out",
             )
     acted = regions_acted_on(effect, source, process)
-    if not acted and effect.regions is None and all(one in declared.regions for one in source.regions or ()):
+    if (
+        not acted
+        and process.regions
+        and effect.regions is None
+        and all(one in declared.regions for one in source.regions or ())
+    ):
         yield Fault(
             path,
             "An effect that acts nowhere",
@@ -122,11 +127,12 @@ def _variation(
     path: KeyPath, columns: tuple[str, str], acted: Collection[str], process: Process, declared: Declared
 ) -> Iterator[Fault]:
     for name in acted:
-        if not isinstance(process.regions[name].shape, Template):
+        shape = process.regions[name].shape
+        if not isinstance(shape, Template):
             yield Fault(
                 path,
                 "A template variation of a shape that is no template",
-                f"{quoted(process.name)} is a {process.regions[name].shape.family} in {quoted(name)}",
+                f"{quoted(process.name)} has the shape {shape.family} in {quoted(name)}",
                 "a process whose shape is a template",
                 "give numbers, or limit the effect to other regions",
             )

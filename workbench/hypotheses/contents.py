@@ -60,12 +60,14 @@ def content_of(analysis: Analysis) -> Content:
                 "uncertainty": exposure.uncertainty,
             }
         )
-    content["regions"] = {region.name: region_content(region) for region in analysis.regions}
-    content["parameters"] = {one.name: _parameter(one) for one in analysis.parameters}
-    content["processes"] = {one.name: _process(one) for one in analysis.processes}
-    content["uncertainties"] = {one.name: _uncertainty(one) for one in analysis.uncertainties}
-    content["hypotheses"] = {one.name: _hypothesis(one) for one in analysis.hypotheses}
-    return content
+    kinds: dict[str, Content] = {
+        "regions": {region.name: region_content(region) for region in analysis.regions},
+        "parameters": {one.name: _parameter(one) for one in analysis.parameters},
+        "processes": {one.name: _process(one) for one in analysis.processes},
+        "uncertainties": {one.name: _uncertainty(one) for one in analysis.uncertainties},
+        "hypotheses": {one.name: _hypothesis(one) for one in analysis.hypotheses},
+    }
+    return content | {kind: named for kind, named in kinds.items() if named}
 
 
 def digest_of_analysis(analysis: Analysis) -> str:

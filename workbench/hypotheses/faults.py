@@ -41,7 +41,7 @@ def dotted(path: KeyPath) -> str:
             text += f"[{step + 1}]"
         else:
             text += ("." if text else "") + (step if BARE_KEY.fullmatch(step) else quoted(step))
-    return text or "the whole analysis"
+    return text
 
 
 def field_path(key: str) -> KeyPath:
@@ -59,6 +59,12 @@ def quoted(word: str) -> str:
 def shortened(text: str) -> str:
     """Return a text cut to what fits on a line of the terminal."""
     return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
+
+
+def toml_fault_text(text: str) -> str:
+    """Return what the standard library's TOML reader found, in words that say what it is."""
+    path = text.replace("('", "").replace("', '", ".").replace("',)", "").replace("')", "")
+    return path.replace("Invalid", "Unreadable").replace("invalid", "unreadable")
 
 
 def shown(value: object) -> str:

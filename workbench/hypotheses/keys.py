@@ -7,7 +7,7 @@ was read is used only where nothing was noted.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 
 from workbench.errors import Caution, Problem, nearest
 from workbench.hypotheses.faults import Fault, KeyPath, Place, shortened, shown
@@ -17,19 +17,28 @@ class Findings:
     """The problems and cautions met while reading one file.
 
     Attributes:
-        problems: what is wrong, in the order met.
         cautions: what is worth knowing.
         place: key path to words.
     """
 
-    def __init__(self, place: Place) -> None:
+    def __init__(self, place: Place, line: Callable[[KeyPath], int | None] | None = None) -> None:
         self.place = place
-        self.problems: list[Problem] = []
         self.cautions: list[Caution] = []
+        self._line = line
+        self._problems: list[tuple[int, Problem]] = []
+
+    @property
+    def problems(self) -> list[Problem]:
+        """Return what is wrong, from the top of the file to its end."""
+        return [problem for _, problem in sorted(self._problems, key=lambda one: one[0])]
 
     def add(self, fault: Fault) -> None:
         """Note a fault."""
-        self.problems.append(fault.problem(self.place))
+        self.tell(fault.problem(self.place), fault.path)
+
+    def tell(self, problem: Problem, path: KeyPath) -> None:
+        """Note a problem that a key leads to."""
+        self._problems.append(((self._line(path) or 0) if self._line else 0, problem))
 
 
 class Section:

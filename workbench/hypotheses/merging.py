@@ -43,7 +43,10 @@ def _merge(target: MutableMapping[str, Any], content: Content, path: tuple[str, 
     for key, value in content.items():
         if key in target:
             old = target[key]
-            if isinstance(old, MutableMapping) and isinstance(value, Mapping) and value:
+            is_another = (
+                isinstance(old, InlineTable) and isinstance(value, Mapping) and not old.keys() & value.keys()
+            )
+            if isinstance(old, MutableMapping) and isinstance(value, Mapping) and value and not is_another:
                 _merge(old, cast("Content", value), (*path, key))
             elif not _is_same(old, value):
                 target[key] = _inline(value)

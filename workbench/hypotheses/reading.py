@@ -15,7 +15,7 @@ from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import Exposure
-from workbench.hypotheses.faults import KeyPath, dotted, shortened, shown
+from workbench.hypotheses.faults import KeyPath, dotted, shortened, shown, toml_fault_text
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.keys import Findings, Section
 from workbench.hypotheses.lines import key_lines, line_of
@@ -67,11 +67,14 @@ def analysis_from_text(text: str, folder: Path, shown_as: str) -> Analysis:
     content = parsed(text, shown_as)
     lines = key_lines(text)
 
-    def place(path: KeyPath) -> str:
-        line = line_of(path, lines)
-        return f"{shown_as}, line {line}, {dotted(path)}" if line else f"{shown_as}, {dotted(path)}"
+    def line(path: KeyPath) -> int | None:
+        return line_of(path, lines)
 
-    findings = Findings(place)
+    def place(path: KeyPath) -> str:
+        where = f"{shown_as}, line {line(path)}" if line(path) else shown_as
+        return f"{where}, {dotted(path)}" if path else where
+
+    findings = Findings(place, line)
     root = Section(content, (), findings)
     _check_format(root)
     title = root.text("title", Path(shown_as).stem)
@@ -94,12 +97,12 @@ def parsed(text: str, shown_as: str) -> dict[str, object]:
 
 
 def _syntax_problem(error: Exception, shown_as: str) -> Problem:
-    where, found = shown_as, shortened(str(error))
+    where, found = shown_as, shortened(toml_fault_text(str(error)))
     if isinstance(error, RecursionError):
         found = "brackets nested too deeply to be read"
     match = SYNTAX_PLACE.match(str(error))
     if match:
-        found = shortened(match["what"])
+        found = shortened(toml_fault_text(match["what"]))
         line = f"line {match['line']}, column {match['column']}" if match["line"] else "the last line"
         where = f"{shown_as}, {line}"
     return Problem(

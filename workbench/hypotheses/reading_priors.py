@@ -10,15 +10,12 @@ from typing import Any
 import numpy as np
 
 from workbench.errors import InputError, nearest
-from workbench.hypotheses.faults import Fault, shortened, shown
+from workbench.hypotheses.faults import Fault, quoted, shown, toml_fault_text
 from workbench.hypotheses.keys import Findings, Section
 from workbench.hypotheses.priors import FAMILIES, Prior
 
 PRIOR = "{ FAMILY = { ... } }"
-IMPROPER = (
-    "finite numbers: a prior that goes on for ever cannot be normalised, and the evidence would depend on "
-    "where it was cut off"
-)
+IMPROPER = "a finite number: a prior without end cannot be normalised, and the evidence would be 0"
 
 
 def read_prior(section: Section, key: str = "prior") -> Prior | None:
@@ -41,7 +38,7 @@ def read_prior(section: Section, key: str = "prior") -> Prior | None:
         section.refuse(
             key,
             "A prior family that is not known",
-            shortened(family),
+            quoted(family),
             "a family of proper priors",
             nearest(family, FAMILIES),
         )
@@ -111,13 +108,18 @@ def parse_prior(text: str, shown_as: str = "--strength") -> Prior:
             f"quote the whole value for the shell; {_reason(error)}",
         )
         raise InputError(fault.problem(findings.place)) from error
-    section = Section(content, (), findings)
-    prior = read_prior(section)
-    section.close()
+    if len(content) > 1:
+        fault = Fault(
+            ("prior",), "More than one value where a prior belongs", shown(text), PRIOR, "give one prior"
+        )
+        raise InputError(fault.problem(findings.place))
+    prior = read_prior(Section(content, (), findings))
     if prior is None or findings.problems:
         raise InputError(*findings.problems)
     return prior
 
 
 def _reason(error: Exception) -> str:
-    return "the brackets are nested too deeply" if isinstance(error, RecursionError) else str(error)
+    if isinstance(error, RecursionError):
+        return "its brackets are nested too deeply"
+    return toml_fault_text(str(error).partition(" (at ")[0]).lower()

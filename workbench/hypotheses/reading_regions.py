@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path, PurePosixPath, PureWindowsPath
 
 import numpy as np
@@ -45,7 +46,8 @@ def read_region(name: str, section: Section, folder: Path) -> Region | None:
     try:
         region = Region(name=name, table=table, **choices)  # type: ignore[arg-type]  # one dict of several types
     except InputError as error:
-        findings.problems += [_placed(problem, name, findings) for problem in error.problems]
+        for problem in error.problems:
+            findings.tell(_placed(problem, name, findings), section.path)
         return None
     findings.cautions += region.cautions
     return region
@@ -83,7 +85,8 @@ def _table(section: Section, folder: Path) -> Table | None:
         return Table(Binning.from_edges(np.array(edges)), counts, source=INLINE_SOURCE)
     except InputError as error:
         section.is_sound = False
-        section.findings.problems += [_inline(problem, section) for problem in error.problems]
+        for problem in error.problems:
+            section.findings.tell(_inline(problem, section), section.path)
         return None
 
 
@@ -98,7 +101,10 @@ def _table_file(name: str, section: Section, folder: Path) -> Table | None:
         return read_csv_table(folder / name, name)
     except InputError as error:
         section.is_sound = False
-        section.findings.problems += error.problems
+        for problem in error.problems:
+            where = f"{section.findings.place((*section.path, 'table'))}, file {name}"
+            told = replace(problem, where=where) if problem.where == name else problem
+            section.findings.tell(told, section.path)
         return None
 
 
@@ -157,7 +163,7 @@ def _placed(problem: Problem, name: str, findings: Findings) -> Problem:
         return problem
     key = problem.where.removeprefix(subject).removeprefix(", ")
     path: KeyPath = ("regions", name, key) if key else ("regions", name)
-    return Problem(problem.what, findings.place(path), problem.found, problem.expected, problem.remedy)
+    return replace(problem, where=findings.place(path))
 
 
 def _inline(problem: Problem, section: Section) -> Problem:
@@ -166,9 +172,7 @@ def _inline(problem: Problem, section: Section) -> Problem:
     where = section.findings.place((*section.path, key))
     _, _, detail = problem.where.partition(", ")
     bins = detail.partition(", column")[0] if detail.startswith("bin") else ""
-    return Problem(
-        problem.what, where + (f", {bins}" if bins else ""), problem.found, problem.expected, problem.remedy
-    )
+    return replace(problem, where=where + (f", {bins}" if bins else ""))
 
 
 def _errors_left_out(name: str, table: Table) -> Caution:

@@ -6,7 +6,7 @@ from dataclasses import fields
 from typing import Any, Literal
 
 from workbench.errors import nearest
-from workbench.hypotheses.faults import shortened, shown
+from workbench.hypotheses.faults import quoted, shown
 from workbench.hypotheses.keys import Section
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
@@ -74,7 +74,7 @@ def read_shape(section: Section) -> Shape | None:
         section.refuse(
             "shape",
             "A shape family that is not known",
-            shortened(family),
+            quoted(family),
             "a family of shapes",
             nearest(family, SHAPES),
         )

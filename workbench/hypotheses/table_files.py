@@ -72,7 +72,9 @@ def _candidates(region: Region, folder: Path, mentioned: str | None) -> Iterator
     yield source
     try:
         if Path(source).is_file():
-            yield Path(os.path.relpath(source, folder)).as_posix()
+            name = Path(os.path.relpath(source, folder)).as_posix()
+            if not name.startswith("../.."):  # a path across half the disk breaks when either end moves
+                yield name
     except (OSError, ValueError):  # a description rather than a file, or a file on another drive
         return
 

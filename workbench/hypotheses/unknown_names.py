@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Collection
 
 from workbench.errors import nearest
 from workbench.hypotheses.faults import Fault, KeyPath, quoted, shortened
+
+NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
 
 
 def unknown_fault(
@@ -24,7 +27,10 @@ def unknown_fault(
         The fault.
     """
     listed = ", ".join(sorted(known)) if known else f"none is {owner}"
-    remedy = nearest(name, known) if known else f"declare the {kind} {quoted(name)}, or write a number"
+    if NUMBER.fullmatch(name.strip()) and kind == "parameter":
+        remedy = f"write {name.strip()} without quotes, if it is a number"
+    else:
+        remedy = nearest(name, known) if known else f"declare the {kind} {quoted(name)}"
     return Fault(
         path, f"A {kind} that is not {owner}", quoted(name), f"a {kind}: {shortened(listed)}", remedy
     )

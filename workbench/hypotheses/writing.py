@@ -75,7 +75,7 @@ def _text(
     content = content_of(analysis)
     regions = cast("dict[str, Content]", content["regions"])
     for name, one in bins.items():
-        regions[name] |= one.keys
+        regions[name] = one.keys | regions[name]
     if original is not None:
         is_default = analysis.hypotheses == default_hypotheses(analysis.processes)
         kept = {
@@ -103,7 +103,7 @@ def _text(
 
 def _merged(original: str, content: Content) -> str | None:
     """Return the original with the new content, or None where its layout cannot be edited in place."""
-    from workbench.hypotheses.merging import merged_text  # noqa: PLC0415  # tomlkit is needed only here
+    from workbench.hypotheses.merging import merged_text  # tomlkit is slow and needed only here
 
     try:
         return merged_text(original, content)
