@@ -17,7 +17,7 @@ from workbench.commands.terminal import Progress
 from workbench.ensembles.adequacy import adequacy
 from workbench.ensembles.predictive import prior_predictive
 from workbench.records.check_record import check_record
-from workbench.records.outcomes import Checked
+from workbench.records.outcomes import CheckOutcome
 from workbench.records.screens.check import check_screen
 
 
@@ -37,7 +37,7 @@ def run(options: argparse.Namespace) -> int:
     return 0
 
 
-def _checked(options: argparse.Namespace) -> Checked:
+def _checked(options: argparse.Namespace) -> CheckOutcome:
     analysis, origin = load(options, seed=options.seed)
     names = [hypothesis.name for hypothesis in analysis.hypotheses]
     most = options.pseudo_experiments
@@ -50,4 +50,4 @@ def _checked(options: argparse.Namespace) -> Checked:
             progress.say(f"pseudo-experiments of {name}")
             adequacies.append(adequacy(analysis, name, seed=options.seed, most=most))
     asked = {**origin.options, "pseudo_experiments": most}
-    return Checked(analysis, replace(origin, options=asked), predictives, tuple(adequacies))
+    return CheckOutcome(analysis, replace(origin, options=asked), predictives, tuple(adequacies))

@@ -33,7 +33,7 @@ def fault_problem(error: BaseException, asked: Sequence[str]) -> Problem:
 
 def _write(error: BaseException, command: str) -> Path | None:
     try:
-        from workbench.records.provenance import versions  # noqa: PLC0415 -- needed only when something broke
+        from workbench.records.provenance import versions
 
         made_with = "\n".join(f"{name} {version}" for name, version in versions().items())
     except Exception as other:  # noqa: BLE001 -- a broken installation must not hide the first fault

@@ -11,7 +11,7 @@ from workbench.commands.terminal import Progress
 from workbench.likelihood.fit import fit
 from workbench.likelihood.results import Ending
 from workbench.records.fit_record import fit_record
-from workbench.records.outcomes import FittedAll
+from workbench.records.outcomes import FitOutcome
 from workbench.records.screens.fit import fit_screen
 
 UNUSABLE = (Ending.NOT_CONVERGED, Ending.NO_SUPPORT)
@@ -33,6 +33,6 @@ def run(options: argparse.Namespace) -> int:
         for hypothesis in analysis.hypotheses:
             progress.say(f"fitting {hypothesis.name}")
             fits.append(fit(analysis, hypothesis.name, asymmetric=True))
-    outcome = FittedAll(analysis, origin, tuple(fits))
+    outcome = FitOutcome(analysis, origin, tuple(fits))
     deliver(options, lambda: fit_screen(outcome), lambda: fit_record(outcome), analysis.cautions)
     return 1 if any(item.ending in UNUSABLE for item in fits) else 0

@@ -71,7 +71,7 @@ def load(options: argparse.Namespace, *, seed: int | None) -> tuple[Analysis, Or
     suffix = Path(options.file).suffix.lower()
     if suffix in ANALYSES:
         _refuse_histogram_options(options)
-        from workbench.hypotheses.reading import read_analysis  # noqa: PLC0415 -- only one kind of input is read
+        from workbench.hypotheses.reading import read_analysis
 
         analysis = read_analysis(options.file)
         return analysis, Origin(name, digest_of(read_bytes(Path(options.file), name)), seed)
@@ -117,8 +117,8 @@ def refuse_planning(analysis: Analysis, command: str) -> None:
 
 
 def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) -> tuple[Analysis, Origin]:
-    from workbench.counts.csv_table import read_csv_table  # noqa: PLC0415 -- only one kind of input is read
-    from workbench.hypotheses.bare import analysis_from_table, parse_prior  # noqa: PLC0415
+    from workbench.counts.csv_table import read_csv_table
+    from workbench.hypotheses.bare import analysis_from_table, parse_prior
 
     _refuse_existing(options.save)
     strength = parse_prior(options.strength or DEFAULT_STRENGTH)
@@ -137,7 +137,7 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
     if options.save is None:
         notes.append("Add --save FILE.toml to keep the analysis file that this made.")
     else:
-        from workbench.hypotheses.writing import write_analysis  # noqa: PLC0415 -- slow to import, seldom needed
+        from workbench.hypotheses.writing import write_analysis
 
         write_analysis(analysis, Path(options.save))
         notes.append(f"The analysis file that this made is {options.save}.")

@@ -101,7 +101,7 @@ def _dispatch(asked: list[str]) -> int:
 
 def _about(flag: str) -> int:
     if flag == "--version":
-        from workbench import __version__  # noqa: PLC0415 -- asked for rarely
+        from workbench import __version__
 
         print_text(f"oddsbench {__version__}\n", sys.stdout)
         return DONE

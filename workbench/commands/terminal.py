@@ -21,7 +21,7 @@ def can_show(text: str, stream: IO[str]) -> bool:
 def print_text(text: str, stream: IO[str]) -> None:
     """Write a text, in ASCII where the stream's encoding can show no more."""
     if not can_show(text, stream):
-        from workbench.records.screens.layout import plain_ascii  # noqa: PLC0415 -- few terminals need it
+        from workbench.records.screens.layout import plain_ascii
 
         text = plain_ascii(text)
     stream.write(text)

@@ -18,7 +18,7 @@ from workbench.commands.terminal import Progress
 from workbench.ensembles.adequacy import adequacy
 from workbench.evidence.weigh import weigh
 from workbench.likelihood.fit import fit
-from workbench.records.outcomes import Weighed
+from workbench.records.outcomes import WeighOutcome
 from workbench.records.screens.weigh import weigh_screen
 from workbench.records.weigh_record import weigh_record
 
@@ -36,19 +36,19 @@ def run(options: argparse.Namespace) -> int:
     """Weigh the hypotheses and return the exit code: 0, or 1 when an evidence is not established."""
     refuse_unwritable("--output", options.output)
     if options.picture is not None:
-        from workbench.commands.pictures import refuse_other_kinds  # noqa: PLC0415 -- seldom asked for
+        from workbench.commands.pictures import refuse_other_kinds
 
         refuse_other_kinds("--picture", options.picture)
     outcome = _weighed(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_weighed  # noqa: PLC0415 -- matplotlib is slow to import
+        from workbench.commands.pictures import save_weighed
 
         save_weighed(outcome, options.picture)
     deliver(options, lambda: weigh_screen(outcome), lambda: weigh_record(outcome), outcome.cautions)
     return 0 if outcome.weighing.established else 1
 
 
-def _weighed(options: argparse.Namespace) -> Weighed:
+def _weighed(options: argparse.Namespace) -> WeighOutcome:
     analysis, origin = load(options, seed=options.seed)
     refuse_planning(analysis, "weigh")
     most = options.pseudo_experiments
@@ -62,4 +62,4 @@ def _weighed(options: argparse.Namespace) -> Weighed:
         progress.say("weighing")
         weighing = weigh(analysis, seed=options.seed)
     asked = {**origin.options, "pseudo_experiments": most}
-    return Weighed(analysis, replace(origin, options=asked), weighing, tuple(adequacies), tuple(fits))
+    return WeighOutcome(analysis, replace(origin, options=asked), weighing, tuple(adequacies), tuple(fits))

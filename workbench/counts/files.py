@@ -61,13 +61,26 @@ def write_text_atomically(path: Path, text: str) -> None:
     Raises:
         InputError: if the folder is missing or can't be written to.
     """
+    write_bytes_atomically(path, text.encode("utf-8"))
+
+
+def write_bytes_atomically(path: Path, data: bytes) -> None:
+    """Write a file so that whoever looks sees the old content or the new, never a part.
+
+    Args:
+        path: the file; a link is followed, an existing file keeps its permissions.
+        data: what it shall hold.
+
+    Raises:
+        InputError: if the folder is missing or can't be written to.
+    """
     target = path.resolve()
     try:
         handle, name = tempfile.mkstemp(dir=target.parent, prefix=f".{target.name}.")
         scratch = Path(name)
         try:
             with os.fdopen(handle, "wb") as stream:
-                stream.write(text.encode("utf-8"))
+                stream.write(data)
                 stream.flush()
                 os.fsync(stream.fileno())
             scratch.chmod(_mode_for(target))

@@ -11,13 +11,13 @@ from workbench.ensembles.predictive import PriorPredictive
 from workbench.hypotheses.analysis import Analysis
 from workbench.records.descriptions import column_uses, source_words
 from workbench.records.files import FORMAT
-from workbench.records.outcomes import Checked
+from workbench.records.outcomes import CheckOutcome
 from workbench.records.provenance import inputs, versions
 from workbench.records.sentences import verdict_on_all
 from workbench.records.weigh_record import adequacy_entry, caution_entries, origin_entries
 
 
-def check_record(outcome: Checked) -> dict[str, Any]:
+def check_record(outcome: CheckOutcome) -> dict[str, Any]:
     """Return the record of a check as JSON-ready values.
 
     Args:

@@ -6,12 +6,12 @@ from typing import Any
 
 from workbench.likelihood.results import Fit, Fitted
 from workbench.records.files import FORMAT
-from workbench.records.outcomes import FittedAll
+from workbench.records.outcomes import FitOutcome
 from workbench.records.provenance import inputs, versions
 from workbench.records.weigh_record import caution_entries, origin_entries
 
 
-def fit_record(outcome: FittedAll) -> dict[str, Any]:
+def fit_record(outcome: FitOutcome) -> dict[str, Any]:
     """Return the record of the fits as JSON-ready values, the whole correlation matrices included.
 
     Args:

@@ -6,6 +6,7 @@ Texts use the true minus sign, ± and ×; `workbench.records.screens.layout.plai
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 _LN_10 = math.log(10.0)
 _PLAIN_BELOW = math.log(1e6)  # longer numbers are read wrongly, so they are shown by their power of ten
@@ -84,19 +85,48 @@ def with_error(value: float, error: float | None) -> str:
     return f"({fixed(value / scale, decimals)} ± {fixed(error / scale, decimals)}) × 10^{_power(exponent)}"
 
 
+def with_errors(values: Sequence[float], errors: Sequence[float]) -> list[str]:
+    """Return several "value ± error" with the same decimals, so that they can be compared down a column.
+
+    Args:
+        values: the numbers.
+        errors: one standard error of each; 0 where it is exact.
+    """
+    known = [error for error in errors if error > 0.0]
+    least = min((decimals_for(error) for error in known), default=4)
+    needed = max((-math.floor(math.log10(error)) for error in known), default=4)
+    decimals = min(max(least, needed, 0), 8)
+    return [
+        f"{fixed(value, decimals)} ± {fixed(error, decimals)}"
+        if error > 0.0
+        else f"{fixed(value, decimals)} (exact)"
+        for value, error in zip(values, errors, strict=True)
+    ]
+
+
 def with_sides(value: float, low: float | None, high: float | None) -> str:
-    """Return "value +high −low" with matching digits; a side without an error says "none".
+    """Return "value +high −low" with two digits of the smaller error; says where one side has none.
 
     Args:
         value: the number.
         low: its error downwards, negative; None where there is none.
         high: its error upwards; None where there is none.
     """
-    sizes = [abs(side) for side in (low, high) if side is not None and side != 0.0]
-    decimals = max((min(decimals_for(size), 10) for size in sizes), default=4)
-    up = f"+{fixed(high, decimals)}" if high is not None else "+none"
-    down = f"−{fixed(abs(low), decimals)}" if low is not None else "−none"
+    decimals = _two_digits([low, high])
+    up = f"+{fixed(high, decimals)}" if high is not None else "no error above"
+    down = f"−{fixed(abs(low), decimals)}" if low is not None else "no error below"
     return f"{fixed(value, decimals)} {up} {down}"
+
+
+def with_two_digits(value: float, error: float) -> str:
+    """Return "value ± error" with two digits of the error, for parameters listed below each other."""
+    decimals = _two_digits([error])
+    return f"{fixed(value, decimals)} ± {fixed(error, decimals)}"
+
+
+def _two_digits(errors: Sequence[float | None]) -> int:
+    sizes = [abs(error) for error in errors if error]
+    return max((min(1 - math.floor(math.log10(size)), 10) for size in sizes), default=4)
 
 
 def factor(ln_value: float, ln_error: float | None = None) -> str:
@@ -115,9 +145,16 @@ def factor(ln_value: float, ln_error: float | None = None) -> str:
     exponent = math.floor(ln_value / _LN_10 + 1e-12)
     mantissa = math.exp(ln_value - exponent * _LN_10)
     if not (ln_error is not None and has_error and ln_error < 1.0):
-        return f"{fixed(mantissa, 1)} × 10^{_power(exponent)}"
+        return _by_power(mantissa, exponent)
     decimals = max(decimals_for(mantissa * ln_error), 0)
     return f"({fixed(mantissa, decimals)} ± {fixed(mantissa * ln_error, decimals)}) × 10^{_power(exponent)}"
+
+
+def _by_power(mantissa: float, exponent: int) -> str:
+    if round(mantissa, 1) >= 10.0:
+        mantissa, exponent = 1.0, exponent + 1
+    power = f"10^{_power(exponent)}"
+    return power if abs(mantissa - 1.0) < 1e-9 else f"{fixed(mantissa, 1)} × {power}"
 
 
 def trimmed(value: float, digits: int = 3) -> str:
@@ -155,7 +192,9 @@ def probability(value: float, rest: float, error: float | None = None) -> str:
         return f"1 − ({left})" if "±" in left and not left.startswith("(") else f"1 − {left}"
     if value <= 0.0:
         return "below 10^−300"
-    return with_error(value, error) if error else trimmed(value, 4)
+    if error:
+        return with_error(value, error)
+    return fixed(value, 4).rstrip("0").rstrip(".") if value >= 1e-3 else trimmed(value)
 
 
 def _power(exponent: int) -> str:

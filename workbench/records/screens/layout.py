@@ -47,7 +47,7 @@ def bullet(text: str) -> list[str]:
 def framed(title: str, sentences: Iterable[str]) -> list[str]:
     """Return a block between two rules, for what must not be missed."""
     rule = "═" * WIDTH
-    lines = [rule, *paragraph(title.upper(), "  ")]
+    lines = [rule, *paragraph(title, "  ")]
     for sentence in sentences:
         lines += paragraph(sentence, "  ")
     return [*lines, rule]

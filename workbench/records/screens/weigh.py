@@ -6,8 +6,17 @@ import math
 from collections.abc import Sequence
 
 from workbench.evidence.results import Comparison, Evidence, Posterior, ScaledPrior
-from workbench.records.numbers import count, decimals_for, factor, fixed, odds, probability, with_error
-from workbench.records.outcomes import Weighed
+from workbench.records.numbers import (
+    count,
+    decimals_for,
+    factor,
+    fixed,
+    odds,
+    probability,
+    with_error,
+    with_errors,
+)
+from workbench.records.outcomes import WeighOutcome
 from workbench.records.screens.counted import (
     NONE,
     adequacy_lines,
@@ -28,8 +37,10 @@ from workbench.records.screens.layout import (
 )
 from workbench.records.sentences import ln_posterior_odds, usual_cautions, verdict_on_all
 
+_NO_ESTIMATE = "no estimate"
 
-def weigh_screen(outcome: Weighed) -> str:
+
+def weigh_screen(outcome: WeighOutcome) -> str:
     """Return what `weigh` found as text; adequacy stands before the odds, and above all when nothing fits.
 
     Args:
@@ -61,25 +72,25 @@ def weigh_screen(outcome: Weighed) -> str:
 def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
     """Return each hypothesis' evidence by every estimator, side by side, and whether they agree."""
     labels: list[str] = []
-    values: list[str] = []
     rest: list[list[str]] = []
     for evidence in evidences:
         for place, estimate in enumerate(evidence.estimates):
             labels.append(one_line(evidence.hypothesis) if place == 0 else "")
-            values.append(with_error(estimate.ln_evidence, estimate.error))
             k_hat = NONE if estimate.k_hat is None else fixed(estimate.k_hat, 2)
             rest.append([estimate.name, k_hat, count(estimate.draws) if estimate.draws else NONE])
         if not evidence.estimates:
             labels.append(one_line(evidence.hypothesis))
-            values.append(NONE)
-            rest.append(["no estimate", NONE, NONE])
+            rest.append([_NO_ESTIMATE, NONE, NONE])
+    estimates = [estimate for evidence in evidences for estimate in evidence.estimates]
+    texts = iter(with_errors([one.ln_evidence for one in estimates], [one.error for one in estimates]))
+    values = [NONE if other[0] == _NO_ESTIMATE else next(texts) for other in rest]
     cells = zip(labels, rest, aligned_at(" ±", values), strict=True)
     rows = [["hypothesis", "estimator", "ln evidence", "k-hat", "points"]]
     rows += [[label, other[0], value, other[1], other[2]] for label, other, value in cells]
     lines = [*heading("Evidences"), *columns(rows, "lllrr")]
     for evidence in evidences:
         if not evidence.established:
-            lines += bullet(f"{evidence.hypothesis} is not established: {evidence.reason}.")
+            lines += bullet(f"{evidence.hypothesis} is not established: {_reason(evidence)}")
     if all(evidence.established for evidence in evidences):
         lines += paragraph("Every evidence is established: error, k-hat and agreement are all in order.")
     return lines
@@ -119,10 +130,14 @@ def probability_lines(posteriors: Sequence[Posterior]) -> list[str]:
     return [*heading("Probabilities"), *columns(rows, "lrl")]
 
 
+def _reason(evidence: Evidence) -> str:
+    return evidence.reason.removesuffix(".") + "."
+
+
 def _not_established(comparison: Comparison, evidences: Sequence[Evidence]) -> list[str]:
     concerned = {comparison.hypothesis, comparison.against}
     reasons = [
-        f"{evidence.hypothesis}: {evidence.reason}."
+        f"{evidence.hypothesis}: {_reason(evidence)}"
         for evidence in evidences
         if evidence.hypothesis in concerned and not evidence.established
     ]

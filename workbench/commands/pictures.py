@@ -1,0 +1,45 @@
+"""Pictures of a result, saved."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from workbench.commands.delivery import refuse_unwritable
+from workbench.counts.files import write_bytes_atomically
+from workbench.errors import InputError, Problem
+from workbench.plots.page import KINDS, picture_bytes, weighing_page
+from workbench.records.outcomes import WeighOutcome
+
+
+def refuse_other_kinds(option: str, name: str) -> None:
+    """Refuse a picture's file whose ending is not known, before anything is computed.
+
+    Args:
+        option: the option that named it.
+        name: the file.
+
+    Raises:
+        InputError: if the ending is not known or the file can't be written.
+    """
+    if _kind(name) not in KINDS:
+        endings = ", ".join(f".{kind}" for kind in KINDS)
+        remedy = f"{option} {Path(name).stem or 'odds'}.png"
+        raise InputError(Problem("A kind of picture that is not drawn", option, repr(name), endings, remedy))
+    refuse_unwritable(option, name)
+
+
+def save_weighed(outcome: WeighOutcome, name: str) -> None:
+    """Draw odds and counts into a file, whole or not at all.
+
+    Args:
+        outcome: what `weigh` found.
+        name: the file.
+
+    Raises:
+        InputError: if it can't be written.
+    """
+    write_bytes_atomically(Path(name), picture_bytes(weighing_page(outcome), _kind(name)))
+
+
+def _kind(name: str) -> str:
+    return Path(name).suffix.lower().removeprefix(".")

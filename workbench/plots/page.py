@@ -1,0 +1,53 @@
+"""One page of pictures: the odds above, the counts of every region below."""
+
+from __future__ import annotations
+
+import io
+from typing import TYPE_CHECKING
+
+from workbench.plots.counts import draw_counts
+from workbench.plots.odds import draw_odds
+from workbench.plots.palette import LIGHT, Palette
+from workbench.records.outcomes import WeighOutcome
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+KINDS = ("png", "svg", "pdf")
+WIDTH = 9.0
+_ODDS_HEIGHT = 3.2
+_COUNTS_HEIGHT = 5.2
+
+
+def weighing_page(outcome: WeighOutcome, palette: Palette = LIGHT) -> Figure:
+    """Return a figure with every comparison's odds and every region's counts.
+
+    Args:
+        outcome: what `weigh` found.
+        palette: the theme's colours.
+    """
+    from matplotlib.figure import Figure
+
+    comparisons, regions = outcome.weighing.comparisons, outcome.analysis.regions
+    heights = [_ODDS_HEIGHT] * len(comparisons) + [_COUNTS_HEIGHT] * len(regions)
+    page = Figure(figsize=(WIDTH, sum(heights)), facecolor=palette.paper)
+    parts = page.subfigures(len(heights), 1, height_ratios=heights, squeeze=False)[:, 0]
+    for place, comparison in enumerate(comparisons, start=1):
+        axes = parts[place - 1].add_axes((0.03, 0.03, 0.94, 0.94))
+        weighing = outcome.weighing
+        draw_odds(axes, comparison, outcome.adequacies, weighing.evidences, palette, place)
+    for place, region in enumerate(regions, start=len(comparisons)):
+        draw_counts(parts[place], outcome.analysis, region.name, outcome.fits, palette)
+    return page
+
+
+def picture_bytes(figure: Figure, kind: str) -> bytes:
+    """Return a figure as the content of a file.
+
+    Args:
+        figure: the figure.
+        kind: one of `KINDS`.
+    """
+    content = io.BytesIO()
+    figure.savefig(content, format=kind, dpi=150, facecolor=figure.get_facecolor())
+    return content.getvalue()
