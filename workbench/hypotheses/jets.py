@@ -108,9 +108,9 @@ class Jet:
             return self
         ones, m, shape = (1,) * missing, self.variables, self.value.shape
         return Jet(
-            self.value.reshape(*ones, *shape),
-            self.first.reshape(m, *ones, *self.first.shape[1:]),
-            self.second.reshape(m, m, *ones, *self.second.shape[2:]),
+            self.value.reshape((*ones, *shape)),
+            self.first.reshape((m, *ones, *self.first.shape[1:])),
+            self.second.reshape((m, m, *ones, *self.second.shape[2:])),
         )
 
     def _scaled(self, factor: float | Array) -> Jet:

@@ -38,7 +38,7 @@ class Spline:
         """Return the distance from the piece's first point, and the cubic's coefficients there."""
         piece = np.clip(np.searchsorted(self._at, x, side="right") - 1, 0, self._at.size - 2)
         cubic, square, linear, constant = (self._coefficients[power][piece] for power in range(4))
-        step = (x - self._at[piece]).reshape(*x.shape, *(1,) * (self._coefficients.ndim - 2))
+        step = (x - self._at[piece]).reshape((*x.shape, *(1,) * (self._coefficients.ndim - 2)))
         return step, (cubic, square, linear, constant)
 
     def value(self, x: npt.ArrayLike) -> Array:
