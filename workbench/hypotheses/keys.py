@@ -156,10 +156,14 @@ class Section:
 
     def as_text(self, value: object, inside: KeyPath) -> str:
         """Return a value as a text; an empty one, with a fault, where it is something else."""
-        if isinstance(value, str):
-            return value
-        self._refuse_type(inside, "is not a text", value, "a text", "put it in quotes")
-        return ""
+        if not isinstance(value, str):
+            self._refuse_type(inside, "is not a text", value, "a text", "put it in quotes")
+            return ""
+        if not value.isprintable():
+            expected = "letters, digits, signs and spaces on one line"
+            self._refuse_type(inside, "cannot be printed", value, expected, "leave out what cannot be seen")
+            return ""
+        return value
 
     def close(self) -> None:
         """Note every key that nobody asked for, with the nearest known one."""
