@@ -1,0 +1,136 @@
+"""Panels along a signal coordinate: even steps of what the counts can tell apart, finer where the integrand peaks.
+
+An axis is laid out in prior probability p in [0, 1], x = F^-1(p), so that a prior average is a plain integral over p.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+from scipy import special
+
+from workbench.evidence.search import Landscape, signal_events
+from workbench.likelihood.model import Model
+
+Array = npt.NDArray[np.float64]
+
+KRONROD_NODES = np.array(
+    [
+        -0.9604912687080202,
+        -0.7745966692414834,
+        -0.4342437493468025,
+        0.0,
+        0.4342437493468025,
+        0.7745966692414834,
+        0.9604912687080202,
+    ]
+)
+KRONROD_WEIGHTS = np.array(
+    [
+        0.1046562260264673,
+        0.2684880898683334,
+        0.4013974147759622,
+        0.4509165386584741,
+        0.4013974147759622,
+        0.2684880898683334,
+        0.1046562260264673,
+    ]
+)
+GAUSS_WEIGHTS = np.array([0.0, 5.0 / 9.0, 0.0, 8.0 / 9.0, 0.0, 5.0 / 9.0, 0.0])
+
+_PANEL_ANGLE = 2.4
+_FINEST = 0.35
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Axis:
+    """Nodes of a composite seven-point rule along one signal coordinate.
+
+    Attributes:
+        edges: (panel + 1,) panel ends in prior probability.
+    """
+
+    edges: Array
+
+    @property
+    def nodes(self) -> Array:
+        """Return (node,) positions in prior probability, ascending."""
+        middle, half = self._panels()
+        return np.asarray((middle[:, None] + half[:, None] * KRONROD_NODES).ravel())
+
+    @property
+    def weights(self) -> Array:
+        """Return (node,) weights of the seven-point rule."""
+        return np.asarray((self._panels()[1][:, None] * KRONROD_WEIGHTS).ravel())
+
+    @property
+    def coarse_weights(self) -> Array:
+        """Return (node,) weights of the three-point rule within it, for the error."""
+        return np.asarray((self._panels()[1][:, None] * GAUSS_WEIGHTS).ravel())
+
+    def _panels(self) -> tuple[Array, Array]:
+        return 0.5 * (self.edges[1:] + self.edges[:-1]), 0.5 * np.diff(self.edges)
+
+    def split(self, panels: Array) -> Axis:
+        """Return the axis with the given panels cut in half."""
+        middle = self._panels()[0][panels]
+        return Axis(np.sort(np.concatenate([self.edges, middle])))
+
+
+def standard(p: Array) -> Array:
+    """Return standard-normal coordinates of prior probabilities, exact in both tails as far as p is."""
+    return np.asarray(special.ndtri(np.clip(p, 1e-300, 1.0 - 1e-16)))
+
+
+def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]) -> Axis:
+    """Return panels of equal length in the angle between neighbouring signals.
+
+    Signals a and b, as vectors of events weighted by the counts' inverse variance, are told apart by the angle
+    between them. A peak of resolution s turns by 1/(sqrt 2 s) per unit of mass, so that a panel of 2.4 spans about
+    3.4 resolutions and has at least two nodes a resolution.
+
+    Args:
+        model: a hypothesis with signal coordinates.
+        landscape: the background's mode, whose variances weigh the bins.
+        axis: coordinate index of this axis.
+        axes: coordinate indices of all axes laid out, this one among them.
+
+    Returns:
+        The axis.
+    """
+    others = [other for other in axes if other != axis]
+    grid = np.linspace(0.0, 1.0, 401)
+    turned = np.zeros(grid.size - 1)
+    for level in (0.0,) if not others else (-1.5, 0.0, 1.5):
+        turned = np.maximum(turned, _angles(model, landscape, axis, grid, level))
+    while turned.max() > _FINEST and grid.size < 20_000:
+        wide = np.flatnonzero(turned > _FINEST)
+        grid = np.sort(np.concatenate([grid, 0.5 * (grid[wide] + grid[wide + 1])]))
+        turned = np.zeros(grid.size - 1)
+        for level in (0.0,) if not others else (-1.5, 0.0, 1.5):
+            turned = np.maximum(turned, _angles(model, landscape, axis, grid, level))
+        if turned.size > 4 * 401 and (np.diff(grid)[turned > _FINEST] < 1e-4).all():
+            break
+    length = np.concatenate([[0.0], np.cumsum(turned)])
+    panels = max(2, int(np.ceil(length[-1] / _PANEL_ANGLE)))
+    if length[-1] <= 0.0:
+        return Axis(np.linspace(0.0, 1.0, panels + 1))
+    inner = np.interp(np.linspace(0.0, length[-1], panels + 1), length, grid)
+    inner[0], inner[-1] = 0.0, 1.0
+    return Axis(np.unique(inner))
+
+
+def _angles(model: Model, landscape: Landscape, axis: int, grid: Array, level: float) -> Array:
+    points = np.full((grid.size, model.signal.size), level)
+    points[:, model.signal == axis] = standard(np.clip(grid, 1e-6, 1.0 - 1e-6))[:, None]
+    strengths = [model.coordinates[index].is_strength for index in model.signal]
+    points[:, np.array(strengths) & (model.signal != axis)] = 0.0
+    events = signal_events(model, landscape, points) * np.sqrt(landscape.weight)
+    size = np.maximum(np.linalg.norm(events, axis=1), 1e-12)
+    unit = events / size[:, None]
+    chord = np.linalg.norm(np.diff(unit, axis=0), axis=1)
+    relative = size > 1e-6 * size.max()
+    seen = relative[1:] & relative[:-1]
+    return np.where(seen, 2.0 * np.arcsin(np.minimum(0.5 * chord, 1.0)), 0.0)

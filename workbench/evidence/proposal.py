@@ -1,0 +1,294 @@
+"""The mixture that draws come from, built on the quadrature's nodes.
+
+Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear between
+the nodes' heights (or, one time in ten, from their prior, so that a mode the search missed shows in the
+weights), then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along the third
+derivatives and shifted along the exact response of its maximum to the signal coordinates; one draw in ten from a
+wider one.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from itertools import product
+
+import numpy as np
+import numpy.typing as npt
+from scipy import special
+
+from workbench.evidence.axes import Axis, standard
+from workbench.evidence.bending import TriangularMap, following
+from workbench.evidence.piecewise import between, draw, hat_areas
+from workbench.evidence.quadrature import Grid
+
+Array = npt.NDArray[np.float64]
+Indices = npt.NDArray[np.intp]
+Flags = npt.NDArray[np.bool_]
+
+_FROM_PRIOR = 0.1
+_WIDE_SHARE = 0.1
+_LN_2PI = float(np.log(2.0 * np.pi))
+_GATHERED = 16
+
+
+@dataclass(frozen=True, eq=False)
+class Proposal:
+    """The mixture on a grid's nodes.
+
+    Attributes:
+        grid: the nodes.
+        whitening: (node, nuisance, nuisance) W with W'W = -Hessian, all in the axes of the bending.
+        map: how whitened coordinates follow the bending.
+        centres: (node, nuisance) maxima of the nuisance coordinates.
+        responses: (node, signal, nuisance) change of that maximum with each signal coordinate.
+        places: (node, signal) signal coordinates of the nodes: x for outer ones, standard for the inner one.
+    """
+
+    grid: Grid
+    whitening: Array
+    map: TriangularMap
+    centres: Array
+    responses: Array
+    places: Array
+
+    @property
+    def dimensions(self) -> int:
+        """Return how many uniform numbers a draw takes."""
+        return 2 * len(self.grid.axes) + 4 + self.centres.shape[1]
+
+    @cached_property
+    def _widening(self) -> float:
+        return float(1.0 + 1.0 / np.sqrt(max(1, self.centres.shape[1])))
+
+    @cached_property
+    def _ln_volume(self) -> Array:
+        return np.linalg.slogdet(self.whitening)[1]
+
+    @cached_property
+    def _unwhitening(self) -> Array:
+        return np.linalg.inv(self.whitening) if self.whitening.shape[1] else self.whitening
+
+    @cached_property
+    def _heights(self) -> Array:
+        """Return (column, inner) heights relative to each column's largest."""
+        columns = self.grid.columns
+        return np.exp(columns.ln_height - columns.ln_height.max(axis=1, keepdims=True))
+
+    @cached_property
+    def _field(self) -> Array:
+        """Return (axis 1 node, ...) integrals over the inner coordinate, relative to the largest."""
+        integrals = self.grid.columns.ln_integral()
+        sizes = [axis.nodes.size for axis in self.grid.axes]
+        return np.exp(integrals - integrals.max()).reshape(sizes)
+
+    @cached_property
+    def _steps(self) -> Array:
+        """Return (column,) spacing of the inner nodes."""
+        inner = self.grid.columns.inner
+        return inner[:, 1] - inner[:, 0] if inner.shape[1] > 1 else np.ones(len(inner))
+
+    @cached_property
+    def _strides(self) -> Indices:
+        sizes = [axis.nodes.size for axis in self.grid.axes]
+        return np.array([int(np.prod(sizes[i + 1 :])) for i in range(len(sizes))], dtype=np.intp)
+
+    def draw(self, cube: Array) -> Array:
+        """Return (draw, coordinate) points from (draw, dimension) uniform numbers."""
+        grid, integrand = self.grid, self.grid.integrand
+        from_prior = cube[:, 0] < _FROM_PRIOR
+        p, column = self._draw_outer(cube[:, 1:], from_prior)
+        points = np.zeros((len(cube), integrand.model.size))
+        points[:, list(integrand.outer)] = standard(p)
+        after = 1 + 2 * len(grid.axes)
+        node = column
+        if integrand.inner is not None:
+            t, place = self._draw_inner(column, cube[:, after], cube[:, after + 1], from_prior)
+            points[:, integrand.inner] = t
+            node = column * grid.columns.inner.shape[1] + place
+        noise = special.ndtri(cube[:, after + 3 :])
+        scale = np.where(cube[:, after + 2] < _WIDE_SHARE, self._widening, 1.0)
+        moved = _grouped(self._unwhitening, node, self.map.forward(noise * scale[:, None]))
+        points[:, integrand.nuisance] = self._centre(node, self._signal(points)) + moved
+        return points
+
+    def ln_density(self, points: Array) -> Array:
+        """Return the ln density of the mixture.
+
+        Args:
+            points: (draw, coordinate) standard coordinates.
+
+        Returns:
+            (draw,) ln density with respect to prior probability in the outer coordinates and to the standard
+            coordinates in the rest [nats].
+        """
+        grid = self.grid
+        p = special.ndtr(points[:, list(grid.integrand.outer)])
+        beside = [between(axis.nodes, p[:, which]) for which, axis in enumerate(grid.axes)]
+        norm = self._field
+        for axis in reversed(grid.axes):
+            norm = norm @ hat_areas(axis.nodes)
+        signal = self._signal(points)
+        nodes, shares = [], []
+        for corner in product((0, 1), repeat=len(grid.axes)):
+            column = np.zeros(len(points), dtype=np.intp)
+            hat = np.ones(len(points))
+            for side, (below, share), stride in zip(corner, beside, self._strides, strict=True):
+                column += (below + side) * stride
+                hat *= share if side else 1.0 - share
+            for node, weight in self._corner(column, hat, hat * self._field.ravel()[column] / norm, points):
+                nodes.append(node)
+                shares.append(weight)
+        beside_all = len(nodes)
+        laws = self._normal(np.concatenate(nodes), np.tile(points, (beside_all, 1)), np.tile(signal, (beside_all, 1)))
+        density = (np.concatenate(shares) * laws).reshape(beside_all, -1).sum(axis=0)
+        return np.log(np.maximum(density, 1e-300))
+
+    def _draw_outer(self, cube: Array, from_prior: Flags) -> tuple[Array, Indices]:
+        """Return (draw, outer) prior probabilities and the (draw,) column chosen beside them."""
+        draws, axes = len(cube), self.grid.axes
+        p = np.zeros((draws, len(axes)))
+        column = np.zeros(draws, dtype=np.intp)
+        rest = self._field.reshape(1, -1)
+        for which, axis in enumerate(axes):
+            size = axis.nodes.size
+            rest = rest.reshape(len(rest), size, -1)
+            heights = np.broadcast_to(rest @ _product_areas(axes[which + 1 :]), (draws, size))
+            padded = np.concatenate([heights[:, :1], heights, heights[:, -1:]], axis=1)
+            ends = np.concatenate([[0.0], axis.nodes, [1.0]])
+            u = cube[:, 2 * which]
+            p[:, which] = np.where(from_prior, u, draw(ends, padded, u))
+            below, share = between(axis.nodes, p[:, which])
+            place = below + _chosen(heights, below, share, cube[:, 2 * which + 1], from_prior)
+            column += place * self._strides[which]
+            rest = np.broadcast_to(rest, (draws, *rest.shape[1:]))[np.arange(draws), place]
+        return p, column
+
+    def _draw_inner(
+        self, column: Indices, u: Array, lot: Array, from_prior: Flags
+    ) -> tuple[Array, Indices]:
+        """Return (draw,) standard coordinates of the strength and the inner node chosen beside each."""
+        inner, heights, step = self.grid.columns.inner[column], self._heights[column], self._steps[column, None]
+        nodes = np.concatenate([inner[:, :1] - step, inner, inner[:, -1:] + step], axis=1)
+        padded = np.pad(heights, ((0, 0), (1, 1)))
+        t = np.where(from_prior, special.ndtri(u), draw(nodes, padded, u))
+        below, share = between(inner, t)
+        return t, below + _chosen(heights, below, share, lot, from_prior)
+
+    def _signal(self, points: Array) -> Array:
+        """Return (draw, signal) places in the proposal's own terms: x for outer coordinates."""
+        integrand = self.grid.integrand
+        places = np.zeros((len(points), self.places.shape[1]))
+        for slot, index in enumerate(integrand.outer):
+            places[:, slot] = integrand.model.coordinates[index].prior.from_standard(points[:, index])[0]
+        if integrand.inner is not None:
+            places[:, -1] = points[:, integrand.inner]
+        return places
+
+    def _centre(self, node: Indices, signal: Array) -> Array:
+        """Return (draw, nuisance) maxima, followed from a node along their response for at most two inner steps."""
+        if self.centres.shape[1] == 0:
+            return self.centres[node]
+        offset = signal - self.places[node]
+        if self.grid.integrand.inner is not None:
+            limit = 2.0 * self._steps[node // self.grid.columns.inner.shape[1]]
+            offset[:, -1] = np.clip(offset[:, -1], -limit, limit)
+        return self.centres[node] + (offset[:, None, :] @ self.responses[node])[:, 0]
+
+    def _corner(
+        self, column: Indices, hat: Array, outer_density: Array, points: Array
+    ) -> list[tuple[Indices, Array]]:
+        """Return the nodes of one neighbouring column beside each draw, with the (draw,) weight of each."""
+        columns, index = self.grid.columns, self.grid.integrand.inner
+        if index is None:
+            return [(column, (1.0 - _FROM_PRIOR) * outer_density + _FROM_PRIOR * hat)]
+        count = columns.inner.shape[1]
+        t, inner, step = points[:, index], columns.inner[column], self._steps[column]
+        area = self._heights.sum(axis=1)[column] * step
+        below, share = between(inner, t)
+        beyond = np.maximum(inner[:, 0] - t, t - inner[:, -1]) / step
+        fade = np.clip(1.0 - beyond, 0.0, 1.0)
+        prior = np.exp(-0.5 * t * t - 0.5 * _LN_2PI)
+        found = []
+        for side, near in ((0, 1.0 - share), (1, share)):
+            place = below + side
+            drawn = fade * self._heights[column, place] / area
+            weight = near * ((1.0 - _FROM_PRIOR) * outer_density * drawn + _FROM_PRIOR * hat * prior)
+            found.append((column * count + place, weight))
+        return found
+
+    def _normal(self, node: Indices, points: Array, signal: Array) -> Array:
+        """Return (draw,) density of the nuisance coordinates under one node's pair of normal laws."""
+        nuisance = self.grid.integrand.nuisance
+        offset = points[:, nuisance] - self._centre(node, signal)
+        normal, ln_stretch = self.map.inverse(_grouped(self.whitening, node, offset))
+        square = np.einsum("na,na->n", normal, normal)
+        wide = self._widening
+        narrow = (1.0 - _WIDE_SHARE) * np.exp(-0.5 * square)
+        broad = _WIDE_SHARE * wide ** (-nuisance.size) * np.exp(-0.5 * square / wide**2)
+        return np.asarray((narrow + broad) * np.exp(self._ln_volume[node] - ln_stretch - 0.5 * nuisance.size * _LN_2PI))
+
+
+def propose(grid: Grid) -> Proposal:
+    """Return the proposal built on a grid's nodes."""
+    integrand, columns = grid.integrand, grid.columns
+    nuisance, model = integrand.nuisance, grid.integrand.model
+    hessians = columns.hessians.reshape(-1, model.size, model.size)
+    points = columns.points.reshape(-1, model.size)
+    block = -hessians[:, nuisance[:, None], nuisance[None, :]]
+    signal = np.array(
+        [*integrand.outer, *([] if integrand.inner is None else [integrand.inner])], dtype=np.intp
+    )
+    responses = np.zeros((len(points), signal.size, nuisance.size))
+    if nuisance.size and signal.size:
+        cross = hessians[:, nuisance[:, None], signal[None, :]]
+        responses = np.swapaxes(np.linalg.solve(block, cross), 1, 2)
+    places = points[:, signal]
+    for slot, index in enumerate(integrand.outer):
+        x, slope, _ = model.coordinates[index].prior.from_standard(places[:, slot])
+        places[:, slot] = x
+        responses[:, slot] /= np.maximum(slope, 1e-12)[:, None]
+    roots = _upper_roots(block)
+    bend = grid.bending
+    if bend is None:
+        return Proposal(grid, roots, following(np.zeros(3 * (nuisance.size,))), points[:, nuisance], responses, places)
+    best = int(np.argmax(columns.ln_height))
+    turn = np.linalg.solve(roots[best].T, bend.axes.T).T
+    return Proposal(grid, turn @ roots, following(bend.third), points[:, nuisance], responses, places)
+
+
+def _upper_roots(matrices: Array) -> Array:
+    try:
+        return np.swapaxes(np.linalg.cholesky(matrices), 1, 2)
+    except np.linalg.LinAlgError:
+        values, vectors = np.linalg.eigh(matrices)
+        mended = (vectors * np.maximum(values, 0.05)[:, None, :]) @ np.swapaxes(vectors, 1, 2)
+        return np.swapaxes(np.linalg.cholesky(mended), 1, 2)
+
+
+def _product_areas(axes: tuple[Axis, ...]) -> Array:
+    areas = np.ones(1)
+    for axis in axes:
+        areas = np.outer(areas, hat_areas(axis.nodes)).ravel()
+    return areas
+
+
+def _chosen(heights: Array, below: Indices, share: Array, u: Array, from_prior: Flags) -> Indices:
+    """Return 0 or 1: which of two neighbouring nodes a draw takes the rest from."""
+    rows = np.arange(len(below))
+    left = (1.0 - share) * np.where(from_prior, 1.0, heights[rows, below])
+    right = share * np.where(from_prior, 1.0, heights[rows, below + 1])
+    return np.asarray(u * (left + right) < right, dtype=np.intp)
+
+
+def _grouped(matrices: Array, where: Indices, vectors: Array) -> Array:
+    """Return matrices[where] @ vectors, group by group where the matrices are large."""
+    if vectors.shape[1] <= _GATHERED:
+        return np.asarray((matrices[where] @ vectors[..., None])[..., 0])
+    result = np.empty_like(vectors)
+    order = np.argsort(where, kind="stable")
+    ends = np.cumsum(np.bincount(where, minlength=len(matrices)))
+    for group, rows in enumerate(np.split(order, ends[:-1])):
+        if rows.size:
+            result[rows] = vectors[rows] @ matrices[group].T
+    return result

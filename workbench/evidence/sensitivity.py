@@ -1,0 +1,63 @@
+"""How the Bayes factor answers a strength prior that is half or twice as wide."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from workbench.evidence.exact import linear_rates
+from workbench.evidence.exact import ln_evidence as exact_ln_evidence
+from workbench.evidence.quadrature import Grid, integrate
+from workbench.evidence.results import Evidence, ScaledPrior
+from workbench.likelihood.model import Model
+
+
+def sensitivities(
+    model: Model, grid: Grid | None, evidence: Evidence, against: Evidence
+) -> tuple[ScaledPrior, ...]:
+    """Return ln B with the prior of each strength half and twice as wide.
+
+    The evidence is integrated again under the other prior; its change is added to the reported ln B.
+
+    Args:
+        model: the compiled hypothesis.
+        grid: its quadrature; None where the closed form was used.
+        evidence: its evidence.
+        against: the evidence that ln B compares it with.
+
+    Returns:
+        One entry for each signal strength; none where ln B itself is missing.
+    """
+    if evidence.ln_evidence is None or against.ln_evidence is None or model.observed is None:
+        return ()
+    ln_bayes_factor = evidence.ln_evidence - against.ln_evidence
+    base = evidence.ln_evidence if grid is None else grid.ln_evidence
+    found = []
+    for index, coordinate in enumerate(model.coordinates):
+        if not coordinate.is_strength:
+            continue
+        changed = [
+            _ln_evidence(scaled, closed=grid is None)
+            for scaled in (_scaled(model, index, 0.5), _scaled(model, index, 2.0))
+        ]
+        halved, doubled = (None if one is None else ln_bayes_factor + one - base for one in changed)
+        found.append(ScaledPrior(coordinate.name, coordinate.prior.text(), halved, doubled))
+    return tuple(found)
+
+
+def _scaled(model: Model, index: int, factor: float) -> Model | None:
+    """Return the model with one prior's width scaled; None where its family has none."""
+    prior = model.coordinates[index].prior.scaled(factor)
+    if prior is None:
+        return None
+    coordinates = list(model.coordinates)
+    coordinates[index] = replace(coordinates[index], prior=prior)
+    return replace(model, coordinates=tuple(coordinates))
+
+
+def _ln_evidence(model: Model | None, closed: bool) -> float | None:
+    if model is None or model.observed is None:
+        return None
+    if not closed:
+        return integrate(model, model.observed).ln_evidence
+    rates = linear_rates(model)
+    return None if rates is None else exact_ln_evidence(rates, model.observed)

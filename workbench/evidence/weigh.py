@@ -1,0 +1,219 @@
+"""From an analysis to evidences, Bayes factors and posterior odds."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.errors import Caution, InputError, Problem
+from workbench.evidence.exact import linear_rates
+from workbench.evidence.exact import ln_evidence as exact_ln_evidence
+from workbench.evidence.odds import compare, posteriors
+from workbench.evidence.pareto import largest_allowed
+from workbench.evidence.quadrature import Grid, integrate
+from workbench.evidence.results import Estimate, Evidence, Weighing
+from workbench.evidence.sampling import SCRAMBLES, Sample, sample
+from workbench.evidence.sensitivity import sensitivities
+from workbench.hypotheses.analysis import Analysis
+from workbench.likelihood.model import Model, compile_model, never_filled
+
+Array = npt.NDArray[np.float64]
+
+LARGEST_ERROR = 0.1
+_WANTED_ERROR = 0.005
+_FIRST_DRAWS = 64
+_MOST_DRAWS = 2048
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Weighed:
+    """A hypothesis' evidence with what it was made of.
+
+    Attributes:
+        model: the compiled hypothesis.
+        evidence: the answer.
+        grid: the quadrature's nodes; None where the closed form was used.
+        sample: the sampling pass; None where the closed form was used.
+    """
+
+    model: Model
+    evidence: Evidence
+    grid: Grid | None = None
+    sample: Sample | None = None
+
+
+def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> Weighing:
+    """Return evidences, Bayes factors and posterior odds of every hypothesis.
+
+    Args:
+        analysis: everything declared, with observed counts.
+        seed: where every random number comes from.
+        closed_forms: False keeps to the numerical estimators even where a closed form holds.
+
+    Returns:
+        Evidences with errors and their estimators, comparisons against the first hypothesis, posterior
+        probabilities, and cautions.
+
+    Raises:
+        InputError: if a region has no observed counts.
+    """
+    children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses))
+    weighed = [
+        weigh_hypothesis(compile_model(analysis, hypothesis.name), child, closed_forms=closed_forms)
+        for hypothesis, child in zip(analysis.hypotheses, children, strict=True)
+    ]
+    evidences = tuple(one.evidence for one in weighed)
+    priors = np.array([hypothesis.prior for hypothesis in analysis.hypotheses], dtype=float)
+    comparisons = tuple(
+        replace(
+            compare(evidences[index], evidences[0], priors[index] / priors[0]),
+            sensitivity=sensitivities(one.model, one.grid, one.evidence, evidences[0]),
+        )
+        for index, one in enumerate(weighed)
+        if index > 0
+    )
+    return Weighing(
+        evidences,
+        posteriors(evidences, priors / priors.sum()),
+        comparisons,
+        seed,
+        tuple(caution for one in weighed for caution in _cautions(one)),
+    )
+
+
+def observed_counts(model: Model) -> Array:
+    """Return (bin,) observed counts, or refuse an analysis that has none."""
+    if model.observed is not None:
+        return model.observed
+    missing = [region.name for region in model.analysis.regions if region.table.observed is None]
+    raise InputError(
+        *(
+            Problem(
+                what="a region has no observed counts",
+                where=f"region {name!r}",
+                found="no `observed`",
+                expected="observed counts in every bin",
+                remedy="add an `observed` column, or use `oddsbench check`, which needs none",
+            )
+            for name in missing
+        )
+    )
+
+
+def weigh_hypothesis(model: Model, seed: np.random.SeedSequence, *, closed_forms: bool = True) -> Weighed:
+    """Return one hypothesis' evidence: in closed form where it holds, else by two estimators that must agree.
+
+    Args:
+        model: the compiled hypothesis.
+        seed: where its random numbers come from.
+        closed_forms: False keeps to the numerical estimators.
+
+    Returns:
+        The evidence with grid and sample.
+
+    Raises:
+        InputError: if a region has no observed counts.
+    """
+    counts = observed_counts(model)
+    impossible = never_filled(model) & (counts > 0.0) & (model.spare == 0.0)
+    if impossible.any():
+        return Weighed(model, _impossible(model, impossible))
+    if closed_forms and model.size == 0:
+        value = float(model.ln_likelihood(model.seeds(np.zeros((1, 0))), counts)[0])
+        return Weighed(model, _exactly(model, value))
+    rates = linear_rates(model) if closed_forms else None
+    exact = exact_ln_evidence(rates, counts) if rates is not None else None
+    if exact is not None and np.isfinite(exact):
+        return Weighed(model, _exactly(model, exact))
+    grid = integrate(model, counts)
+    drawn = _sampled(grid, seed)
+    return Weighed(model, _agreed(model, grid, drawn), grid, drawn)
+
+
+def _sampled(grid: Grid, seed: np.random.SeedSequence) -> Sample:
+    """Return the sampling pass, with more draws until its error is small."""
+    draws = _FIRST_DRAWS
+    while True:
+        drawn = sample(grid, seed, draws)
+        if draws >= _MOST_DRAWS or drawn.error <= _WANTED_ERROR:
+            return drawn
+        draws *= 2
+
+
+def _exactly(model: Model, value: float) -> Evidence:
+    estimate = Estimate("closed form", value, 0.0)
+    return Evidence(model.hypothesis, value, 0.0, True, "", (estimate,))
+
+
+def _agreed(model: Model, grid: Grid, drawn: Sample) -> Evidence:
+    """Return the evidence of the sampling pass, established or not."""
+    name = "quadrature" if model.signal.size else "Laplace"
+    estimates = (
+        Estimate(name, grid.ln_evidence, grid.error, None, grid.evaluations),
+        Estimate("sampling", drawn.ln_evidence, drawn.error, drawn.k_hat, drawn.ln_weights.size),
+    )
+    reason = _doubt(grid, drawn)
+    finite = bool(np.isfinite(drawn.ln_evidence))
+    return Evidence(
+        model.hypothesis,
+        drawn.ln_evidence if finite else None,
+        drawn.error if finite else None,
+        not reason,
+        reason,
+        estimates if finite else estimates[:1],
+    )
+
+
+def _doubt(grid: Grid, drawn: Sample) -> str:
+    """Return why an evidence is not established; empty when it is."""
+    if not np.isfinite(drawn.ln_evidence):
+        return "no draw can produce the observed counts"
+    allowed = largest_allowed(SCRAMBLES * _FIRST_DRAWS if drawn is None else drawn.ln_weights.size)
+    if drawn.error > LARGEST_ERROR:
+        return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
+    if drawn.k_hat >= allowed:
+        return f"a few draws dominate the sampling pass (k-hat {drawn.k_hat:.2f}, allowed below {allowed:.2f})"
+    gap = abs(grid.ln_evidence - drawn.ln_evidence)
+    limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
+    if not gap <= limit:
+        return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
+    return ""
+
+
+def _impossible(model: Model, impossible: npt.NDArray[np.bool_]) -> Evidence:
+    names = ", ".join(bin_names(model, np.flatnonzero(impossible)))
+    reason = (
+        f"no parameter value can produce the events observed in {names}; "
+        "if the prediction there is an empty simulation, set `empty_bin_events` in the region"
+    )
+    return Evidence(model.hypothesis, None, None, False, reason, ())
+
+
+def bin_names(model: Model, bins: npt.NDArray[np.intp]) -> list[str]:
+    """Return bins in words: region and range."""
+    names = []
+    start = 0
+    for region in model.analysis.regions:
+        binning = region.table.binning
+        for index in bins:
+            if start <= index < start + binning.number:
+                low, high = binning.low[index - start], binning.high[index - start]
+                unit = f" {region.unit}" if region.unit else ""
+                names.append(f"region {region.name!r} from {low:g} to {high:g}{unit}")
+        start += binning.number
+    return names
+
+
+def _cautions(one: Weighed) -> list[Caution]:
+    found = []
+    if one.grid is not None and not one.grid.columns.converged.all():
+        share = 1.0 - float(one.grid.columns.converged.mean())
+        found.append(
+            Caution(
+                "unfinished-nodes",
+                f"{one.model.hypothesis}: {share:.1%} of the quadrature's nodes did not converge",
+            )
+        )
+    return found

@@ -1,0 +1,323 @@
+"""A hypothesis ready to be evaluated: expected counts and the log likelihood for many points at once."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.hypotheses.analysis import Analysis, Parameter
+from workbench.hypotheses.priors import Normal, Prior
+from workbench.hypotheses.processes import Process
+from workbench.likelihood.assembly import assemble
+from workbench.likelihood.kernel import Expansion, expand
+from workbench.likelihood.laws import (
+    Slopes,
+    ln_negative_binomial,
+    ln_poisson,
+    negative_binomial_slopes,
+    poisson_slopes,
+)
+from workbench.likelihood.parts import Part, Seeds, Sources
+
+Array = npt.NDArray[np.float64]
+Indices = npt.NDArray[np.intp]
+
+_LARGEST_PLAIN_COUNT = 1e5
+_SOURCE_PRIOR = Normal(mean=0.0, sd=1.0)
+
+
+@dataclass(frozen=True, slots=True)
+class Coordinate:
+    """One free direction of a hypothesis.
+
+    Attributes:
+        name, unit: the parameter or source it belongs to.
+        role: "signal", "nuisance" or "source".
+        prior: its prior; a source's is the standard normal.
+        is_strength: True for a signal parameter that only multiplies yields.
+    """
+
+    name: str
+    unit: str
+    role: str
+    prior: Prior
+    is_strength: bool = False
+
+
+@dataclass(frozen=True, eq=False)
+class Model:
+    """One hypothesis of an analysis, compiled.
+
+    Attributes:
+        analysis: the analysis it belongs to.
+        hypothesis: the hypothesis' name.
+        coordinates: every free parameter (declaration order), then every source in use.
+        parts: every process in every region.
+        overall: sources that act on all bins of a part alike, one row a part.
+        observed: (bin,) observed counts of all regions in order [events]; None when planning.
+        spare: (bin,) expected events added to bins that nothing can fill, where the region asks for it.
+    """
+
+    analysis: Analysis
+    hypothesis: str
+    coordinates: tuple[Coordinate, ...]
+    parts: tuple[Part, ...]
+    overall: Sources
+    observed: Array | None
+    bins: int
+    spare: Array
+
+    @property
+    def size(self) -> int:
+        """Return the number of coordinates."""
+        return len(self.coordinates)
+
+    @cached_property
+    def signal(self) -> Indices:
+        """Return the indices of signal parameters: shapes first, then strengths."""
+        found = [i for i, c in enumerate(self.coordinates) if c.role == "signal"]
+        return np.array(sorted(found, key=lambda i: self.coordinates[i].is_strength), dtype=np.intp)
+
+    @cached_property
+    def has_template_errors(self) -> bool:
+        """Return True when some bin's law is negative binomial."""
+        return any(part.error is not None for part in self.parts) or bool(self.spare.any())
+
+    @cached_property
+    def names(self) -> tuple[str, ...]:
+        """Return the coordinates' names in order."""
+        return tuple(coordinate.name for coordinate in self.coordinates)
+
+    def seeds(self, points: Array) -> Seeds:
+        """Return parameter values and derivatives at standard-normal coordinates.
+
+        Args:
+            points: (batch, coordinate) standard-normal coordinates.
+
+        Returns:
+            Seeds with (coordinate, batch) arrays.
+        """
+        x, dx, ddx = np.array(points.T), np.ones_like(points.T), np.zeros_like(points.T)
+        for index, coordinate in enumerate(self.coordinates):
+            if coordinate.role != "source":
+                x[index], dx[index], ddx[index] = coordinate.prior.from_standard(points[:, index])
+        return Seeds(x, dx, ddx)
+
+    def natural_seeds(self, points: Array) -> Seeds:
+        """Return seeds whose coordinates are the parameters themselves, (batch, coordinate)."""
+        return Seeds(np.array(points.T), np.ones_like(points.T), np.zeros_like(points.T))
+
+    def expected(self, seeds: Seeds) -> tuple[Array, Array | None]:
+        """Return (batch, bin) expected events and, with template errors, their variance.
+
+        Args:
+            seeds: (coordinate, batch) parameter values.
+
+        Returns:
+            T [events] and V [events^2] (None where every bin is Poisson).
+        """
+        batch = seeds.x.shape[1]
+        total = np.zeros((batch, self.bins)) + self.spare
+        variance = np.zeros((batch, self.bins)) + self.spare**2 if self.has_template_errors else None
+        factors = self.overall.factors(seeds.x)
+        for row, part in enumerate(self.parts):
+            factor = self._factor(part, factors[:, row, None], seeds)
+            total[:, part.bins] += factor * part.stem.value(seeds)
+            if part.error is not None and variance is not None:
+                variance[:, part.bins] += (factor * part.error.value(seeds)) ** 2
+        return total, variance
+
+    def _factor(self, part: Part, overall: Array, seeds: Seeds) -> Array:
+        return overall if part.by_bin is None else overall * part.by_bin.factors(seeds.x)
+
+    def by_process(self, seeds: Seeds) -> dict[str, Array]:
+        """Return process name to (batch, bin) expected events."""
+        found: dict[str, Array] = {}
+        factors = self.overall.factors(seeds.x)
+        for row, part in enumerate(self.parts):
+            target = found.setdefault(part.process, np.zeros((seeds.x.shape[1], self.bins)))
+            factor = self._factor(part, factors[:, row, None], seeds)
+            target[:, part.bins] += factor * part.stem.value(seeds)
+        return found
+
+    def restricted(self, kind: str, *, spare: bool) -> Model:
+        """Return the same coordinates with the processes of one kind only, "signal" or "background"."""
+        kinds = {process.name: process.kind for process in self.analysis.processes}
+        rows = [row for row, part in enumerate(self.parts) if kinds[part.process] == kind]
+        overall = replace(
+            self.overall, linear=self.overall.linear[:, rows], bend=self.overall.bend[:, rows]
+        )
+        parts = tuple(self.parts[row] for row in rows)
+        return replace(
+            self, parts=parts, overall=overall, spare=self.spare if spare else np.zeros(self.bins)
+        )
+
+    def responses(self, seeds: Seeds) -> Array:
+        """Return (batch, coordinate, bin) first derivatives of the expected events."""
+        expansion, _ = expand(self.parts, self.overall, self.size, seeds)
+        return expansion.gradient(seeds.x.shape[1], self.bins)
+
+    def ln_likelihood(self, seeds: Seeds, counts: Array) -> Array:
+        """Return the ln probability of counts.
+
+        Args:
+            seeds: (coordinate, batch) parameter values.
+            counts: (bin,) or (batch, bin) counted events [events].
+
+        Returns:
+            (batch,) ln probability [nats]; -inf where an impossible count is observed.
+        """
+        return bin_ln_probability(*self.expected(seeds), counts).sum(axis=-1)
+
+    def derivatives(self, seeds: Seeds, counts: Array) -> tuple[Array, Array, Array]:
+        """Return the ln probability of counts with exact first and second derivatives.
+
+        Args:
+            seeds: (coordinate, batch) parameter values with derivatives in the coordinates in force.
+            counts: (bin,) or (batch, bin) counted events [events].
+
+        Returns:
+            (batch,) ln probability, (batch, coordinate) gradient, (batch, coordinate, coordinate) Hessian.
+        """
+        events, errors = expand(self.parts, self.overall, self.size, seeds)
+        batch = seeds.x.shape[1]
+        total = np.zeros((batch, self.bins)) + self.spare
+        for piece in events.pieces:
+            total[:, piece.bins] += piece.events
+        slope = events.gradient(batch, self.bins)
+        if errors is None and not self.has_template_errors:
+            slopes = poisson_slopes(counts, total)
+            value = bin_ln_probability(total, None, counts).sum(axis=-1)
+            return value, *_contraction(events, slope, slopes)
+        return self._noisy(events, errors, total, slope, counts)
+
+    def _noisy(
+        self, events: Expansion, errors: Expansion | None, total: Array, slope: Array, counts: Array
+    ) -> tuple[Array, Array, Array]:
+        """Return the derivatives of the negative binomial: T as before, V = sum of squared errors."""
+        variance = np.zeros_like(total) + self.spare**2
+        tilt = np.zeros_like(slope)
+        pieces = () if errors is None else errors.pieces
+        for piece in pieces:
+            variance[:, piece.bins] += piece.events**2
+        slopes = negative_binomial_slopes(counts, total, variance)
+        value = bin_ln_probability(total, variance, counts).sum(axis=-1)
+        gradient, hessian = _contraction(events, slope, slopes)
+        for piece in pieces:
+            own = np.zeros((len(total), self.size, piece.events.shape[1]))
+            alone = replace(errors, pieces=(piece,))
+            alone.add_gradient(piece, own)
+            tilt[:, :, piece.bins] += 2.0 * piece.events[:, None, :] * own
+            hessian += (own * (2.0 * slopes.v[:, piece.bins])[:, None, :]) @ np.swapaxes(own, 1, 2)
+            weights = np.zeros_like(total)
+            weights[:, piece.bins] = 2.0 * slopes.v[:, piece.bins] * piece.events
+            alone.add_curvature(weights, hessian)
+        gradient += (tilt @ slopes.v[:, :, None])[..., 0]
+        cross = (slope * slopes.tv[:, None, :]) @ np.swapaxes(tilt, 1, 2)
+        hessian += cross + np.swapaxes(cross, 1, 2)
+        hessian += (tilt * slopes.vv[:, None, :]) @ np.swapaxes(tilt, 1, 2)
+        return value, gradient, hessian
+
+
+def _contraction(events: Expansion, slope: Array, slopes: Slopes) -> tuple[Array, Array]:
+    gradient = (slope @ slopes.t[:, :, None])[..., 0]
+    hessian = (slope * slopes.tt[:, None, :]) @ np.swapaxes(slope, 1, 2)
+    events.add_curvature(slopes.t, hessian)
+    return gradient, hessian
+
+
+def bin_ln_probability(expected: Array, variance: Array | None, counts: Array) -> Array:
+    """Return the ln probability of each bin's count under the law in force.
+
+    Args:
+        expected: (..., bin) T [events]; >= 0.
+        variance: (..., bin) V [events^2]; bins with 0 are Poisson; None when all are.
+        counts: (bin,) or (..., bin) counted events [events].
+
+    Returns:
+        (..., bin) ln probability [nats].
+    """
+    if counts.max(initial=0.0) < _LARGEST_PLAIN_COUNT:
+        from scipy import special
+
+        with np.errstate(divide="ignore"):
+            logs = np.where(counts > 0.0, np.log(expected), 0.0)
+        plain = counts * logs - expected - special.gammaln(counts + 1.0)
+    else:
+        plain = ln_poisson(counts, expected)
+    if variance is None:
+        return plain
+    noisy = (variance > 0.0) & (expected > 0.0)
+    t, v = np.where(noisy, expected, 1.0), np.where(noisy, variance, 1.0)
+    return np.where(noisy, ln_negative_binomial(counts + np.zeros_like(t), t, v), plain)
+
+
+def compile_model(analysis: Analysis, hypothesis: str) -> Model:
+    """Return a hypothesis of an analysis, ready to be evaluated.
+
+    Args:
+        analysis: everything declared.
+        hypothesis: the hypothesis' name.
+
+    Returns:
+        The model with its coordinates and parts.
+
+    Raises:
+        InputError: if the analysis has no such hypothesis.
+    """
+    signal = set(analysis.signal_parameters(hypothesis))
+    strengths = _strengths(analysis.processes_of(hypothesis))
+    held = analysis.held_parameters(hypothesis)
+    coordinates = [
+        _coordinate(analysis.parameter(name), name in signal, name in strengths)
+        for name in analysis.parameters_used(hypothesis)
+    ]
+    coordinates += [
+        Coordinate(name, "", "source", _SOURCE_PRIOR) for name in analysis.sources_used(hypothesis)
+    ]
+    positions = {coordinate.name: index for index, coordinate in enumerate(coordinates)}
+    parts, overall = assemble(analysis, hypothesis, positions, held)
+    bins = sum(region.table.binning.number for region in analysis.regions)
+    counts = [region.table.observed for region in analysis.regions]
+    present = [count for count in counts if count is not None]
+    observed = np.concatenate(present) if len(present) == len(counts) else None
+    model = Model(analysis, hypothesis, tuple(coordinates), parts, overall, observed, bins, np.zeros(bins))
+    return _with_spare(model)
+
+
+def _coordinate(parameter: Parameter, is_signal: bool, is_strength: bool) -> Coordinate:
+    role = "signal" if is_signal else "nuisance"
+    return Coordinate(parameter.name, parameter.unit, role, parameter.prior, is_signal and is_strength)
+
+
+def _strengths(processes: tuple[Process, ...]) -> set[str]:
+    """Return the names that only multiply yields: in `factors` and in no yield or shape."""
+    factors = {f for process in processes for f in process.factors if isinstance(f, str)}
+    elsewhere = {
+        name
+        for process in processes
+        for contribution in process.regions.values()
+        for name in contribution.parameters
+    }
+    return factors - elsewhere
+
+
+def _with_spare(model: Model) -> Model:
+    """Return the model with the events that regions give to bins which nothing can fill."""
+    wanted = [
+        np.full(region.table.binning.number, region.empty_bin_events or 0.0) for region in model.analysis.regions
+    ]
+    asked = np.concatenate(wanted)
+    if not asked.any():
+        return model
+    return replace(model, spare=np.where(never_filled(model), asked, 0.0))
+
+
+def never_filled(model: Model) -> npt.NDArray[np.bool_]:
+    """Return (bin,) True where the total expectation is 0 at every tried parameter value."""
+    spread = np.linspace(-2.0, 2.0, 5)[:, None] * np.ones(model.size)
+    total, _ = model.expected(model.seeds(spread))
+    return np.asarray((total == 0.0).all(axis=0))

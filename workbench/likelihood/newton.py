@@ -1,0 +1,150 @@
+"""Batched Newton maximisation inside a box, with exact derivatives."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.likelihood.objective import Objective
+
+Array = npt.NDArray[np.float64]
+Flags = npt.NDArray[np.bool_]
+
+_LONGEST_STEP = 4.0
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Maxima:
+    """Where a batch of maximisations ended.
+
+    Attributes:
+        points: (batch, coordinate) best points.
+        values: (batch,) what was maximised there [nats].
+        gradients: (batch, coordinate) its gradient.
+        hessians: (batch, coordinate, coordinate) its Hessian, held coordinates included.
+        converged: (batch,) True where the expected further gain is below the tolerance.
+    """
+
+    points: Array
+    values: Array
+    gradients: Array
+    hessians: Array
+    converged: Flags
+
+
+def maximise(
+    objective: Objective,
+    start: Array,
+    counts: Array,
+    *,
+    moving: Flags | None = None,
+    tolerance: float = 1e-7,
+    most: int = 60,
+    scale: Array | None = None,
+) -> Maxima:
+    """Return the maxima reached from a batch of starting points.
+
+    Each iteration solves -H step = gradient over the coordinates that move and are not pressed against the end
+    of their range; where -H is not positive definite its eigenvalues are made so. A step that lowers the
+    value is shortened until it does not. The expected further gain gradient.step/2 decides when to stop.
+
+    Args:
+        objective: what is maximised.
+        start: (batch, coordinate) starting points.
+        counts: (bin,) or (batch, bin) counted events [events].
+        moving: (coordinate,) which coordinates may move; all by default.
+        tolerance: expected further gain at which a point is final [nats].
+        most: iterations at the most.
+        scale: (coordinate,) a length for each coordinate, to bound steps; 1 by default.
+
+    Returns:
+        The maxima; a point that did not converge is the best one found.
+    """
+    size = start.shape[1]
+    free = np.arange(size) if moving is None else np.flatnonzero(moving)
+    unit = np.ones(size) if scale is None else scale
+    points = np.clip(start, objective.low, objective.high)
+    values, gradients, hessians = objective.derivatives(points, counts)
+    converged = np.zeros(len(points), dtype=bool)
+    shrink = np.ones(len(points))
+    steps, gain = _steps(objective, points, gradients, hessians, free, unit)
+    active = np.flatnonzero(gain > tolerance)
+    converged[gain <= tolerance] = True
+    for _ in range(most):
+        if active.size == 0:
+            break
+        wanted = points[active] + shrink[active, None] * steps[active]
+        trial = np.clip(wanted, objective.low, objective.high)
+        rows = counts if counts.ndim == 1 else counts[active]
+        value, gradient, hessian = objective.derivatives(trial, rows)
+        better = value >= values[active] - 1e-10 * (1.0 + np.abs(values[active]))
+        worse = active[~better]
+        shrink[worse] *= 0.3
+        moved = active[better]
+        points[moved], values[moved] = trial[better], value[better]
+        gradients[moved], hessians[moved] = gradient[better], hessian[better]
+        shrink[moved] = 1.0
+        if moved.size:
+            steps[moved], gain[moved] = _steps(
+                objective, points[moved], gradients[moved], hessians[moved], free, unit
+            )
+        converged[moved] = gain[moved] <= tolerance
+        active = active[~converged[active] & (shrink[active] > 1e-9)]
+    return Maxima(points, values, gradients, hessians, converged)
+
+
+def _steps(
+    objective: Objective, points: Array, gradients: Array, hessians: Array, free: npt.NDArray[np.intp], unit: Array
+) -> tuple[Array, Array]:
+    """Return (batch, coordinate) Newton steps and the (batch,) gain each promises."""
+    steps = np.zeros_like(points)
+    if free.size == 0:
+        return steps, np.zeros(len(points))
+    with np.errstate(invalid="ignore"):
+        gradient = np.nan_to_num(gradients[:, free])
+        curvature = np.nan_to_num(-hessians[:, free[:, None], free[None, :]])
+    at = points[:, free]
+    pressed = ((at <= objective.low[free]) & (gradient < 0.0)) | (
+        (at >= objective.high[free]) & (gradient > 0.0)
+    )
+    gradient = np.where(pressed, 0.0, gradient)
+    if pressed.any():
+        keep = ~pressed
+        curvature = curvature * keep[:, :, None] * keep[:, None, :]
+        diagonal = np.arange(free.size)
+        curvature[:, diagonal, diagonal] += np.where(pressed, 1.0 / unit[free] ** 2, 0.0)
+    step = solve_definite(curvature, gradient, unit[free])
+    longest = np.abs(step / unit[free]).max(axis=1)
+    step *= np.minimum(1.0, _LONGEST_STEP / np.maximum(longest, 1e-300))[:, None]
+    steps[:, free] = step
+    reach = np.clip(at + step, objective.low[free], objective.high[free]) - at
+    gain = np.maximum(
+        0.5 * np.einsum("na,na->n", gradient, step), 0.5 * np.einsum("na,na->n", gradient, reach)
+    )
+    return steps, np.where(np.isfinite(gain), gain, np.inf)
+
+
+def solve_definite(matrices: Array, vectors: Array, unit: Array) -> Array:
+    """Solve symmetric systems, making a matrix positive definite by its eigenvalues where it is not.
+
+    Args:
+        matrices: (batch, coordinate, coordinate) symmetric matrices.
+        vectors: (batch, coordinate) right-hand sides.
+        unit: (coordinate,) a length for each coordinate, which sets what a small eigenvalue is.
+
+    Returns:
+        (batch, coordinate) solutions.
+    """
+    scaled = matrices * unit[:, None] * unit[None, :]
+    right = vectors * unit
+    try:
+        np.linalg.cholesky(scaled)
+        return np.linalg.solve(scaled, right[..., None])[..., 0] * unit
+    except np.linalg.LinAlgError:
+        values, axes = np.linalg.eigh(scaled)
+        floor = 1e-10 * np.maximum(np.abs(values).max(axis=1, keepdims=True), 1e-6)
+        values = np.maximum(np.abs(values), floor)
+        inner = np.einsum("nab,na->nb", axes, right) / values
+        return np.asarray(np.einsum("nab,nb->na", axes, inner) * unit)

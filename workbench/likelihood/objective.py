@@ -1,0 +1,130 @@
+"""What is maximised: the log likelihood with priors or penalties, in standard or natural coordinates."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.likelihood.model import Model
+
+Array = npt.NDArray[np.float64]
+
+_CHUNK = 6_000_000
+
+
+class Objective(Protocol):
+    """A function of (batch, coordinate) points with exact derivatives and a box of allowed points."""
+
+    @property
+    def low(self) -> Array:
+        """Return (coordinate,) lower ends of the allowed box."""
+        ...
+
+    @property
+    def high(self) -> Array:
+        """Return (coordinate,) upper ends of the allowed box."""
+        ...
+
+    def value(self, points: Array, counts: Array) -> Array:
+        """Return (batch,) values [nats]."""
+        ...
+
+    def derivatives(self, points: Array, counts: Array) -> tuple[Array, Array, Array]:
+        """Return values, (batch, coordinate) gradients and (batch, coordinate, coordinate) Hessians."""
+        ...
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StandardObjective:
+    """ln likelihood + ln standard-normal density of every coordinate: the integrand of the evidence.
+
+    With t the standard-normal coordinates, x = F^-1(Phi(t)):
+        ln p(n | x(t)) - t.t/2 - (d/2) ln 2 pi
+    """
+
+    model: Model
+
+    @property
+    def low(self) -> Array:
+        """Return the lower ends: none but where the normal tail underflows."""
+        return np.full(self.model.size, -37.0)
+
+    @property
+    def high(self) -> Array:
+        """Return the upper ends."""
+        return np.full(self.model.size, 37.0)
+
+    def value(self, points: Array, counts: Array) -> Array:
+        """Return (batch,) ln integrand [nats] at (batch, coordinate) points."""
+        likelihood = self.model.ln_likelihood(self.model.seeds(points), counts)
+        return likelihood - _half_square(points)
+
+    def derivatives(self, points: Array, counts: Array) -> tuple[Array, Array, Array]:
+        """Return the ln integrand with exact gradient and Hessian."""
+        value, gradient, hessian = self.model.derivatives(self.model.seeds(points), counts)
+        diagonal = np.arange(self.model.size)
+        hessian[:, diagonal, diagonal] -= 1.0
+        return value - _half_square(points), gradient - points, hessian
+
+
+def _half_square(points: Array) -> Array:
+    return 0.5 * np.einsum("na,na->n", points, points) + 0.5 * points.shape[1] * np.log(2.0 * np.pi)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FitObjective:
+    """ln likelihood with the penalties of a fit, in the parameters themselves.
+
+    A source adds -z^2/2; a nuisance parameter its ln prior density (in ln x for lognormal and loguniform),
+    constant dropped; a signal parameter nothing, only its prior's range.
+    """
+
+    model: Model
+    low: Array
+    high: Array
+
+    def value(self, points: Array, counts: Array) -> Array:
+        """Return (batch,) penalised ln likelihood [nats] at (batch, coordinate) points."""
+        return self.model.ln_likelihood(self.model.natural_seeds(points), counts) + self.penalty(points)[0]
+
+    def derivatives(self, points: Array, counts: Array) -> tuple[Array, Array, Array]:
+        """Return the penalised ln likelihood with exact gradient and Hessian."""
+        value, gradient, hessian = self.model.derivatives(self.model.natural_seeds(points), counts)
+        penalty, slope, bend = self.penalty(points)
+        diagonal = np.arange(self.model.size)
+        hessian[:, diagonal, diagonal] += bend
+        return value + penalty, gradient + slope, hessian
+
+    def penalty(self, points: Array) -> tuple[Array, Array, Array]:
+        """Return (batch,) penalties with (batch, coordinate) first and second derivatives."""
+        total = np.zeros(points.shape[0])
+        slope, bend = np.zeros_like(points), np.zeros_like(points)
+        for index, coordinate in enumerate(self.model.coordinates):
+            if coordinate.role == "source":
+                z = points[:, index]
+                total -= 0.5 * z * z
+                slope[:, index], bend[:, index] = -z, -1.0
+            elif coordinate.role == "nuisance":
+                value, first, second = coordinate.prior.fit_penalty(points[:, index])
+                total += value
+                slope[:, index], bend[:, index] = first, second
+        return total, slope, bend
+
+
+def fit_objective(model: Model) -> FitObjective:
+    """Return what a fit of this hypothesis maximises, with every parameter's allowed range."""
+    ranges = [
+        (-np.inf, np.inf) if coordinate.role == "source" else coordinate.prior.support
+        for coordinate in model.coordinates
+    ]
+    low = np.array([low for low, _ in ranges], dtype=float)
+    high = np.array([high for _, high in ranges], dtype=float)
+    return FitObjective(model, low, high)
+
+
+def rows_at_once(model: Model) -> int:
+    """Return how many points to evaluate together, so that memory stays bounded."""
+    return max(1, _CHUNK // max(1, model.bins * (model.size + 2)))
