@@ -22,7 +22,7 @@ _POWERS = np.arange(2, 18, 2)
 _LN_SERIES = special.bernoulli(16)[_POWERS] / (_POWERS * special.factorial(_POWERS))
 _SLOPE_SERIES = _LN_SERIES * _POWERS
 _BEND_SERIES = _SLOPE_SERIES * (_POWERS - 1)
-_SMALL = 0.5  # the series' first term left out is below 1e-17 there
+SMALL = 0.5  # the series' first term left out is below 1e-17 there
 
 
 @dataclass(frozen=True, slots=True)
@@ -139,44 +139,50 @@ def _exponential(starts: Array, widths: Array, length: float, rate: Jet) -> Jet:
 
     A negative rate is that density seen from the other end.
     """
-    rising = rate.value[..., None] < 0.0
+    if np.ptp(widths) <= 1e-13 * np.max(widths):
+        widths = np.mean(widths, keepdims=True)  # equal but for rounding: once instead of bin by bin
     k = np.abs(rate.value)[..., None]
-    begin = np.where(rising, np.maximum(length - starts - widths, 0.0), starts)
-    inside, whole = k * widths, k * length
-    value = np.exp(-k * begin) * (widths / length) * _decline(inside) / _decline(whole)
+    rising = rate.value[..., None] < 0.0
+    begin = starts
+    if rising.any():
+        begin = np.where(rising, np.maximum(length - starts - widths, 0.0), starts)
+    lost_inside, lost_whole = -np.expm1(-k * widths), -np.expm1(-k * length)
+    # Where k is 0 both are 0, and the fraction is w/L.
+    fraction = np.where(k > 1e-290, lost_inside / np.where(k > 1e-290, lost_whole, 1.0), widths / length)
+    value = np.exp(-k * begin) * fraction
     if not rate.moves:
         return Jet.constant(value, rate.variables)
-    slope_inside, bend_inside = _ln_decline(inside)
-    slope_whole, bend_whole = _ln_decline(whole)
-    ln_slope = -begin + widths * slope_inside - length * slope_whole
+    slope_inside, bend_inside = _ln_decline(k * widths, lost_inside)
+    slope_whole, bend_whole = _ln_decline(k * length, lost_whole)
+    ln_slope = (widths * slope_inside - length * slope_whole) - begin
     ln_bend = widths**2 * bend_inside - length**2 * bend_whole
-    slope = value * np.where(rising, -ln_slope, ln_slope)
+    slope = value * (np.where(rising, -ln_slope, ln_slope) if rising.any() else ln_slope)
     return compose(value, (rate,), lambda _: slope, lambda *_: value * (ln_slope**2 + ln_bend))
 
 
-def _decline(u: Array) -> Array:
-    """Return (1 - exp(-u))/u for u >= 0."""
-    safe = np.maximum(u, 1e-300)
-    decline: Array = -np.expm1(-safe) / safe
-    return decline
-
-
-def _ln_decline(u: Array) -> tuple[Array, Array]:
-    """Return first and second derivatives of ln((1 - exp(-u))/u) for u >= 0.
+def _ln_decline(u: Array, lost: Array) -> tuple[Array, Array]:
+    """Return first and second derivatives of ln((1 - exp(-u))/u) for u >= 0, given lost = 1 - exp(-u).
 
         1/(e^u - 1) - 1/u,      1/u^2 - e^u/(e^u - 1)^2
 
     Source:
-        Abramowitz and Stegun, 23.1.1 (generating function of the Bernoulli numbers), for the series near 0.
+        Abramowitz and Stegun, 23.1.1 (generating function of the Bernoulli numbers), for the series near 0;
+        from memory.
     """
-    small = u < _SMALL
-    large = np.where(small, 1.0, u)
-    left, gone = np.exp(-large), -np.expm1(-large)
-    slope = np.where(small, 0.0, left / gone - 1.0 / large)
-    bend = np.where(small, 0.0, 1.0 / large**2 - left / gone**2)
+    small = u < SMALL
+    inverse, gain = 1.0 / np.where(small, 1.0, u), 1.0 / np.where(small, 1.0, lost)
+    slope, bend = gain - 1.0 - inverse, inverse**2 - gain * (gain - 1.0)
     if small.any():
-        near = np.where(small, u, 0.0)
-        square = near * near
-        slope = np.where(small, -0.5 + near * np.polynomial.polynomial.polyval(square, _SLOPE_SERIES), slope)
-        bend = np.where(small, np.polynomial.polynomial.polyval(square, _BEND_SERIES), bend)
+        near = u[small]
+        slope[small] = -0.5 + near * _series(_SLOPE_SERIES, near * near)
+        bend[small] = _series(_BEND_SERIES, near * near)
     return slope, bend
+
+
+def _series(coefficients: Array, x: Array) -> Array:
+    """Return the polynomial sum of c_n x^n."""
+    total = np.full(x.shape, coefficients[-1])
+    for coefficient in coefficients[-2::-1]:
+        total *= x
+        total += coefficient
+    return total
