@@ -138,9 +138,9 @@ def make_tarn(folder: Path) -> None:
 
 
 def make_sorrel(folder: Path) -> None:
-    """Make Sorrel: 3.4 stray muons and 5.1 decays expected in the signal region."""
+    """Make Sorrel: 3.4 stray muons and 7.5 decays expected in the signal region."""
     low, high = np.array([0.0]), np.array([10.0])
-    on, off = drawn(SEEDS["sorrel"], np.array([3.4 + 5.1, 4.0 * 3.4]))
+    on, off = drawn(SEEDS["sorrel"], np.array([3.4 + 7.5, 4.0 * 3.4]))
     write_table(folder / "sorrel-signal.csv", low, high, {"observed": [on]})
     write_table(folder / "sorrel-control.csv", low + 10.0, high + 10.0, {"observed": [off]})
 
