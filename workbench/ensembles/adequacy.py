@@ -1,0 +1,98 @@
+"""Does a hypothesis describe the data at all: the saturated model, calibrated by pseudo-experiments."""
+
+from __future__ import annotations
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.ensembles.drawing import blocks, draw_counts, draw_parameters
+from workbench.ensembles.results import Adequacy
+from workbench.errors import InputError, Problem
+from workbench.hypotheses.analysis import Analysis
+from workbench.likelihood.laws import ln_saturated
+from workbench.likelihood.model import Model, compile_model
+from workbench.likelihood.starts import Searcher, best_points, searcher
+
+Array = npt.NDArray[np.float64]
+
+THRESHOLD = 0.01
+_FIRST = 200
+_ERRORS_AWAY = 3.0
+
+
+def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000) -> Adequacy:
+    """Return how often pseudo-experiments from a hypothesis fit it worse than the observed counts do.
+
+    T = 2 (ln p of the saturated model - largest penalised ln p); p = (1 + number with T at least as large)/(1 + number).
+    Sources, and nuisance parameters whose prior is not flat, are drawn from their priors, the others held at their
+    fitted values; counts come from the hypothesis' law; each pseudo-experiment is fitted again. Drawn until p is 3
+    errors away from 0.01: at least 200, at most `most`.
+
+    Args:
+        analysis: everything declared, with observed counts.
+        hypothesis: the hypothesis' name.
+        seed: where the pseudo-experiments come from.
+        most: pseudo-experiments at the most.
+
+    Returns:
+        Statistic, p and its standard error.
+
+    Raises:
+        InputError: if there is no such hypothesis or a region has no observed counts.
+
+    Source:
+        Saturated-model test: S. Baker, R.D. Cousins, Nucl. Instrum. Meth. 221 (1984) 437; from memory. p of a simulated
+        ensemble: A.C. Davison, D.V. Hinkley, Bootstrap Methods and their Application (1997); from memory.
+    """
+    model = compile_model(analysis, hypothesis)
+    if model.observed is None:
+        raise InputError(
+            Problem(
+                what="adequacy needs observed counts",
+                where=f"hypothesis {hypothesis!r}",
+                found="a region without `observed`",
+                expected="observed counts in every bin",
+                remedy="add an `observed` column",
+            )
+        )
+    search = searcher(model)
+    observed, points, _ = statistic(search, model.observed[None])
+    held = _held(model, points[0])
+    index = [one.name for one in analysis.hypotheses].index(hypothesis)
+    source = np.random.SeedSequence(seed, spawn_key=(1, index))
+    drawn = worse = unfinished = 0
+    while True:
+        batch = min(_FIRST, most - drawn) if drawn == 0 else min(2 * _FIRST, most - drawn)
+        for generator, number in blocks(source, batch, drawn):
+            counts = draw_counts(model, draw_parameters(model, generator, number, held), generator)
+            values, _, finished = statistic(search, counts)
+            worse += int((values >= observed[0] - 1e-9).sum())
+            unfinished += int((~finished).sum())
+        drawn += batch
+        p = (1.0 + worse) / (1.0 + drawn)
+        error = float(np.sqrt(p * (1.0 - p) / drawn))
+        if drawn >= most or abs(p - THRESHOLD) > _ERRORS_AWAY * error:
+            return Adequacy(hypothesis, float(observed[0]), p, error, drawn, unfinished)
+
+
+def statistic(search: Searcher, counts: Array) -> tuple[Array, Array, npt.NDArray[np.bool_]]:
+    """Return (row,) T of each row of counts, the best-fit points and whether each fit converged.
+
+    Args:
+        search: the hypothesis' searcher.
+        counts: (row, bin) counts [events].
+
+    Returns:
+        T [2 nats], (row, coordinate) points, (row,) convergence.
+    """
+    points, values, converged = best_points(search, counts, tolerance=1e-4)
+    return 2.0 * (ln_saturated(counts) - values), points, converged
+
+
+def _held(model: Model, fitted: Array) -> Array:
+    """Return (coordinate,) fitted values of what is not drawn from its prior, nan elsewhere."""
+    drawn = [
+        coordinate.role == "source" or (coordinate.role == "nuisance" and not coordinate.prior.is_flat)
+        for coordinate in model.coordinates
+    ]
+    return np.where(np.array(drawn, dtype=bool), np.nan, fitted)

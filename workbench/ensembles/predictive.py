@@ -1,0 +1,59 @@
+"""What a hypothesis expects before any count is seen."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.ensembles.drawing import draw_counts, draw_parameters
+from workbench.hypotheses.analysis import Analysis
+from workbench.likelihood.model import compile_model
+
+Array = npt.NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class PriorPredictive:
+    """Counts that a hypothesis expects under its priors, all regions' bins in order.
+
+    Attributes:
+        hypothesis: its name.
+        low, median, high: (bin,) central 68 % of the counts in each bin [events].
+        total_low, total_median, total_high: the same of the total [events].
+    """
+
+    hypothesis: str
+    low: Array
+    median: Array
+    high: Array
+    total_low: float
+    total_median: float
+    total_high: float
+
+
+def prior_predictive(analysis: Analysis, hypothesis: str, *, seed: int = 1, draws: int = 400) -> PriorPredictive:
+    """Return the central 68 % of counts drawn from a hypothesis with all parameters drawn from their priors.
+
+    Args:
+        analysis: everything declared; observed counts are not used.
+        hypothesis: the hypothesis' name.
+        seed: where the draws come from.
+        draws: pseudo-experiments.
+
+    Returns:
+        Bands of the counts in each bin and of the total.
+
+    Raises:
+        InputError: if there is no such hypothesis.
+    """
+    model = compile_model(analysis, hypothesis)
+    index = [one.name for one in analysis.hypotheses].index(hypothesis)
+    generator = np.random.default_rng(np.random.SeedSequence(seed, spawn_key=(2, index)))
+    counts = draw_counts(model, draw_parameters(model, generator, draws), generator)
+    low, median, high = np.quantile(counts, [0.16, 0.5, 0.84], axis=0)
+    total_low, total_median, total_high = np.quantile(counts.sum(axis=1), [0.16, 0.5, 0.84])
+    return PriorPredictive(
+        hypothesis, low, median, high, float(total_low), float(total_median), float(total_high)
+    )
