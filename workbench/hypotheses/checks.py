@@ -5,14 +5,13 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping
 
-from workbench.errors import nearest
 from workbench.hypotheses.checks_processes import process_faults
 from workbench.hypotheses.checks_uncertainties import uncertainty_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
 from workbench.hypotheses.faults import Fault, quoted, shown
 from workbench.hypotheses.hypothesis import Hypothesis
-from workbench.hypotheses.unknown_names import unknown_fault
+from workbench.hypotheses.unknown_names import nearest_name, unknown_fault
 
 
 def faults_of(declared: Declared) -> tuple[Fault, ...]:
@@ -161,7 +160,7 @@ def _fix_faults(name: str, hypothesis: Hypothesis, declared: Declared) -> Iterat
                 "A held parameter that the hypothesis does not use",
                 quoted(parameter),
                 "a parameter of one of its processes",
-                nearest(parameter, used),
+                nearest_name(parameter, used),
             )
         if not math.isfinite(number):
             yield Fault(

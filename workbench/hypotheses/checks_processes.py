@@ -10,7 +10,7 @@ from workbench.counts.region import Region
 from workbench.errors import nearest
 from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
-from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shown
+from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shortened, shown
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, reaches_of
@@ -43,7 +43,7 @@ def _process(
             "A process in no region",
             "none",
             "at least one region",
-            f"add [{dotted((*path, 'regions'))}.REGION], REGION one of: {', '.join(declared.regions)}",
+            f"add [{dotted((*path, 'regions'))}.NAME] for one of: {shortened(', '.join(declared.regions))}",
         )
     for place, factor in enumerate(process.factors):
         yield from _atom((*path, "factors", place), factor, declared, reaches)

@@ -10,7 +10,13 @@ EXPOSURE_SOURCE: Final = "exposure"  # the reserved name of the source that `unc
 
 @dataclass(frozen=True, slots=True)
 class Exposure:
-    """What yields are proportional to; `uncertainty` is a source named "exposure"."""
+    """What yields are proportional to.
+
+    Attributes:
+        collected: how much of it the yields and counts stand for; > 0.
+        unit: its unit.
+        uncertainty: relative size of a source named "exposure" on all that follows exposure; None for none.
+    """
 
     collected: float
     unit: str = ""

@@ -52,12 +52,17 @@ def field_path(key: str) -> KeyPath:
 
 def quoted(word: str) -> str:
     """Return a text in double quotes on one line, cut where it is long."""
-    safe = "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in word)
-    return '"' + shortened(safe) + '"'
+    return '"' + shortened(word) + '"'
+
+
+def printable(text: str) -> str:
+    """Return a text with everything that a terminal would not show, or act on, spelt out."""
+    return "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in text)
 
 
 def shortened(text: str) -> str:
-    """Return a text cut to what fits on a line of the terminal."""
+    """Return a text that can be printed, cut to what fits on a line of the terminal."""
+    text = printable(text)
     return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
 
 

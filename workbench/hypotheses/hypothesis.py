@@ -10,7 +10,14 @@ from workbench.hypotheses.frozen import FrozenMapping
 
 @dataclass(frozen=True, slots=True)
 class Hypothesis:
-    """A list of processes with a prior probability (relative), some parameters perhaps held."""
+    """A list of processes with a prior probability, some parameters perhaps held.
+
+    Attributes:
+        name: the hypothesis' name.
+        processes: names of the processes that it is made of.
+        prior: prior probability relative to the other hypotheses'; > 0.
+        fix: parameter name to the number that it is held at.
+    """
 
     name: str
     processes: tuple[str, ...]

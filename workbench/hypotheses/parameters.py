@@ -9,7 +9,13 @@ from workbench.hypotheses.priors import Prior
 
 @dataclass(frozen=True, slots=True)
 class Parameter:
-    """An unknown number with a prior."""
+    """An unknown number with a prior.
+
+    Attributes:
+        name: the parameter's name.
+        prior: what is believed about it beforehand; always proper.
+        unit: its unit.
+    """
 
     name: str
     prior: Prior

@@ -6,9 +6,14 @@ import re
 from collections.abc import Collection
 
 from workbench.errors import nearest
-from workbench.hypotheses.faults import Fault, KeyPath, quoted, shortened
+from workbench.hypotheses.faults import Fault, KeyPath, printable, quoted, shortened
 
 NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
+
+
+def nearest_name(name: str, known: Collection[str]) -> str:
+    """Return what to write instead of a name: the nearest known one, or all of them, in printable letters."""
+    return nearest(printable(name), [printable(one) for one in known])
 
 
 def unknown_fault(
@@ -30,7 +35,7 @@ def unknown_fault(
     if NUMBER.fullmatch(name.strip()) and kind == "parameter":
         remedy = f"write {name.strip()} without quotes, if it is a number"
     else:
-        remedy = nearest(name, known) if known else f"declare the {kind} {quoted(name)}"
+        remedy = nearest_name(name, known) if known else f"declare the {kind} {quoted(name)}"
     return Fault(
         path, f"A {kind} that is not {owner}", quoted(name), f"a {kind}: {shortened(listed)}", remedy
     )
