@@ -8,6 +8,9 @@ from pathlib import Path
 
 import pytest
 
+from workbench.evidence.weigh import weigh
+from workbench.hypotheses.reading import read_analysis
+
 DATA = Path(__file__).parents[2] / "data"
 MADE = (
     "skerry/skerry-peak.csv",
@@ -48,3 +51,27 @@ def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     before, after = text.split("\n## The truth behind it\n")
     assert "seed" in before
     assert "\n## " not in after
+
+
+@pytest.mark.parametrize("name", ["skerry/skerry-fixed-mass", "tarn/tarn", "sorrel/sorrel"])
+def test_a_demonstration_has_an_established_answer(name: str) -> None:
+    weighing = weigh(read_analysis(DATA / f"{name}.toml"))
+    assert weighing.established, weighing.evidences
+    assert all(comparison.posterior_odds is not None for comparison in weighing.comparisons)
+
+
+def test_skerry_is_neither_trivial_nor_hopeless() -> None:
+    """At unknown mass ln B was tuned to lie between 3 and 8; the predicted mass is stronger evidence."""
+    weighing = weigh(read_analysis(DATA / "skerry" / "skerry.toml"))
+    assert weighing.established, weighing.evidences
+    ln_b = weighing.comparisons[0].ln_bayes_factor
+    assert ln_b is not None
+    assert 3.0 < ln_b < 8.0
+    held = weigh(read_analysis(DATA / "skerry" / "skerry-fixed-mass.toml")).comparisons[0].ln_bayes_factor
+    assert held is not None
+    assert held > ln_b
+
+
+def test_the_analyses_read_without_a_caution() -> None:
+    for path in sorted(DATA.glob("*/*.toml")):
+        assert read_analysis(path).cautions == (), path

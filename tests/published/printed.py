@@ -40,6 +40,10 @@ class Printed:
             assert computed == pytest.approx(self.recomputed, rel=2e-9, abs=1e-11), origin
 
 
+TAKEN: set[str] = set()
+"""Names of the values that some test has asked for."""
+
+
 @functools.cache
 def every_value() -> tuple[Printed, ...]:
     """Read all of them."""
@@ -68,4 +72,5 @@ def of_topic(topic: str, *starts: str) -> pytest.MarkDecorator:
         for value in every_value()
         if value.topic == topic and (not starts or value.name.startswith(starts))
     ]
+    TAKEN.update(value.name for value in chosen)
     return pytest.mark.parametrize("printed", chosen, ids=[value.name for value in chosen])

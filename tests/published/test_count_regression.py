@@ -15,8 +15,11 @@ from pathlib import Path
 
 import numpy as np
 import numpy.typing as npt
+import pytest
 import statsmodels
 from statsmodels.datasets import cpunish, randhie
+from statsmodels.genmod import families
+from statsmodels.genmod.generalized_linear_model import GLM
 
 from tests.published.printed import Printed, of_topic
 from workbench.counts.binning import Binning
@@ -27,9 +30,11 @@ from workbench.hypotheses.priors import LogUniform
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.shapes import Flat, Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
+from workbench.likelihood.fit import fit
 from workbench.likelihood.laws import ln_saturated
 from workbench.likelihood.model import Model, compile_model
 from workbench.likelihood.newton import maximise
+from workbench.likelihood.results import Ending
 
 Array = npt.NDArray[np.float64]
 
@@ -194,3 +199,18 @@ def as_regions(data: Observations) -> Analysis:
         processes=(Process("rate", "background", {f"row {row}": contribution(row) for row in rows}),),
         hypotheses=(Hypothesis("log-linear", ("rate",)),),
     )
+
+
+@pytest.mark.parametrize("data", ["doctors", "ships"])
+def test_the_whole_fit_finds_the_published_regression_with_its_errors(data: str) -> None:
+    """Coefficients against the maximum above; errors against those of statsmodels' regression."""
+    known, maximum = observations(data), full(data)
+    found = fit(as_regions(known), "log-linear", asymmetric=False)
+    assert found.ending is Ending.CONVERGED
+    assert found.ln_likelihood == pytest.approx(maximum.ln_likelihood, abs=1e-7)
+    design = np.column_stack([np.ones(known.counts.size), *known.covariates.values()])
+    reference = GLM(known.counts, design, family=families.Poisson(), offset=np.log(known.exposure)).fit()
+    for one, error in zip(found.fitted, reference.bse, strict=True):
+        assert np.log(one.value) == pytest.approx(maximum.coefficients[one.name], abs=1e-6)
+        assert one.error is not None
+        assert one.error / one.value == pytest.approx(error, rel=1e-5)
