@@ -82,10 +82,11 @@ class Beta(ContinuousPrior):
         ln_beta = special.betaln(self.a, self.b)
         ln_lower_end = (special.log_ndtr(t) + np.log(self.a) + ln_beta) / self.a
         ln_upper_end = (special.log_ndtr(-t) + np.log(self.b) + ln_beta) / self.b
-        return (
-            np.where(ln_lower_end < SERIES_BELOW, ln_lower_end, np.log(np.maximum(lower, TINY))),
-            np.where(ln_upper_end < SERIES_BELOW, ln_upper_end, np.log(np.maximum(upper, TINY))),
-        )
+        at_lower, at_upper = ln_lower_end < SERIES_BELOW, ln_upper_end < SERIES_BELOW
+        # The inverse of the part next to 1 may fail where the other part is this small.
+        ln_lower = np.log(np.maximum(np.where(at_upper, 1.0, lower), TINY))
+        ln_upper = np.log(np.maximum(np.where(at_lower, 1.0, upper), TINY))
+        return np.where(at_lower, ln_lower_end, ln_lower), np.where(at_upper, ln_upper_end, ln_upper)
 
     def _rate(self, t: Array, ln_y: Array, ln_rest: Array) -> Array:
         """Return (dy/dt)/(y (1 - y))."""

@@ -120,7 +120,10 @@ class LogUniform(ContinuousPrior):
 
     @property
     def _ln_range(self) -> float:
-        return float(np.log(self.high / self.low))
+        near = self.high < 2.0 * self.low
+        return float(
+            np.log1p((self.high - self.low) / self.low) if near else np.log(self.high) - np.log(self.low)
+        )
 
     @property
     def moments(self) -> Moments:
@@ -147,9 +150,15 @@ class LogUniform(ContinuousPrior):
     def to_standard(self, x: npt.ArrayLike) -> Array:
         """Return t of x."""
         place = np.clip(as_array(x), self.low, self.high)
-        above_low = np.log1p((place - self.low) / self.low) / self._ln_range
-        below_high = -np.log1p((place - self.high) / self.high) / self._ln_range
-        return standard_from_tails(above_low, below_high)
+        near_low, near_high = place < 2.0 * self.low, place > 0.5 * self.high
+        above = np.where(
+            near_low,
+            np.log1p((np.minimum(place, 2.0 * self.low) - self.low) / self.low),
+            np.log(place) - np.log(self.low),
+        )
+        step = np.where(near_high, (place - self.high) / self.high, 0.0)
+        below = np.where(near_high, -np.log1p(step), np.log(self.high) - np.log(place))
+        return standard_from_tails(above / self._ln_range, below / self._ln_range)
 
     def ln_density(self, x: npt.ArrayLike) -> Array:
         """Return -ln x - ln ln(high/low) inside."""
