@@ -13,7 +13,7 @@ from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shortened, shown
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
-from workbench.hypotheses.reach import Reach, atoms, reaches_of
+from workbench.hypotheses.reach import Reach, atoms, product_range, reaches_of
 from workbench.hypotheses.shapes import Bernstein, PowerLaw, Shape, Template, Templates
 from workbench.hypotheses.unknown_names import unknown_fault
 
@@ -77,11 +77,11 @@ def _contribution(
         yield from at_faults(where, shape.at, len(shape.columns), "columns")
         yield from interpolation_faults(where, shape.parameter, shape.at, reaches)
     if region is not None:
-        yield from _shape_in_region((*path, "shape", shape.family), shape, contribution, region)
+        yield from _shape_in_region((*path, "shape", shape.family), shape, contribution, region, reaches)
 
 
 def _shape_in_region(
-    path: KeyPath, shape: Shape, contribution: Contribution, region: Region
+    path: KeyPath, shape: Shape, contribution: Contribution, region: Region, reaches: dict[str, Reach]
 ) -> Iterator[Fault]:
     """Yield what is wrong with a shape and the bins and columns that it is given."""
     columns: dict[KeyPath, str] = {("column",): shape.column} if isinstance(shape, Template) else {}
@@ -109,9 +109,7 @@ def _shape_in_region(
             "a first edge > 0: x**-index has no integral from 0",
             "cut the region above 0, or use another shape",
         )
-    if isinstance(shape, Bernstein) and all(
-        isinstance(one, int | float) and one == 0 for one in shape.coefficients
-    ):
+    if isinstance(shape, Bernstein) and _are_all_zero(shape.coefficients, reaches):
         yield Fault(
             (*path, "coefficients"),
             "Bernstein coefficients that are all 0",
@@ -119,6 +117,12 @@ def _shape_in_region(
             "at least one above 0",
             "write 1 for a flat shape",
         )
+
+
+def _are_all_zero(quantities: tuple[Quantity, ...], reaches: dict[str, Reach]) -> bool:
+    """Tell whether no value of any parameter lifts any of the quantities above 0."""
+    ranges = [product_range(tuple(atoms(one)), reaches) for one in quantities]
+    return all(one is not None and one[1] <= 0 for one in ranges)
 
 
 def _quantity(

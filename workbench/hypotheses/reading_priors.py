@@ -54,7 +54,7 @@ def _prior(family: str, section: Section) -> Prior | None:
     numbers: dict[str, Any] = {}
     for field in fields(made):
         if section.has(field.name) or field.default is MISSING:
-            numbers[field.name] = _number(section, field.name)
+            numbers[field.name] = _number(section, field.name, field.default is None)
     section.close()
     if not section.is_sound:
         return None
@@ -69,9 +69,19 @@ def _prior(family: str, section: Section) -> Prior | None:
     return None
 
 
-def _number(section: Section, key: str) -> float:
+def _number(section: Section, key: str, is_end_optional: bool) -> float:
     value = section.content.get(key)
-    if isinstance(value, float) and math.isinf(value):
+    if not isinstance(value, float) or not math.isinf(value):
+        return section.number(key)
+    if is_end_optional:
+        section.refuse(
+            key,
+            "An end that is infinite",
+            f"{key} = {shown(value)}",
+            "a finite number: this prior falls off by itself",
+            f"leave {key} out",
+        )
+    else:
         section.refuse(
             key,
             "An improper prior",
@@ -79,8 +89,7 @@ def _number(section: Section, key: str) -> float:
             IMPROPER,
             "write a finite range, or a family that falls off, such as exponential or halfnormal",
         )
-        return 0.0
-    return section.number(key)
+    return 0.0
 
 
 def parse_prior(text: str, shown_as: str = "--strength") -> Prior:
