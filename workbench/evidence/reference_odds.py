@@ -64,7 +64,7 @@ def ln_fair_split(first: int, second: int) -> float:
 
 
 def _ln_scaled_beta(x: float, y: float) -> float:
-    """Return ln[ B(x, y) 2^(x + y) ], with its digits also where x and y are both large (Stirling, Loader)."""
+    """Return ln[ B(x, y) 2^(x + y) ], keeping its digits where x and y are both large (Stirling, Loader)."""
     pair, total = np.array([x, y]), x + y
     corrections = stirling_error(pair).sum() - float(stirling_error(np.asarray(total)))
     middle = half_deviance(pair, np.full(2, 0.5 * total)).sum()
