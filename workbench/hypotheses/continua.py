@@ -96,7 +96,7 @@ class Bernstein(AnalyticShape):
 
         With M_ji the integral of the j-th basis polynomial, normalised to 1, over bin i, and S the sum of c:
             p_i = sum_j c_j M_ji / S,      dp/dc_j = (M_j - p)/S,
-            d2p/dc_j dc_l = (2 p - M_j - M_l)/S^2
+            d2p/dc_j dc_k = (2 p - M_j - M_k)/S^2
 
         Source:
             None, definition.
@@ -112,7 +112,7 @@ class Bernstein(AnalyticShape):
             value,
             weights,
             lambda j: (basis[j] - value) / safe,
-            lambda j, l: (2.0 * value - basis[j] - basis[l]) / safe**2,  # noqa: E741
+            lambda j, k: (2.0 * value - basis[j] - basis[k]) / safe**2,
         )
 
 

@@ -107,7 +107,7 @@ def _density(z: Array, a: Array, p: Array, total: Array) -> tuple[Array, Array]:
 def _with_moving_tails(edges: Edges, z: Array, value: Array, total: Array, arguments: tuple[Jet, ...]) -> Jet:
     """Return value = C/N, C the integral over the bin and N that over the line, as a jet in all six numbers.
 
-    f_k = (C_k - f N_k)/N,      f_kl = (C_kl - f_k N_l - f_l N_k - f N_kl)/N
+    f_k = (C_k - f N_k)/N,      f_kn = (C_kn - f_k N_n - f_n N_k - f N_kn)/N
     """
     unnormalised = _Pieces(edges, z, arguments)
 
@@ -115,9 +115,9 @@ def _with_moving_tails(edges: Edges, z: Array, value: Array, total: Array, argum
     def slope(k: int) -> Array:
         return np.asarray((unnormalised.slope(k) - value * unnormalised.whole_slope(k)) / total)
 
-    def bend(k: int, l: int) -> Array:  # noqa: E741
-        crossed = slope(k) * unnormalised.whole_slope(l) + slope(l) * unnormalised.whole_slope(k)
-        change = unnormalised.bend(k, l) - crossed - value * unnormalised.whole_bend(k, l)
+    def bend(k: int, n: int) -> Array:
+        crossed = slope(k) * unnormalised.whole_slope(n) + slope(n) * unnormalised.whole_slope(k)
+        change = unnormalised.bend(k, n) - crossed - value * unnormalised.whole_bend(k, n)
         return np.asarray(change / total)
 
     return compose(value, arguments, slope, bend)
@@ -149,9 +149,9 @@ class _Pieces:
         """Return dN/dk."""
         return 0.0 if k < 2 else self.whole[k // 2 - 1][0][1 + k % 2]
 
-    def whole_bend(self, k: int, l: int) -> Array | float:  # noqa: E741
-        """Return d2N/dk dl."""
-        return 0.0 if k < 2 or k // 2 != l // 2 else self.whole[k // 2 - 1][1][1 + k % 2][1 + l % 2]
+    def whole_bend(self, k: int, n: int) -> Array | float:
+        """Return d2N/dk dn."""
+        return 0.0 if k < 2 or k // 2 != n // 2 else self.whole[k // 2 - 1][1][1 + k % 2][1 + n % 2]
 
     def slope(self, k: int) -> Array:
         """Return dC/dk by bins."""
@@ -161,22 +161,22 @@ class _Pieces:
         at_edges = self.side[k // 2 - 1] * self.sign * self.first[1 + k % 2]
         return np.asarray(self.edges.differences(at_edges) + self.across * self.whole_slope(k))
 
-    def bend(self, k: int, l: int) -> Array:  # noqa: E741
-        """Return d2C/dk dl by bins, k <= l."""
-        if l < 2:
+    def bend(self, k: int, n: int) -> Array:
+        """Return d2C/dk dn by bins, k <= n."""
+        if n < 2:
             tilt = self.sign * self.second[0][0]
             if k == 0:
-                at_edges = tilt if l == 0 else self.z * tilt - self.first[0]
+                at_edges = tilt if n == 0 else self.z * tilt - self.first[0]
             else:
                 at_edges = self.z * (self.z * tilt - 2.0 * self.first[0])
             return self.edges.differences(self.inverse**2 * at_edges)
         if k < 2:
-            at_edges = self.side[l // 2 - 1] * self.second[0][1 + l % 2] * self.inverse
+            at_edges = self.side[n // 2 - 1] * self.second[0][1 + n % 2] * self.inverse
             return self.edges.differences(at_edges * (self.z if k else 1.0))
-        if k // 2 != l // 2:
+        if k // 2 != n // 2:
             return np.zeros(self.across.shape)
-        at_edges = self.side[k // 2 - 1] * self.sign * self.second[1 + k % 2][1 + l % 2]
-        return np.asarray(self.edges.differences(at_edges) + self.across * self.whole_bend(k, l))
+        at_edges = self.side[k // 2 - 1] * self.sign * self.second[1 + k % 2][1 + n % 2]
+        return np.asarray(self.edges.differences(at_edges) + self.across * self.whole_bend(k, n))
 
 
 def _beyond_derivatives(u: Array, a: Array, p: Array) -> tuple[list[Array], list[list[Array]]]:

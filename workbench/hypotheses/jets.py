@@ -244,7 +244,7 @@ def compose(
     """Return a function of several jets by bins, given its derivatives in those jets.
 
         df/dx_i       = sum_k f_k dA_k/dx_i
-        d2f/dx_i dx_j = sum_k f_k d2A_k/dx_i dx_j + sum_kl f_kl dA_k/dx_i dA_l/dx_j
+        d2f/dx_i dx_j = sum_k f_k d2A_k/dx_i dx_j + sum_kn f_kn dA_k/dx_i dA_n/dx_j
 
     Only the derivatives of arguments that move are asked for.
 
@@ -252,7 +252,7 @@ def compose(
         value: (..., bin) the function.
         arguments: jets (...) without bin axis, A_k.
         slope: k to (..., bin) f_k.
-        bend: k, l with k <= l to (..., bin) f_kl.
+        bend: k, n with k <= n to (..., bin) f_kn.
 
     Returns:
         (..., bin) the function as a jet.
@@ -266,7 +266,7 @@ def compose(
         return Jet.constant(value, m)
     inner = {k: arguments[k].over_bins().with_axes(value.ndim) for k in moving}
     slopes = {k: slope(k) for k in moving}
-    bends = {(k, l): bend(k, l) for k in moving for l in moving if k <= l}  # noqa: E741
+    bends = {(k, n): bend(k, n) for k in moving for n in moving if k <= n}
     by_variable = [[k for k in moving if inner[k].first[i].any()] for i in range(m)]
     first = np.zeros((m, *value.shape))
     second = np.zeros((m, m, *value.shape))
@@ -278,8 +278,8 @@ def compose(
                 if inner[k].second[i, j].any():
                     second[i, j] += slopes[k] * inner[k].second[i, j]
             for k in by_variable[i]:
-                for l in by_variable[j]:  # noqa: E741
-                    outer = inner[k].first[i] * inner[l].first[j]
-                    second[i, j] += bends[min(k, l), max(k, l)] * outer
+                for n in by_variable[j]:
+                    outer = inner[k].first[i] * inner[n].first[j]
+                    second[i, j] += bends[min(k, n), max(k, n)] * outer
             second[j, i] = second[i, j]
     return Jet(value, first, second)

@@ -150,8 +150,8 @@ def moved_and_stretched(
     def slope(k: int) -> Array:
         return -inverse * edges.differences(height if k == 0 else z * height)
 
-    def bend(k: int, l: int) -> Array:  # noqa: E741
-        if l == 0:
+    def bend(k: int, n: int) -> Array:
+        if n == 0:
             at_edges = tilt
         elif k == 0:
             at_edges = height + z * tilt

@@ -99,14 +99,14 @@ def _with_derivatives(
         moved = w * z if k == 2 else w
         return edges.differences(np.real(scale[k] * moved)) / ROOT_PI
 
-    def bend(k: int, l: int) -> Array:  # noqa: E741
-        if l < 2:
+    def bend(k: int, n: int) -> Array:
+        if n < 2:
             moved = tilt
         elif k < 2:
             moved = w + z * tilt
         else:
             moved = z * (2.0 * w + z * tilt)
-        return edges.differences(np.real(scale[k] * scale[l] * moved)) / ROOT_PI
+        return edges.differences(np.real(scale[k] * scale[n] * moved)) / ROOT_PI
 
     return compose(value, arguments, slope, bend)
 
