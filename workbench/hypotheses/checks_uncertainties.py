@@ -98,6 +98,13 @@ def _effect(
             "a process in one of them",
             "leave the effect out, or add a region",
         )
+    yield from _sizes(path, effect, acted, process, declared)
+
+
+def _sizes(
+    path: KeyPath, effect: Effect, acted: Collection[str], process: Process, declared: Declared
+) -> Iterator[Fault]:
+    """Yield what is wrong with the numbers or columns of an effect."""
     single = (*path, "regions", effect.regions[0]) if effect.regions else path
     if isinstance(effect.up, str) and isinstance(effect.down, str):
         yield from _variation(single, (effect.up, effect.down), acted, process, declared)
