@@ -13,20 +13,20 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.evidence.search import Landscape, signal_events
+from workbench.hypotheses.priors import Prior
 from workbench.likelihood.model import Model
-from workbench.likelihood.newton import Maxima, maximise, solve_definite
+from workbench.likelihood.newton import Maxima, maximise
 from workbench.likelihood.objective import StandardObjective, rows_at_once
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 
 INNER_NODES = 15
-_REACH = 5.3
-_DEEP = 7.5
+_DEEP = 6.0
 _TOO_DEEP = 60.0
 _EDGE = 8.3
-_TOLERANCE = 1e-5
-_ROUGHLY = 1e-2
+_TOLERANCE = 1e-3
+_ADJUSTMENTS = 8
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -98,6 +98,51 @@ class Columns:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
+class Forecast:
+    """What the linear response says about the inner strength, column by column.
+
+    Attributes:
+        starts: (column, coordinate) points with nuisance coordinates at the background's mode.
+        prior: the strength's prior.
+        best, information: (column,) best strength and its inverse variance.
+        absorbed: (column, nuisance) change of the nuisance coordinates that a unit of strength replaces.
+    """
+
+    starts: Array
+    prior: Prior
+    best: Array
+    information: Array
+    absorbed: Array
+
+    def take(self, rows: Indices) -> Forecast:
+        """Return some columns."""
+        return Forecast(
+            self.starts[rows], self.prior, self.best[rows], self.information[rows], self.absorbed[rows]
+        )
+
+    def range(self) -> tuple[Array, Array, Array]:
+        """Return (column,) standard coordinates between which a parabola in the strength keeps the integrand."""
+        low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
+        centre = self.prior.to_standard(np.clip(self.best, low, high))
+        slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)
+        width = np.clip(1.0 / (np.sqrt(self.information) * slope), 1e-9, 1.0)
+        edge = np.maximum(_EDGE, np.abs(centre) + 4.0)
+        local = centre[:, None] + width[:, None] * np.linspace(-6.0, 6.0, 61)
+        wide = edge[:, None] * np.linspace(-1.0, 1.0, 101)
+        t = np.sort(np.clip(np.concatenate([local, wide], axis=1), -edge[:, None], edge[:, None]), axis=1)
+        off = self.prior.from_standard(t)[0] - self.best[:, None]
+        # Poisson counts let the strength grow more easily than a parabola at the background does.
+        stiff = np.where(off > 0.0, 0.5, 1.0) * self.information[:, None]
+        depth = 0.5 * stiff * off**2 + 0.5 * t * t
+        depth -= depth.min(axis=1, keepdims=True)
+        inside = depth < _DEEP + 2.0
+        first = np.maximum(np.argmax(inside, axis=1) - 1, 0)
+        last = np.minimum(t.shape[1] - np.argmax(inside[:, ::-1], axis=1), t.shape[1] - 1)
+        rows = np.arange(len(t))
+        return t[rows, first], np.maximum(t[rows, last], t[rows, first] + 1e-9), edge
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class Integrand:
     """What is integrated: a model with its counts and the landscape that its starting points come from."""
 
@@ -137,22 +182,18 @@ class Integrand:
         inner = self.inner
         if inner is None:
             return self._evaluated(starts[:, None, :], np.zeros((len(outer), 1)))
-        starts[:, inner] = self._inner_guess(starts)
-        modes = self.climb(starts, np.append(self.nuisance, inner), tolerance=_ROUGHLY)
-        width = _widths(modes.hessians, self.nuisance, inner)
-        centre = modes.points[:, inner]
-        low, high = centre - _REACH * width, centre + _REACH * width
-        edge = np.maximum(_EDGE, np.abs(centre) + 4.0)
-        return self._settled(modes, np.maximum(low, -edge), np.minimum(high, edge), edge)
+        forecast = self._forecast(starts, inner)
+        low, high, edge = forecast.range()
+        return self._settled(forecast, low, high, edge)
 
-    def climb(self, starts: Array, moving: Indices, tolerance: float = _TOLERANCE) -> Maxima:
+    def climb(self, starts: Array, moving: Indices) -> Maxima:
         """Return the maxima over some coordinates from (batch, coordinate) starting points."""
         objective = StandardObjective(self.model)
         flags = np.zeros(self.model.size, dtype=bool)
         flags[moving] = True
         rows = rows_at_once(self.model)
         pieces = [
-            maximise(objective, starts[first : first + rows], self.counts, moving=flags, tolerance=tolerance)
+            maximise(objective, starts[first : first + rows], self.counts, moving=flags, tolerance=_TOLERANCE)
             for first in range(0, len(starts), rows)
         ]
         if len(pieces) == 1:
@@ -160,54 +201,44 @@ class Integrand:
         return Maxima(
             *(
                 np.concatenate([getattr(piece, name) for piece in pieces])
-                for name in ("points", "values", "gradients", "hessians", "converged")
+                for name in ("points", "values", "gains", "gradients", "hessians", "converged")
             )
         )
 
-    def _inner_guess(self, starts: Array) -> Array:
-        """Return standard coordinates of the strength that the linear response finds best."""
-        index = self.inner
-        if index is None:
-            return np.zeros(len(starts))
-        prior = self.model.coordinates[index].prior
+    def _forecast(self, starts: Array, inner: int) -> Forecast:
+        """Return what the linear response of the counts says about the strength in each column."""
+        prior = self.model.coordinates[inner].prior
         reference = starts.copy()
-        reference[:, index] = 0.0
+        reference[:, inner] = 0.0
         events = signal_events(self.model, self.landscape, reference[:, self.model.signal])
+        unit = float(prior.median)
         amplitude, information = self.landscape.amplitudes(events)
-        middle = float(prior.median)
-        low, high = (float(end) for end in prior.quantile(np.array([1e-4, 1.0 - 1e-6])))
-        floor = 0.3 / np.sqrt(information)
-        guess = np.clip(np.maximum(amplitude, floor) * middle, low, high)
-        return np.asarray(prior.to_standard(guess))
+        return Forecast(
+            starts, prior, amplitude * unit, information / unit**2, self.landscape.absorbed(events) / unit
+        )
 
-    def _settled(self, modes: Maxima, low: Array, high: Array, edge: Array) -> Columns:
+    def _settled(self, forecast: Forecast, low: Array, high: Array, edge: Array) -> Columns:
         """Return columns whose inner range holds the integrand: widened or narrowed until it does."""
         steps = np.linspace(0.0, 1.0, INNER_NODES)
-        inner = low[:, None] + (high - low)[:, None] * steps
-        starts = self._followed(modes, inner, np.arange(len(inner)))
-        columns = self._evaluated(starts, inner)
-        for _ in range(8):
+        columns = self._strung(forecast, low[:, None] + (high - low)[:, None] * steps)
+        for _ in range(_ADJUSTMENTS):
             change, low, high = _adjusted(columns, low, high, edge)
             if not change.any():
                 break
             rows = np.flatnonzero(change)
             again = low[rows, None] + (high[rows] - low[rows])[:, None] * steps
-            redone = self._evaluated(self._followed(modes, again, rows), again)
-            order = np.arange(len(inner))
-            order[rows] = len(inner) + np.arange(rows.size)
-            columns = columns.joined(redone).take(order)
+            order = np.arange(len(low))
+            order[rows] = len(low) + np.arange(rows.size)
+            columns = columns.joined(self._strung(forecast.take(rows), again)).take(order)
         return columns
 
-    def _followed(self, modes: Maxima, inner: Array, rows: Indices) -> Array:
-        """Return (column, inner, coordinate) starting points: modes moved along their response to the strength."""
-        index, nuisance = self.inner, self.nuisance
-        points = np.repeat(modes.points[rows, None, :], inner.shape[1], axis=1)
-        offset = np.clip(inner - points[:, :, index], -1.5, 1.5)
-        block = -modes.hessians[rows][:, nuisance[:, None], nuisance[None, :]]
-        response = solve_definite(block, modes.hessians[rows][:, nuisance, index], np.ones(nuisance.size))
-        points[:, :, nuisance] += offset[:, :, None] * response[:, None, :]
-        points[:, :, index] = inner
-        return points
+    def _strung(self, forecast: Forecast, inner: Array) -> Columns:
+        """Return columns evaluated at (column, inner) nodes, nuisance coordinates starting where forecast."""
+        points = np.repeat(forecast.starts[:, None, :], inner.shape[1], axis=1)
+        strength = forecast.prior.from_standard(inner)[0]
+        points[:, :, self.nuisance] -= strength[:, :, None] * forecast.absorbed[:, None, :]
+        points[:, :, self.inner] = inner
+        return self._evaluated(points, inner)
 
     def _evaluated(self, starts: Array, inner: Array) -> Columns:
         """Return columns evaluated at given inner nodes from (column, inner, coordinate) starting points."""
@@ -216,7 +247,7 @@ class Integrand:
         found = self.climb(starts.reshape(count * size, -1), self.nuisance)
         outer = list(self.outer)
         taken_out = 0.5 * (found.points[:, outer] ** 2).sum(axis=1) + 0.5 * len(outer) * np.log(2.0 * np.pi)
-        height = found.values + taken_out + laplace(found.hessians, self.nuisance)
+        height = found.values + found.gains + taken_out + laplace(found.hessians, self.nuisance)
         height = np.where(np.isfinite(height), height, -1e300)
         shape = (count, size)
         return Columns(
@@ -243,15 +274,6 @@ def laplace(hessians: Array, nuisance: Indices) -> Array:
     block = -hessians[:, nuisance[:, None], nuisance[None, :]]
     sign, ln_det = np.linalg.slogdet(block)
     return np.where(sign > 0.0, 0.5 * nuisance.size * np.log(2.0 * np.pi) - 0.5 * ln_det, np.nan)
-
-
-def _widths(hessians: Array, nuisance: Indices, inner: int) -> Array:
-    """Return (batch,) marginal width of the inner coordinate from the curvature at the mode."""
-    chosen = np.append(nuisance, inner)
-    block = -hessians[:, chosen[:, None], chosen[None, :]]
-    values, vectors = np.linalg.eigh(block)
-    variance = (vectors[:, -1, :] ** 2 / np.maximum(values, 0.05)).sum(axis=1)
-    return np.sqrt(np.clip(variance, 1e-12, 4.0))
 
 
 def _adjusted(columns: Columns, low: Array, high: Array, edge: Array) -> tuple[npt.NDArray[np.bool_], Array, Array]:

@@ -34,11 +34,13 @@ class Landscape:
     response: Array
     stiffness: Array
 
+    def absorbed(self, change: Array) -> Array:
+        """Return (batch, nuisance) nuisance coordinates that (batch, bin) weighted changes are absorbed by."""
+        return np.asarray(np.linalg.solve(self.stiffness, self.response.T @ (change * self.weight).T).T)
+
     def project(self, change: Array) -> Array:
         """Return weighted changes with what the nuisance coordinates can absorb taken out, (batch, bin)."""
-        weighted = change * self.weight
-        absorbed = np.linalg.solve(self.stiffness, self.response.T @ weighted.T).T
-        return np.asarray(weighted - (absorbed @ self.response.T) * self.weight)
+        return np.asarray((change - self.absorbed(change) @ self.response.T) * self.weight)
 
     def amplitudes(self, change: Array) -> tuple[Array, Array]:
         """Return how much of each change the residual holds, and its inverse variance.

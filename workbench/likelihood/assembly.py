@@ -82,6 +82,7 @@ def _part(
 
     def stem(of: Formula) -> Stem:
         constants = {name: Jet.constant(held[name]) for name in used if name in held}
+        scales = any(name in coordinates for name in parameters_of(quantity))
         moves = any(name in coordinates for name in (*of_shape, *found.added))
         return Stem(
             local=tuple(coordinates[name] for name in free),
@@ -90,6 +91,7 @@ def _part(
             amplitude=lambda arguments: evaluate(quantity, arguments),
             core=of,
             fixed_core=None if moves else np.asarray(of(constants).value),
+            fixed_amplitude=None if scales else float(evaluate(quantity, constants).value),
         )
 
     return Part(

@@ -22,6 +22,7 @@ class Maxima:
     Attributes:
         points: (batch, coordinate) best points.
         values: (batch,) what was maximised there [nats].
+        gains: (batch,) what one more Newton step promises [nats]; small where converged.
         gradients: (batch, coordinate) its gradient.
         hessians: (batch, coordinate, coordinate) its Hessian, held coordinates included.
         converged: (batch,) True where the expected further gain is below the tolerance.
@@ -29,6 +30,7 @@ class Maxima:
 
     points: Array
     values: Array
+    gains: Array
     gradients: Array
     hessians: Array
     converged: Flags
@@ -92,7 +94,7 @@ def maximise(
             )
         converged[moved] = gain[moved] <= tolerance
         active = active[~converged[active] & (shrink[active] > 1e-9)]
-    return Maxima(points, values, gradients, hessians, converged)
+    return Maxima(points, values, np.where(converged, gain, 0.0), gradients, hessians, converged)
 
 
 def _steps(

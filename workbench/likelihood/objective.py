@@ -12,7 +12,7 @@ from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
-_CHUNK = 6_000_000
+_CHUNK = 300_000
 
 
 class Objective(Protocol):

@@ -73,6 +73,9 @@ class Sources:
         return factors, slopes, second.T[:, :, None] * self.bend
 
 
+_NO_FIRST, _NO_SECOND = np.zeros((0, 1, 1)), np.zeros((0, 0, 1, 1))
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Stem:
     """Amplitude times core of a part, or of its template's error: all but the sources.
@@ -84,6 +87,7 @@ class Stem:
         amplitude: yield times factors.
         core: (..., bin) shape integrals or template; (bin,) where it depends on nothing.
         fixed_core: (bin,) the core where it depends on nothing, else None.
+        fixed_amplitude: the amplitude where it depends on nothing, else None.
     """
 
     local: tuple[int, ...]
@@ -92,24 +96,29 @@ class Stem:
     amplitude: Formula
     core: Formula
     fixed_core: Array | None
+    fixed_amplitude: float | None
 
     def value(self, seeds: Seeds) -> Array:
         """Return (batch, bin) or (1, bin) events before the sources act."""
+        if self.fixed_amplitude is not None and self.fixed_core is not None:
+            return self.fixed_amplitude * self.fixed_core[None, :]
         arguments = self._arguments(seeds, derivatives=False)
-        amplitude = self.amplitude(arguments).value
         core = self.core(arguments).value if self.fixed_core is None else self.fixed_core
-        return np.atleast_2d(amplitude[..., None] * core)
+        if self.fixed_amplitude is not None:
+            return np.atleast_2d(self.fixed_amplitude * core)
+        return np.atleast_2d(self.amplitude(arguments).value[..., None] * core)
 
     def expanded(self, seeds: Seeds) -> tuple[Array, Array, Array]:
         """Return events (batch, bin), first (m, batch, bin) and second (m, m, batch, bin) local derivatives."""
+        if not self.local:
+            return self.value(seeds), _NO_FIRST, _NO_SECOND
         arguments = self._arguments(seeds, derivatives=True)
-        amplitude = self.amplitude(arguments)
-        if self.fixed_core is not None:
-            jet = amplitude.over_bins() * self.fixed_core
-        elif not amplitude.moves:
-            jet = self.core(arguments) * amplitude.over_bins().value
+        if self.fixed_amplitude is not None:
+            jet = self.core(arguments) * self.fixed_amplitude
+        elif self.fixed_core is not None:
+            jet = self.amplitude(arguments).over_bins() * self.fixed_core
         else:
-            jet = amplitude.over_bins() * self.core(arguments)
+            jet = self.amplitude(arguments).over_bins() * self.core(arguments)
         return np.atleast_2d(jet.value), jet.first, jet.second
 
     def _arguments(self, seeds: Seeds, derivatives: bool) -> dict[str, Jet]:
