@@ -1,15 +1,15 @@
-"""Results built by hand, for what turns results into text, records and pictures: no number here was computed."""
+"""Results built by hand, for what turns results into text, records and pictures; none was computed."""
 
 from __future__ import annotations
 
 from dataclasses import replace
 
 import numpy as np
+from workbench.ensembles.predictive import PriorPredictive
 
 from workbench.counts.binning import Binning
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.ensembles.predictive import PriorPredictive
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
 from workbench.evidence.results import Comparison, Estimate, Evidence, Posterior, ScaledPrior, Weighing
@@ -21,7 +21,7 @@ from workbench.hypotheses.priors import Normal, Uniform
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.shapes import Falling, Gaussian, Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
-from workbench.likelihood.results import Ending, Fit, Fitted
+from workbench.likelihood.results import Array, Ending, Fit, Fitted
 from workbench.records.outcomes import CheckOutcome, FitOutcome, Origin, WeighOutcome
 
 ORIGIN = Origin("tern.toml", "sha256:" + "0" * 64, 1, {"pseudo_experiments": 2000})
@@ -101,9 +101,9 @@ def fits() -> tuple[Fit, Fit]:
     )
 
 
-def sum_of(parts: dict[str, np.ndarray[tuple[int], np.dtype[np.float64]]]) -> np.ndarray:  # type: ignore[type-arg]
+def sum_of(parts: dict[str, Array]) -> Array:
     """Return the sum over processes."""
-    return np.sum(list(parts.values()), axis=0)
+    return np.asarray(np.sum(list(parts.values()), axis=0))
 
 
 def adequacies(background: float = 0.14, resonance: float = 0.46) -> tuple[Adequacy, Adequacy]:
@@ -176,8 +176,8 @@ def checked(judged: tuple[Adequacy, ...] | None = None) -> CheckOutcome:
     """Return what `check` would hand over."""
     nothing = np.zeros(12)
     predictives = (
-        PriorPredictive(BACKGROUND, nothing, nothing, nothing, 286.0, 318.4, 352.1),
-        PriorPredictive(RESONANCE, nothing, nothing, nothing, 310.9, 366.0, 421.7),
+        PriorPredictive(BACKGROUND, nothing, nothing, nothing, 286.0, 318.0, 352.0),
+        PriorPredictive(RESONANCE, nothing, nothing, nothing, 311.0, 366.0, 422.0),
     )
     return CheckOutcome(analysis(), ORIGIN, predictives, adequacies() if judged is None else judged)
 

@@ -17,14 +17,14 @@ ANALYSES = (".toml",)
 HISTOGRAMS = (".csv", ".tsv", ".txt")
 DEFAULT_SEED = 1
 DEFAULT_BACKGROUND_UNCERTAINTY = 0.10
-DEFAULT_STRENGTH = "{ uniform = { low = 0, high = 5 } }"
+EXAMPLE_PRIOR = "{ uniform = { low = 0, high = 5 } }"
 
 
 def add_histogram_options(parser: Parser) -> None:
     """Give a command the options that make a bare histogram an analysis."""
     group = parser.add_argument_group("for a histogram without an analysis file")
     group.add_argument(
-        "--strength", metavar="PRIOR", help=f"prior of the signal strength (default {DEFAULT_STRENGTH})"
+        "--strength", metavar="PRIOR", help=f"prior of the signal strength (default {EXAMPLE_PRIOR})"
     )
     group.add_argument(
         "--background-uncertainty",
@@ -118,16 +118,14 @@ def refuse_planning(analysis: Analysis, command: str) -> None:
 
 def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) -> tuple[Analysis, Origin]:
     from workbench.counts.csv_table import read_csv_table
-    from workbench.hypotheses.bare import analysis_from_table, parse_prior
+    from workbench.hypotheses.bare import DEFAULT_STRENGTH, analysis_from_table, parse_prior
 
     _refuse_existing(options.save)
-    strength = parse_prior(options.strength or DEFAULT_STRENGTH)
+    strength = DEFAULT_STRENGTH if options.strength is None else parse_prior(options.strength)
     given = options.background_uncertainty
     size = DEFAULT_BACKGROUND_UNCERTAINTY if given is None else given
     table = read_csv_table(Path(options.file), name)
-    analysis = analysis_from_table(
-        table, strength=strength, background_uncertainty=size, title=Path(name).name
-    )
+    analysis = analysis_from_table(table, strength=strength, background_uncertainty=size)
     made_up = (
         f"No analysis file: the signal columns are one process, its strength's prior is {strength.text()}; "
         f"every background has its own uncertainty of {percent(size)}. Change these with --strength and "

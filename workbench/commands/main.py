@@ -7,7 +7,6 @@ import os
 import sys
 from collections.abc import Sequence
 
-from workbench.commands.faults import fault_problem
 from workbench.commands.parsing import Parser
 from workbench.commands.terminal import print_text
 from workbench.errors import InputError, Problem, nearest
@@ -64,6 +63,8 @@ def main(words: Sequence[str] | None = None) -> int:
     except SystemExit as ending:  # how argparse leaves after --help
         return ending.code if isinstance(ending.code, int) else DONE
     except Exception as error:  # noqa: BLE001 -- the one place that catches what nobody foresaw, and says so
+        from workbench.commands.faults import fault_problem
+
         return _complain(fault_problem(error, asked).text(), OUR_FAULT)
 
 

@@ -6,7 +6,7 @@ import argparse
 import math
 import sys
 from collections.abc import Callable, Sequence
-from typing import IO, NoReturn
+from typing import IO, NoReturn, TextIO, cast
 
 from workbench.commands.terminal import print_text
 from workbench.errors import InputError, Problem, nearest
@@ -49,7 +49,7 @@ class Parser(argparse.ArgumentParser):
         )
 
     def _print_message(self, message: str, file: IO[str] | None = None) -> None:  # type: ignore[override]
-        print_text(message, file if file is not None else sys.stdout)
+        print_text(message, sys.stdout if file is None else cast("TextIO", file))
 
     def _incomplete(self, error: argparse.ArgumentError) -> Problem:
         name = error.argument_name or "the options"
@@ -110,13 +110,13 @@ def relative_size(option: str) -> Callable[[str], float]:
             number = float(text)
         except ValueError:
             number = math.nan
-        if not (math.isfinite(number) and number > 0.0):
+        if not (math.isfinite(number) and number >= 0.0):
             raise InputError(
                 Problem(
                     f"{option} is not a relative size",
                     option,
                     repr(text),
-                    "a number above 0; 0.10 is ten per cent",
+                    "0 or more; 0.10 is ten per cent",
                     f"{option} 0.10",
                 )
             )

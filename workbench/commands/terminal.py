@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterable
-from typing import IO, Self
+from typing import Self, TextIO
 
 from workbench.errors import Caution
 
 
-def can_show(text: str, stream: IO[str]) -> bool:
+def can_show(text: str, stream: TextIO) -> bool:
     """Tell whether a stream's encoding has every character of a text."""
     try:
         text.encode(stream.encoding or "utf-8")
@@ -18,7 +18,7 @@ def can_show(text: str, stream: IO[str]) -> bool:
     return True
 
 
-def print_text(text: str, stream: IO[str]) -> None:
+def print_text(text: str, stream: TextIO) -> None:
     """Write a text, in ASCII where the stream's encoding can show no more."""
     if not can_show(text, stream):
         from workbench.records.screens.layout import plain_ascii
@@ -36,7 +36,7 @@ def warn(cautions: Iterable[Caution]) -> None:
 class Progress:
     """One line on standard error that says what is being done; silent unless that is a terminal."""
 
-    def __init__(self, stream: IO[str] | None = None) -> None:
+    def __init__(self, stream: TextIO | None = None) -> None:
         self._stream = sys.stderr if stream is None else stream
         self._is_shown = self._stream.isatty()
 

@@ -61,8 +61,8 @@ def draw_counts(
     binning = region.table.binning
     upper.set_xlim(binning.first - 0.02 * (binning.last - binning.first), binning.last)
     _draw_curves(upper, binning, [curve / per_width for curve in curves], palette)
-    _draw_points(upper, region, per_width, palette)
     _set_heights(upper, region, curves, per_width)
+    _draw_points(upper, region, per_width, palette)
     upper.set_ylabel(label, color=palette.ink)
     upper.tick_params(labelbottom=False)
     upper.set_title(_title(analysis, region), loc="left", color=palette.ink, fontsize=11)
@@ -126,15 +126,24 @@ def _draw_points(axes: Axes, region: Region, per_width: Array, palette: Palette)
     binning = region.table.binning
     centres = 0.5 * (binning.low + binning.high)
     low, high = interval(observed)
-    axes.errorbar(
+    axes.vlines(
         centres,
-        observed / per_width,
-        yerr=np.array([observed - low, high - observed]) / per_width,
-        fmt="o",
-        clip_on=False,  # a point at zero is shown whole
+        low / per_width,
+        high / per_width,
+        color=palette.ink,
+        linewidth=0.9,
+        zorder=4,
+        gid="intervals",
+    )
+    is_straight = axes.get_yscale() == "linear"
+    shown = np.full(observed.shape, True) if is_straight else observed > 0.0
+    axes.plot(
+        centres[shown],
+        (observed / per_width)[shown],
+        "o",
         markersize=_marker_size(binning.number),
         color=palette.ink,
-        elinewidth=0.9,
+        clip_on=not is_straight,  # a point at zero is shown whole; a logarithmic axis has no zero
         zorder=4,
         gid="observed",
     )

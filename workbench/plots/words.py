@@ -48,9 +48,8 @@ def keep_inside(text: Text, axes: Axes, margin: float = 2.0) -> None:
     frame = axes.get_window_extent()
     room = frame.x1 - frame.x0 - 2.0 * margin
     left, right = extent(text)
-    while right - left > room and text.get_fontsize() > SMALLEST:
-        text.set_fontsize(max(text.get_fontsize() - 0.5, SMALLEST))
-        left, right = extent(text)
+    _shrink(text, room)
+    left, right = extent(text)
     if right - left > room:
         words = text.get_text()
         share = max(int(len(words) * room / (right - left)) - 1, 8)
@@ -67,12 +66,21 @@ def keep_inside(text: Text, axes: Axes, margin: float = 2.0) -> None:
 def keep_apart(left: Text, right: Text, axes: Axes) -> None:
     """Shrink, then shorten two texts at the two ends of axes until they do not meet."""
     frame = axes.get_window_extent()
-    room = 0.47 * (frame.x1 - frame.x0)
+    room: float = 0.47 * (frame.x1 - frame.x0)
     for text in (left, right):
-        while extent(text)[1] - extent(text)[0] > room and text.get_fontsize() > SMALLEST:
-            text.set_fontsize(max(text.get_fontsize() - 0.5, SMALLEST))
-        while extent(text)[1] - extent(text)[0] > room and len(text.get_text()) > 8:
-            text.set_text(f"{text.get_text()[:-5].rstrip()}… " + text.get_text()[-1])
+        _shrink(text, room)
+        arrow = " →" if text.get_text().endswith(" →") else ""
+        name = text.get_text().removesuffix(arrow)
+        while extent(text)[1] - extent(text)[0] > room and len(name) > 8:
+            name = name[:-2].rstrip("… ") + "…"
+            text.set_text(name + arrow)
+
+
+def _shrink(text: Text, room: float) -> None:
+    size = float(text.get_fontsize())
+    while extent(text)[1] - extent(text)[0] > room and size > SMALLEST:
+        size = max(size - 0.5, SMALLEST)
+        text.set_fontsize(size)
 
 
 def spread(wanted: Sequence[float], sizes: Sequence[float], low: float, high: float) -> list[float]:

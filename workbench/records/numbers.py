@@ -134,14 +134,15 @@ def factor(ln_value: float, ln_error: float | None = None) -> str:
 
     Args:
         ln_value: logarithm of the number, which itself may be far outside what a float holds [nats].
-        ln_error: one standard error of it [nats]; None or 0 for a number shown to three digits.
+        ln_error: one standard error of it [nats]; 0 for a number shown to three digits, None for a choice
+            shown as short as it is.
     """
     has_error = ln_error is not None and ln_error > 0.0
     if _PLAIN_ABOVE <= ln_value < _PLAIN_BELOW:
         value = math.exp(ln_value)
         if ln_error is not None and has_error and ln_error < 1.0:
             return with_error(value, value * ln_error)
-        return trimmed(value)
+        return trimmed(value) if ln_error is None else significant(value)
     exponent = math.floor(ln_value / _LN_10 + 1e-12)
     mantissa = math.exp(ln_value - exponent * _LN_10)
     if not (ln_error is not None and has_error and ln_error < 1.0):
@@ -170,7 +171,8 @@ def odds(ln_odds: float, ln_error: float | None = None) -> str:
 
     Args:
         ln_odds: logarithm of the odds [nats].
-        ln_error: one standard error of it [nats]; None where the odds are a choice and not a result.
+        ln_error: one standard error of it [nats], 0 where there is none to show; None where the odds are a
+            choice and not a result.
     """
     if ln_odds >= -1e-12:
         return f"{factor(max(ln_odds, 0.0), ln_error)} : 1"

@@ -73,7 +73,7 @@ def claimed_lines(analysis: Analysis, fits: Sequence[Fit]) -> list[str]:
         lines += ([""] if place else []) + _events_table(analysis, region, fits, bins)
     for fit in fits:
         if fit.ending is not Ending.CONVERGED:
-            lines += bullet(f"The fit of {fit.hypothesis} {fit.ending.value}.")
+            lines += bullet(f"Fit of {fit.hypothesis}: {fit.ending.value}.")
     return lines + _signal_priors(analysis)
 
 

@@ -37,7 +37,8 @@ def fit_screen(outcome: FitOutcome) -> str:
 def fit_lines(fit: Fit) -> list[str]:
     """Return one hypothesis' block: how the fit ended, then a line a parameter."""
     lines = heading(f"Fit of {one_line(fit.hypothesis)}")
-    lines += paragraph(f"The fit {fit.ending.value}. ln likelihood {fixed(fit.ln_likelihood, 3)}.")
+    ending = fit.ending.value
+    lines += paragraph(f"{ending[0].upper()}{ending[1:]}. ln likelihood {fixed(fit.ln_likelihood, 3)}.")
     if fit.fitted:
         header = ["parameter", "value", "pull", "contraction"]
         values = aligned_values(fit.fitted)
@@ -76,22 +77,16 @@ def notable_correlations(fit: Fit, above: float = NOTABLE) -> Iterator[tuple[flo
 
 def aligned_values(fitted: Sequence[Fitted]) -> list[str]:
     """Return the value of each parameter with its error, the errors in one column."""
-    symmetric = [index for index, item in enumerate(fitted) if item.low is None and item.high is None]
-    texts = [value_text(item) for item in fitted]
-    lined = aligned_at(" ", texts)
-    if len(symmetric) == len(fitted):
-        lined = aligned_at(" ±", texts)
-    return lined
+    return aligned_at(" ", [value_text(item) for item in fitted])
 
 
 def value_text(item: Fitted) -> str:
     """Return a fitted value with its error: +high −low where these were asked for, ± otherwise."""
-    end = ", at the end of its range" if item.at_limit else ""
     if item.low is not None or item.high is not None:
-        return with_sides(item.value, item.low, item.high) + end
+        return with_sides(item.value, item.low, item.high)
     if item.error is None:
-        return significant(item.value, 4) + (end or ", no error")
-    return with_two_digits(item.value, item.error) + end
+        return f"{significant(item.value, 4)} no error"
+    return with_two_digits(item.value, item.error)
 
 
 def _name(item: Fitted) -> str:

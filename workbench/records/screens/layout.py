@@ -7,6 +7,7 @@ from collections.abc import Iterable, Sequence
 
 WIDTH = 80
 WIDEST = 100
+LAST = 48
 INDENT = "  "
 
 _ASCII = str.maketrans({"±": "+/-", "−": "-", "×": "x", "·": "-", "–": "-", "═": "=", "…": "..."})
@@ -63,12 +64,16 @@ def aligned_at(mark: str, cells: Sequence[str]) -> list[str]:
 def columns(rows: Sequence[Sequence[str]], sides: str, indent: str = INDENT) -> list[str]:
     """Return rows with their columns aligned; what does not fit beside the first column goes under it.
 
+    The last column is wrapped where it is too long; the others are as wide as what they hold.
+
     Args:
         rows: cells of each row, all rows of one length, the header first.
         sides: one letter a column: "l" left, "r" right.
         indent: what every line starts with.
     """
     widths = [max(len(row[place]) for row in rows) for place in range(len(sides))]
+    if sides[-1] == "l":
+        widths[-1] = min(widths[-1], LAST)  # a longer one is wrapped
     rest = len(indent) + sum(widths[1:]) + 2 * (len(sides) - 1)
     widths[0] = min(widths[0], max(WIDEST - rest, 16))
     lines: list[str] = []
@@ -77,13 +82,22 @@ def columns(rows: Sequence[Sequence[str]], sides: str, indent: str = INDENT) -> 
         if len(first) > widths[0]:
             lines += textwrap.wrap(first, WIDEST, initial_indent=indent, subsequent_indent=indent + "  ")
             first = ""
-        cells = [first, *row[1:]]
         padded = [
             cell.ljust(width) if side == "l" else cell.rjust(width)
-            for cell, width, side in zip(cells, widths, sides, strict=True)
+            for cell, width, side in zip([first, *row[1:-1]], widths[:-1], sides[:-1], strict=True)
         ]
-        lines.append((indent + "  ".join(padded)).rstrip())
+        before = indent + "".join(cell + "  " for cell in padded)
+        lines += _last_cell(before, row[-1], widths[-1], sides[-1])
     return lines
+
+
+def _last_cell(before: str, cell: str, width: int, side: str) -> list[str]:
+    """Return a line ended by its last cell, which is wrapped under itself where it is too long."""
+    room = max(WIDEST - len(before), 20)
+    if side == "r" or len(cell) <= room:
+        return [(before + (cell.rjust(width) if side == "r" else cell)).rstrip()]
+    parts = textwrap.wrap(cell, room, break_on_hyphens=False)
+    return [before + parts[0], *(" " * len(before) + part for part in parts[1:])]
 
 
 def wide_columns(header: Sequence[str], rows: Sequence[Sequence[str]], indent: str = INDENT) -> list[str]:

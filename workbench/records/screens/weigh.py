@@ -157,6 +157,6 @@ def _sensitivity_lines(item: ScaledPrior, comparison: Comparison, ln_factor: flo
         (f"as declared, {item.prior}", ln_factor),
         ("twice as wide", item.doubled),
     ):
-        after = NONE if value is None else odds(value + math.log(comparison.prior_odds))
+        after = NONE if value is None else odds(value + math.log(comparison.prior_odds), 0.0)
         rows.append([label, NONE if value is None else fixed(value, decimals), after])
     return columns(rows, "lrl")

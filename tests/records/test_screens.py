@@ -1,0 +1,150 @@
+"""Whole screens, compared as text with tests/expected/."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from tests.records import hand_built as hand
+from workbench.evidence.results import Evidence
+from workbench.hypotheses.hypothesis import Hypothesis
+from workbench.likelihood.results import Ending
+from workbench.records.outcomes import WeighOutcome
+from workbench.records.screens.check import check_screen
+from workbench.records.screens.fit import fit_screen
+from workbench.records.screens.layout import WIDEST, columns, plain_ascii, wide_columns
+from workbench.records.screens.weigh import weigh_screen
+
+EXPECTED = Path(__file__).parents[1] / "expected"
+
+SCREENS: dict[str, Callable[[], str]] = {
+    "weigh": lambda: weigh_screen(hand.weighed()),
+    "weigh-background-fails": lambda: weigh_screen(hand.weighed(judged=hand.adequacies(0.003))),
+    "weigh-neither-fits": lambda: weigh_screen(hand.weighed(judged=hand.adequacies(0.0005, 0.0005))),
+    "weigh-not-established": lambda: weigh_screen(hand.weighed(hand.unestablished())),
+    "weigh-huge": lambda: weigh_screen(hand.weighed(hand.weighing(2000.0))),
+    "weigh-three": lambda: weigh_screen(three()),
+    "weigh-ascii": lambda: plain_ascii(weigh_screen(hand.weighed())),
+    "check": lambda: check_screen(hand.checked()),
+    "check-planning": lambda: check_screen(replace(hand.checked(()), analysis=planned())),
+    "fit": lambda: fit_screen(hand.fitted()),
+    "fit-not-converged": lambda: fit_screen(unfinished()),
+}
+
+
+def three() -> WeighOutcome:
+    """Return an outcome with a third hypothesis, whose evidence has no estimate at all."""
+    given = hand.weighed()
+    third = "a broad resonance with a long name that nobody wants to abbreviate"
+    weighing = given.weighing
+    reason = "no parameter value can produce the 4 counts in bin 11 of region peak"
+    comparison = replace(
+        weighing.comparisons[0],
+        hypothesis=third,
+        ln_bayes_factor=None,
+        ln_bayes_factor_error=None,
+        posterior_odds=None,
+        posterior_odds_error=None,
+        established=False,
+        sensitivity=(),
+    )
+    posteriors = [*weighing.posteriors, replace(weighing.posteriors[1], hypothesis=third)]
+    analysis = replace(
+        given.analysis,
+        hypotheses=(
+            *given.analysis.hypotheses,
+            Hypothesis(third, ("continuum", "resonance"), 1.0, {"mass": 45.0}),
+        ),
+    )
+    return replace(
+        given,
+        analysis=analysis,
+        weighing=replace(
+            weighing,
+            evidences=(*weighing.evidences, Evidence(third, None, None, False, reason, ())),
+            posteriors=tuple(replace(item, probability=None, error=None) for item in posteriors),
+            comparisons=(*weighing.comparisons, comparison),
+        ),
+        adequacies=(
+            *given.adequacies,
+            replace(given.adequacies[1], hypothesis=third, p=0.0012, p_error=0.0008),
+        ),
+        fits=(*given.fits, replace(given.fits[1], hypothesis=third, ending=Ending.NO_SUPPORT)),
+    )
+
+
+def planned() -> hand.Analysis:
+    """Return the analysis before anything was observed."""
+    analysis = hand.analysis()
+    region = analysis.regions[0]
+    table = replace(region.table, observed=None)
+    return replace(analysis, regions=(replace(region, table=table),))
+
+
+def unfinished() -> hand.FitOutcome:
+    """Return fits of which the second did not converge and has a parameter at its limit."""
+    given = hand.fitted()
+    second = given.fits[1]
+    strength = replace(second.fitted[0], value=0.0, error=None, low=None, high=None, at_limit=True)
+    fitted = (strength, *(replace(item, low=None, high=None) for item in second.fitted[1:]))
+    changed = replace(second, ending=Ending.NOT_CONVERGED, fitted=fitted, correlations=np.eye(7))
+    return replace(given, fits=(given.fits[0], changed))
+
+
+@pytest.mark.parametrize("name", SCREENS)
+def test_a_screen_is_the_one_kept(name: str) -> None:
+    assert SCREENS[name]() == (EXPECTED / f"{name}.txt").read_text(encoding="utf-8")
+
+
+def test_every_kept_screen_is_compared_here() -> None:
+    assert {path.stem for path in EXPECTED.glob("*.txt")} >= set(SCREENS)
+
+
+@pytest.mark.parametrize("name", SCREENS)
+def test_a_screen_fits_a_terminal(name: str) -> None:
+    assert max(len(line) for line in SCREENS[name]().splitlines()) <= WIDEST
+
+
+def test_when_nothing_fits_that_is_said_before_anything_else() -> None:
+    lines = SCREENS["weigh-neither-fits"]().splitlines()
+    assert lines[1].strip() == "NEITHER HYPOTHESIS DESCRIBES THE DATA"
+
+
+def test_adequacy_is_said_before_the_odds() -> None:
+    text = SCREENS["weigh"]()
+    assert text.index("Do the hypotheses describe the data?") < text.index("posterior odds")
+
+
+def test_what_is_not_established_shows_no_odds() -> None:
+    text = SCREENS["weigh-not-established"]()
+    assert "NOT ESTABLISHED" in text
+    assert "posterior odds" not in text
+    assert "ln B" not in text
+
+
+def test_the_check_gives_no_odds() -> None:
+    assert "odds" not in SCREENS["check"]()
+
+
+def test_ascii_has_nothing_else() -> None:
+    assert SCREENS["weigh-ascii"]().isascii()
+    assert plain_ascii("Übergang µ") == "\\xdcbergang \\xb5"
+
+
+def test_a_long_first_cell_stands_on_its_own_line() -> None:
+    long = "a name of many words " * 4
+    lines = columns([["name", "value"], [long.strip(), "1" * 20]], "lr")
+    assert lines[1].strip() == long.strip()
+    assert lines[2].strip() == "1" * 20
+    assert max(map(len, lines)) <= WIDEST
+
+
+def test_a_table_too_wide_is_broken_into_several() -> None:
+    header = ["process", *(f"hypothesis number {number}" for number in range(8))]
+    lines = wide_columns(header, [["continuum", *["1.0"] * 8]])
+    assert max(map(len, lines)) <= WIDEST
+    assert sum(line.strip().startswith("continuum") for line in lines) == 2
