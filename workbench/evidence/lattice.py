@@ -10,7 +10,7 @@ import numpy.typing as npt
 Array = npt.NDArray[np.float64]
 
 _LATTICE_DIMENSIONS = 32
-_CANDIDATES = 48
+_CANDIDATES = 128
 
 
 @lru_cache(maxsize=32)
@@ -18,7 +18,7 @@ def _generator(points: int) -> tuple[int, ...]:
     """Return a generating vector found component by component.
 
     Minimises the worst-case error in the weighted space with kernel 1 + gamma_j (x^2 - x + 1/6) 2 pi^2,
-    gamma_j = 1/j^2.
+    gamma_j = 1/j.
 
     Source:
         F. Kuo, I. Sloan, component-by-component construction of lattice rules (2002-2005); from memory.
@@ -35,7 +35,7 @@ def _generator(points: int) -> tuple[int, ...]:
             size = min(_CANDIDATES, odd.size)
             candidates = chooser.choice(odd, size=size, replace=False)
         x = (candidates[:, None] * indices[None, :] % points) / points
-        kernel = 1.0 + (x * x - x + 1.0 / 6.0) * (2.0 * np.pi**2) / (dimension + 1.0) ** 2
+        kernel = 1.0 + (x * x - x + 1.0 / 6.0) * (2.0 * np.pi**2) / (dimension + 1.0)
         best = int(np.argmin(kernel @ product))
         product = product * kernel[best]
         vector.append(int(candidates[best]))

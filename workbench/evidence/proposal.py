@@ -94,21 +94,25 @@ class Proposal:
         return np.array([int(np.prod(sizes[i + 1 :])) for i in range(len(sizes))], dtype=np.intp)
 
     def draw(self, cube: Array) -> Array:
-        """Return (draw, coordinate) points from (draw, dimension) uniform numbers."""
+        """Return (draw, coordinate) points from (draw, dimension) uniform numbers.
+
+        Positions and noise take the leading, evenest dimensions; choices between components the last ones.
+        """
         grid, integrand = self.grid, self.grid.integrand
-        from_prior = cube[:, 0] < _FROM_PRIOR
-        p, column = self._draw_outer(cube[:, 1:], from_prior)
+        outer, nuisance = len(grid.axes), integrand.nuisance.size
+        position, noise, lots = np.split(cube, [outer + 1, outer + 1 + nuisance], axis=1)
+        from_prior = lots[:, 0] < _FROM_PRIOR
+        p, column = self._draw_outer(position[:, :outer], lots[:, 3:], from_prior)
         points = np.zeros((len(cube), integrand.model.size))
         points[:, list(integrand.outer)] = standard(p)
-        after = 1 + 2 * len(grid.axes)
         node = column
         if integrand.inner is not None:
-            t, place = self._draw_inner(column, cube[:, after], cube[:, after + 1], from_prior)
+            t, place = self._draw_inner(column, position[:, outer], lots[:, 2], from_prior)
             points[:, integrand.inner] = t
             node = column * grid.columns.inner.shape[1] + place
-        noise = special.ndtri(cube[:, after + 3 :])
-        scale = np.where(cube[:, after + 2] < _WIDE_SHARE, self._widening, 1.0)
-        moved = _grouped(self._unwhitening, node, self.map.forward(noise * scale[:, None]))
+        scale = np.where(lots[:, 1] < _WIDE_SHARE, self._widening, 1.0)
+        bent = self.map.forward(special.ndtri(noise) * scale[:, None])
+        moved = _grouped(self._unwhitening, node, bent)
         points[:, integrand.nuisance] = self._centre(node, self._signal(points)) + moved
         return points
 
@@ -144,7 +148,7 @@ class Proposal:
         density = (np.concatenate(shares) * laws).reshape(beside_all, -1).sum(axis=0)
         return np.log(np.maximum(density, 1e-300))
 
-    def _draw_outer(self, cube: Array, from_prior: Flags) -> tuple[Array, Indices]:
+    def _draw_outer(self, cube: Array, lots: Array, from_prior: Flags) -> tuple[Array, Indices]:
         """Return (draw, outer) prior probabilities and the (draw,) column chosen beside them."""
         draws, axes = len(cube), self.grid.axes
         p = np.zeros((draws, len(axes)))
@@ -156,10 +160,10 @@ class Proposal:
             heights = np.broadcast_to(rest @ _product_areas(axes[which + 1 :]), (draws, size))
             padded = np.concatenate([heights[:, :1], heights, heights[:, -1:]], axis=1)
             ends = np.concatenate([[0.0], axis.nodes, [1.0]])
-            u = cube[:, 2 * which]
+            u = cube[:, which]
             p[:, which] = np.where(from_prior, u, draw(ends, padded, u))
             below, share = between(axis.nodes, p[:, which])
-            place = below + _chosen(heights, below, share, cube[:, 2 * which + 1], from_prior)
+            place = below + _chosen(heights, below, share, lots[:, which], from_prior)
             column += place * self._strides[which]
             rest = np.broadcast_to(rest, (draws, *rest.shape[1:]))[np.arange(draws), place]
         return p, column

@@ -16,6 +16,9 @@ from workbench.likelihood.objective import rows_at_once
 Array = npt.NDArray[np.float64]
 
 SCRAMBLES = 16
+# Sixteen scrambles sometimes agree by luck, and drawing stops where the error is small: it may not fall below this
+# share of what independent draws would have.
+_LEAST_SHARE = 0.4
 _LN_2PI = float(np.log(2.0 * np.pi))
 
 
@@ -27,7 +30,8 @@ class Sample:
         points: (draw, coordinate) standard coordinates.
         ln_weights: (draw,) ln of integrand over proposal [nats].
         ln_evidence: ln of the mean weight [nats].
-        error: one standard error, from the spread of independent scrambles [nats].
+        error: one standard error, from the spread of independent scrambles, at least 0.4 of that of independent
+            draws [nats].
         k_hat: Pareto shape of the largest weights.
     """
 
@@ -85,5 +89,8 @@ def _summary(points: Array, ln_weights: Array) -> Sample:
         return Sample(points, ln_weights, float("-inf"), float("inf"), float("inf"))
     means = np.exp(ln_weights - top).reshape(SCRAMBLES, -1).mean(axis=1)
     mean = float(means.mean())
-    error = float(means.std(ddof=1) / np.sqrt(SCRAMBLES) / mean)
+    spread = float(means.std(ddof=1) / np.sqrt(SCRAMBLES) / mean)
+    weights = np.exp(ln_weights - top)
+    independent = float(weights.std() / np.sqrt(weights.size) / mean)
+    error = max(spread, _LEAST_SHARE * independent)
     return Sample(points, ln_weights, top + float(np.log(mean)), error, k_hat(ln_weights))

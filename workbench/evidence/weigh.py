@@ -120,7 +120,7 @@ def weigh_hypothesis(model: Model, seed: np.random.SeedSequence, *, closed_forms
     impossible = never_filled(model) & (counts > 0.0) & (model.spare == 0.0)
     if impossible.any():
         return Weighed(model, _impossible(model, impossible))
-    if closed_forms and model.size == 0:
+    if model.size == 0:
         value = float(model.ln_likelihood(model.seeds(np.zeros((1, 0))), counts)[0])
         return Weighed(model, _exactly(model, value))
     rates = linear_rates(model) if closed_forms else None
