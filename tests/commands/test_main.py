@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import importlib
 import os
 import re
 import subprocess
@@ -11,7 +12,6 @@ from types import ModuleType
 
 import pytest
 
-from workbench.commands import main as main_module
 from workbench.commands.main import COMMANDS, main
 from workbench.errors import InputError, Problem
 
@@ -132,7 +132,7 @@ def test_the_version_is_told(capsys: pytest.CaptureFixture[str]) -> None:
 
 def test_every_command_in_the_list_can_be_run() -> None:
     for home, summary in COMMANDS.values():
-        module = main_module.importlib.import_module(home)
+        module = importlib.import_module(home)
         assert callable(module.run)
         assert callable(module.add_options)
         assert summary

@@ -5,11 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
-from workbench.ensembles.predictive import PriorPredictive
 
 from workbench.counts.binning import Binning
 from workbench.counts.region import Region
 from workbench.counts.table import Table
+from workbench.ensembles.predictive import PriorPredictive
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
 from workbench.evidence.results import Comparison, Estimate, Evidence, Posterior, ScaledPrior, Weighing

@@ -11,9 +11,10 @@ import pytest
 
 from tests.records import hand_built as hand
 from workbench.evidence.results import Evidence
+from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.likelihood.results import Ending
-from workbench.records.outcomes import WeighOutcome
+from workbench.records.outcomes import FitOutcome, WeighOutcome
 from workbench.records.screens.check import check_screen
 from workbench.records.screens.fit import fit_screen
 from workbench.records.screens.layout import WIDEST, columns, plain_ascii, wide_columns
@@ -77,7 +78,7 @@ def three() -> WeighOutcome:
     )
 
 
-def planned() -> hand.Analysis:
+def planned() -> Analysis:
     """Return the analysis before anything was observed."""
     analysis = hand.analysis()
     region = analysis.regions[0]
@@ -85,7 +86,7 @@ def planned() -> hand.Analysis:
     return replace(analysis, regions=(replace(region, table=table),))
 
 
-def unfinished() -> hand.FitOutcome:
+def unfinished() -> FitOutcome:
     """Return fits of which the second did not converge and has a parameter at its limit."""
     given = hand.fitted()
     second = given.fits[1]

@@ -83,7 +83,7 @@ DARK = Palette(
     faint="#75808c",
     hypotheses=(
         Stroke("#a3c1e3", "#a3c1e3", "#2b3f57", 2.6),
-        Stroke("#d9622f", "#e6794a", "#5a2f1b", 1.4),
+        Stroke("#d9622f", "#e6794a", "#4d2413", 1.4),
         Stroke("#b79ae0", "#b79ae0", "#3d3152", 1.4, (0, (5, 2))),
         Stroke("#c9c497", "#c9c497", "#454331", 1.4, (0, (2, 1))),
     ),
