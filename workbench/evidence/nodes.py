@@ -8,6 +8,7 @@ coordinate, over the range where the integrand lives.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 import numpy.typing as npt
@@ -36,8 +37,8 @@ class Columns:
     Attributes:
         outer: (column, outer) standard coordinates of the outer signal coordinates.
         inner: (column, inner) standard coordinates of the inner one; (column, 1) zeros where there is none.
-        ln_height: (column, inner) ln of the integrand with the nuisance coordinates integrated, the outer prior
-            density taken out [nats].
+        ln_height: (column, inner) ln of the integrand with the nuisance coordinates integrated, the outer
+            prior density taken out [nats].
         points: (column, inner, coordinate) where the nuisance coordinates' maximum is.
         hessians: (column, inner, coordinate, coordinate) Hessian of the ln integrand there.
         converged: (column, inner) True where the maximisation converged.
@@ -63,8 +64,8 @@ class Columns:
     def inner_error(self) -> Array:
         """Return (column,) relative error of the inner integral.
 
-        Halving the spacing squares the relative error of the trapezoidal rule for an analytic bell, so that the
-        square of the difference to every second node is its size.
+        Halving the spacing squares the relative error of the trapezoidal rule for an analytic bell, so that
+        the square of the difference to every second node is its size.
         """
         if not self.has_inner:
             return np.zeros(len(self.outer))
@@ -121,7 +122,7 @@ class Forecast:
         )
 
     def range(self) -> tuple[Array, Array, Array]:
-        """Return (column,) standard coordinates between which a parabola in the strength keeps the integrand."""
+        """Return (column,) ends in standard coordinates that hold a parabola in the strength, and the edge."""
         low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
         centre = self.prior.to_standard(np.clip(self.best, low, high))
         slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)
@@ -142,7 +143,7 @@ class Forecast:
         return t[rows, first], np.maximum(t[rows, last], t[rows, first] + 1e-9), edge
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class Integrand:
     """What is integrated: a model with its counts and the landscape that its starting points come from."""
 
@@ -150,7 +151,7 @@ class Integrand:
     counts: Array
     landscape: Landscape
 
-    @property
+    @cached_property
     def inner(self) -> int | None:
         """Return the coordinate of the last strength, or None."""
         signal = self.model.signal
@@ -158,12 +159,12 @@ class Integrand:
             return int(signal[-1])
         return None
 
-    @property
+    @cached_property
     def outer(self) -> tuple[int, ...]:
         """Return the other signal coordinates."""
         return tuple(int(index) for index in self.model.signal if index != self.inner)
 
-    @property
+    @cached_property
     def nuisance(self) -> Indices:
         """Return the coordinates that are integrated by Laplace."""
         return np.setdiff1d(np.arange(self.model.size), self.model.signal)
@@ -262,7 +263,7 @@ class Integrand:
 
 
 def laplace(hessians: Array, nuisance: Indices) -> Array:
-    """Return (batch,) ln of the Gaussian integral over the nuisance coordinates, (d/2) ln 2 pi - ln det(-H)/2.
+    """Return (batch,) ln of the Gaussian integral over nuisance coordinates, (d/2) ln 2 pi - ln det(-H)/2.
 
     Args:
         hessians: (batch, coordinate, coordinate) Hessian of the ln integrand.
@@ -276,7 +277,9 @@ def laplace(hessians: Array, nuisance: Indices) -> Array:
     return np.where(sign > 0.0, 0.5 * nuisance.size * np.log(2.0 * np.pi) - 0.5 * ln_det, np.nan)
 
 
-def _adjusted(columns: Columns, low: Array, high: Array, edge: Array) -> tuple[npt.NDArray[np.bool_], Array, Array]:
+def _adjusted(
+    columns: Columns, low: Array, high: Array, edge: Array
+) -> tuple[npt.NDArray[np.bool_], Array, Array]:
     """Return which columns need other ends, and the ends."""
     depth = columns.ln_height.max(axis=1, keepdims=True) - columns.ln_height
     length = high - low

@@ -11,13 +11,13 @@ from workbench.evidence.lattice import shifted_lattices
 from workbench.evidence.pareto import k_hat
 from workbench.evidence.proposal import propose
 from workbench.evidence.quadrature import Grid
-from workbench.likelihood.objective import rows_at_once
+from workbench.likelihood.objective import values_at_once
 
 Array = npt.NDArray[np.float64]
 
 SCRAMBLES = 16
-# Sixteen scrambles sometimes agree by luck, and drawing stops where the error is small: it may not fall below this
-# share of what independent draws would have.
+# Sixteen scrambles sometimes agree by luck, and drawing stops where the error is small: it may not fall below
+# this share of what independent draws would have.
 _LEAST_SHARE = 0.4
 _LN_2PI = float(np.log(2.0 * np.pi))
 
@@ -30,8 +30,8 @@ class Sample:
         points: (draw, coordinate) standard coordinates.
         ln_weights: (draw,) ln of integrand over proposal [nats].
         ln_evidence: ln of the mean weight [nats].
-        error: one standard error, from the spread of independent scrambles, at least 0.4 of that of independent
-            draws [nats].
+        error: one standard error, from the spread of independent scrambles, at least 0.4 of that of
+            independent draws [nats].
         k_hat: Pareto shape of the largest weights.
     """
 
@@ -64,7 +64,7 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
     generator = np.random.default_rng(seed)
     cube = shifted_lattices(draws_a_scramble, proposal.dimensions, SCRAMBLES, generator)
     points = proposal.draw(cube.reshape(-1, proposal.dimensions))
-    rows = rows_at_once(model)
+    rows = values_at_once(model)
     ln_likelihood = np.concatenate(
         [
             model.ln_likelihood(model.seeds(points[first : first + rows]), counts)

@@ -13,6 +13,9 @@ from workbench.likelihood.objective import StandardObjective
 
 Array = npt.NDArray[np.float64]
 
+# The landscape only offers starting points.
+_ROUGHLY = 0.05
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Landscape:
@@ -35,7 +38,7 @@ class Landscape:
     stiffness: Array
 
     def absorbed(self, change: Array) -> Array:
-        """Return (batch, nuisance) nuisance coordinates that (batch, bin) weighted changes are absorbed by."""
+        """Return (batch, nuisance) coordinates that absorb what they can of (batch, bin) weighted changes."""
         return np.asarray(np.linalg.solve(self.stiffness, self.response.T @ (change * self.weight).T).T)
 
     def project(self, change: Array) -> Array:
@@ -68,7 +71,7 @@ def survey(model: Model, counts: Array) -> Landscape:
     """
     background = model.restricted("background", spare=True)
     objective = StandardObjective(background)
-    mode = maximise(objective, np.zeros((1, model.size)), counts, tolerance=1e-3)
+    mode = maximise(objective, np.zeros((1, model.size)), counts, tolerance=_ROUGHLY)
     base = mode.points[0]
     nuisance = np.setdiff1d(np.arange(model.size), model.signal)
     seeds = background.seeds(base[None])

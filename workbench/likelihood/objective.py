@@ -128,3 +128,8 @@ def fit_objective(model: Model) -> FitObjective:
 def rows_at_once(model: Model) -> int:
     """Return how many points to evaluate together, so that memory stays bounded."""
     return max(1, _CHUNK // max(1, model.bins * (model.size + 2)))
+
+
+def values_at_once(model: Model) -> int:
+    """Return how many points to evaluate together where no derivatives are made."""
+    return max(1, 4 * _CHUNK // max(1, model.bins))
