@@ -97,7 +97,7 @@ def templates(
     strength: Prior | None = None,
     uncertainties: tuple[Uncertainty, ...] = (),
 ) -> Analysis:
-    """Return a region whose columns are the processes: "signal" has a strength, the others are backgrounds."""
+    """Return a region whose columns are processes: "signal" has a strength, the others are backgrounds."""
     names = [name for name in region.table.columns if not name.endswith((" up", " down"))]
     return Analysis(
         title="Templates",

@@ -1,6 +1,7 @@
-"""Panels along a signal coordinate: even steps of what the counts can tell apart, finer where the integrand peaks.
+"""Panels along a signal coordinate: even steps of what the counts tell apart, finer where something peaks.
 
-An axis is laid out in prior probability p in [0, 1], x = F^-1(p), so that a prior average is a plain integral over p.
+An axis is laid out in prior probability p in [0, 1], x = F^-1(p), so that a prior average is a plain integral
+over p.
 """
 
 from __future__ import annotations
@@ -15,6 +16,7 @@ from workbench.evidence.search import Landscape, signal_events
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
+Indices = npt.NDArray[np.intp]
 
 KRONROD_NODES = np.array(
     [
@@ -73,7 +75,7 @@ class Axis:
     def _panels(self) -> tuple[Array, Array]:
         return 0.5 * (self.edges[1:] + self.edges[:-1]), 0.5 * np.diff(self.edges)
 
-    def split(self, panels: Array) -> Axis:
+    def split(self, panels: Indices) -> Axis:
         """Return the axis with the given panels cut in half."""
         middle = self._panels()[0][panels]
         return Axis(np.sort(np.concatenate([self.edges, middle])))
@@ -87,9 +89,9 @@ def standard(p: Array) -> Array:
 def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]) -> Axis:
     """Return panels of equal length in the angle between neighbouring signals.
 
-    Signals a and b, as vectors of events weighted by the counts' inverse variance, are told apart by the angle
-    between them. A peak of resolution s turns by 1/(sqrt 2 s) per unit of mass, so that a panel of 2.4 spans about
-    3.4 resolutions and has at least two nodes a resolution.
+    Signals a and b, as vectors of events weighted by the counts' inverse variance, are told apart by the
+    angle between them. A peak of resolution s turns by 1/(sqrt 2 s) per unit of mass, so that a panel of 2.4
+    spans about 3.4 resolutions and has at least two nodes a resolution.
 
     Args:
         model: a hypothesis with signal coordinates.

@@ -4,8 +4,8 @@ In whitened coordinates y the ln integrand around its maximum is
 
     -y.y/2 + sum K_abc y_a y_b y_c/6 + sum K_abcd y_a y_b y_c y_d/24 + ...
 
-The K are differences of exact Hessians over a step of the size of a standard deviation, so that they describe the
-bulk and not the point.
+The K are differences of exact Hessians over a step of the size of a standard deviation, so that they describe
+the bulk and not the point.
 """
 
 from __future__ import annotations
@@ -28,7 +28,8 @@ class Bending:
     """Third and fourth derivatives of a ln integrand at its maximum, in whitened coordinates.
 
     Attributes:
-        axes: (nuisance, nuisance) whitening W of the maximum, y = W (z - centre), least constrained direction first.
+        axes: (nuisance, nuisance) whitening W of the maximum, y = W (z - centre), least constrained direction
+            first.
         third: (nuisance, nuisance, nuisance) K_abc.
         fourth: (nuisance, nuisance) K_aabb.
     """
@@ -51,7 +52,7 @@ class Bending:
 
     @property
     def doubt(self) -> float:
-        """Return the size of what the orders after the next may add: a third of its terms, half once they are large."""
+        """Return what later orders may add: a third of the size of this one, more once it is large."""
         size = sum(abs(term) for term in self._terms)
         return float(size * (0.3 + 0.5 * min(1.0, size)))
 

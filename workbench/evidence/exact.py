@@ -1,12 +1,14 @@
 """Evidences in closed form: counts whose expectation is a sum of independent unknown rates.
 
-Where every expected count is  v_i = c_i0 + sum over rates a of c_ia x_a,  with x_a gamma, exponential, uniform or
-known, each observed count is split over its sources in every possible way, and each rate is integrated in closed
-form:
+Where every expected count is  v_i = c_i0 + sum over rates a of c_ia x_a,  with x_a gamma, exponential,
+uniform or known, each observed count is split over its sources in every possible way, and each rate is
+integrated in closed form:
 
-    P(n) = sum over splits of  prod_i [ exp(-c_i0) c_i0^k_i0/k_i0!  prod_a c_ia^k_ia/k_ia! ]  prod_a E[ x_a^K_a exp(-C_a x_a) ]
+    P(n) = sum over splits of
+           prod_i [ exp(-c_i0) c_i0^k_i0/k_i0!  prod_a c_ia^k_ia/k_ia! ]  prod_a E[ x_a^K_a exp(-C_a x_a) ]
 
-with K_a = sum_i k_ia and C_a = sum_i c_ia. Known background, gamma background and on/off counting are special cases.
+with K_a = sum_i k_ia and C_a = sum_i c_ia. Known background, gamma background and on/off counting are special
+cases.
 """
 
 from __future__ import annotations
@@ -67,7 +69,9 @@ def linear_rates(model: Model) -> LinearRates | None:
     zero = np.zeros((1, model.size))
     constant = model.expected(model.natural_seeds(zero))[0][0]
     ones = np.eye(model.size)
-    slopes = model.expected(model.natural_seeds(ones))[0] - constant if model.size else np.zeros((0, model.bins))
+    slopes = (
+        model.expected(model.natural_seeds(ones))[0] - constant if model.size else np.zeros((0, model.bins))
+    )
     return LinearRates(constant, slopes, tuple(c.prior for c in model.coordinates))
 
 
@@ -88,7 +92,7 @@ def ln_moment(prior: Prior, power: Array, damping: float) -> Array:
         (...) ln expectation [nats].
 
     Raises:
-        ValueError: if the family has no closed form here.
+        TypeError: if the family has no closed form here.
 
     Source:
         None, integrals of x^K exp(-C x); regularised incomplete gamma function.
@@ -98,10 +102,13 @@ def ln_moment(prior: Prior, power: Array, damping: float) -> Array:
     if isinstance(prior, Gamma):
         a, r = prior.shape, prior.rate
         return np.asarray(
-            special.gammaln(power + a) - special.gammaln(a) + a * np.log(r) - (power + a) * np.log(r + damping)
+            special.gammaln(power + a)
+            - special.gammaln(a)
+            + a * np.log(r)
+            - (power + a) * np.log(r + damping)
         )
     if not isinstance(prior, Uniform):
-        raise ValueError(f"no closed form under a {prior.family} prior")
+        raise TypeError(f"no closed form under a {prior.family} prior")
     low, high = prior.low, prior.high
     if damping == 0.0:
         return np.asarray(
@@ -111,11 +118,13 @@ def ln_moment(prior: Prior, power: Array, damping: float) -> Array:
     above = special.gammaincc(power + 1.0, damping * low) - special.gammaincc(power + 1.0, damping * high)
     with np.errstate(divide="ignore"):
         mass = np.log(np.where(damping * low > power + 1.0, above, below))
-    return np.asarray(mass + special.gammaln(power + 1.0) - (power + 1.0) * np.log(damping) - np.log(high - low))
+    return np.asarray(
+        mass + special.gammaln(power + 1.0) - (power + 1.0) * np.log(damping) - np.log(high - low)
+    )
 
 
 def ln_evidence(rates: LinearRates, counts: Array) -> float | None:
-    """Return the exact ln evidence of linear rates, or None where there are too many splits or digits are lost.
+    """Return the exact ln evidence of linear rates; None where splits are too many or digits are lost.
 
     Args:
         rates: constants, slopes and priors.

@@ -42,9 +42,7 @@ def _generator(points: int) -> tuple[int, ...]:
     return tuple(vector)
 
 
-def shifted_lattices(
-    points: int, dimensions: int, scrambles: int, generator: np.random.Generator
-) -> Array:
+def shifted_lattices(points: int, dimensions: int, scrambles: int, generator: np.random.Generator) -> Array:
     """Return independent randomised point sets, each spread evenly over the unit cube.
 
     A lattice is shifted at random and folded by the tent map, which makes smooth integrands that are not
@@ -60,7 +58,8 @@ def shifted_lattices(
         (scramble, point, dimension) numbers strictly inside (0, 1).
 
     Source:
-        I. Sloan, S. Joe, Lattice Methods for Multiple Integration (1994); tent map: F. Hickernell (2002); both from memory.
+        I. Sloan, S. Joe, Lattice Methods for Multiple Integration (1994); tent map: F. Hickernell (2002);
+        both from memory.
     """
     spread = min(dimensions, _LATTICE_DIMENSIONS)
     vector = np.array(_generator(points)[:spread])
@@ -73,4 +72,4 @@ def shifted_lattices(
         )
         rest = (order + generator.random(order.shape)) / points
         folded = np.concatenate([folded, rest], axis=2)
-    return np.clip(folded, 1e-12, 1.0 - 1e-12)
+    return np.asarray(np.clip(folded, 1e-12, 1.0 - 1e-12))

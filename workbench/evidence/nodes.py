@@ -122,7 +122,7 @@ class Forecast:
         )
 
     def range(self) -> tuple[Array, Array, Array]:
-        """Return (column,) ends in standard coordinates that hold a parabola in the strength, and the edge."""
+        """Return (column,) ends in standard coordinates that hold a strength parabola, and the edge."""
         low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
         centre = self.prior.to_standard(np.clip(self.best, low, high))
         slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)

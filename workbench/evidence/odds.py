@@ -14,7 +14,8 @@ Array = npt.NDArray[np.float64]
 def compare(evidence: Evidence, against: Evidence, prior_odds: float) -> Comparison:
     """Return one hypothesis against another.
 
-    ln B = ln Z1 - ln Z0, error = quadrature sum; posterior odds = B x prior odds, error = odds x error of ln B.
+    ln B = ln Z1 - ln Z0, error = quadrature sum; posterior odds = B x prior odds, error = odds x the one of
+    ln B.
 
     Args:
         evidence: the hypothesis' evidence.

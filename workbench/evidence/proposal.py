@@ -1,10 +1,10 @@
 """The mixture that draws come from, built on the quadrature's nodes.
 
-Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear between
-the nodes' heights (or, one time in ten, from their prior, so that a mode the search missed shows in the
-weights), then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along the third
-derivatives and shifted along the exact response of its maximum to the signal coordinates; one draw in ten from a
-wider one.
+Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear
+between the nodes' heights (or, one time in ten, from their prior, so that a mode the search missed shows in
+the weights), then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along
+the third derivatives and shifted along the exact response of its maximum to the signal coordinates; one draw
+in ten from a wider one.
 """
 
 from __future__ import annotations
@@ -55,7 +55,7 @@ class Proposal:
     @property
     def dimensions(self) -> int:
         """Return how many uniform numbers a draw takes."""
-        return 2 * len(self.grid.axes) + 4 + self.centres.shape[1]
+        return 2 * len(self.grid.axes) + 4 + int(self.centres.shape[1])
 
     @cached_property
     def _widening(self) -> float:
@@ -63,24 +63,24 @@ class Proposal:
 
     @cached_property
     def _ln_volume(self) -> Array:
-        return np.linalg.slogdet(self.whitening)[1]
+        return np.asarray(np.linalg.slogdet(self.whitening)[1])
 
     @cached_property
     def _unwhitening(self) -> Array:
-        return np.linalg.inv(self.whitening) if self.whitening.shape[1] else self.whitening
+        return np.asarray(np.linalg.inv(self.whitening)) if self.whitening.shape[1] else self.whitening
 
     @cached_property
     def _heights(self) -> Array:
         """Return (column, inner) heights relative to each column's largest."""
         columns = self.grid.columns
-        return np.exp(columns.ln_height - columns.ln_height.max(axis=1, keepdims=True))
+        return np.asarray(np.exp(columns.ln_height - columns.ln_height.max(axis=1, keepdims=True)))
 
     @cached_property
     def _field(self) -> Array:
         """Return (axis 1 node, ...) integrals over the inner coordinate, relative to the largest."""
         integrals = self.grid.columns.ln_integral()
         sizes = [axis.nodes.size for axis in self.grid.axes]
-        return np.exp(integrals - integrals.max()).reshape(sizes)
+        return np.asarray(np.exp(integrals - integrals.max())).reshape(sizes)
 
     @cached_property
     def _steps(self) -> Array:
@@ -144,16 +144,18 @@ class Proposal:
                 nodes.append(node)
                 shares.append(weight)
         beside_all = len(nodes)
-        laws = self._normal(np.concatenate(nodes), np.tile(points, (beside_all, 1)), np.tile(signal, (beside_all, 1)))
+        laws = self._normal(
+            np.concatenate(nodes), np.tile(points, (beside_all, 1)), np.tile(signal, (beside_all, 1))
+        )
         density = (np.concatenate(shares) * laws).reshape(beside_all, -1).sum(axis=0)
-        return np.log(np.maximum(density, 1e-300))
+        return np.asarray(np.log(np.maximum(density, 1e-300)))
 
     def _draw_outer(self, cube: Array, lots: Array, from_prior: Flags) -> tuple[Array, Indices]:
         """Return (draw, outer) prior probabilities and the (draw,) column chosen beside them."""
         draws, axes = len(cube), self.grid.axes
         p = np.zeros((draws, len(axes)))
         column = np.zeros(draws, dtype=np.intp)
-        rest = self._field.reshape(1, -1)
+        rest: Array = self._field.reshape(1, -1)
         for which, axis in enumerate(axes):
             size = axis.nodes.size
             rest = rest.reshape(len(rest), size, -1)
@@ -168,11 +170,13 @@ class Proposal:
             rest = np.broadcast_to(rest, (draws, *rest.shape[1:]))[np.arange(draws), place]
         return p, column
 
-    def _draw_inner(
-        self, column: Indices, u: Array, lot: Array, from_prior: Flags
-    ) -> tuple[Array, Indices]:
+    def _draw_inner(self, column: Indices, u: Array, lot: Array, from_prior: Flags) -> tuple[Array, Indices]:
         """Return (draw,) standard coordinates of the strength and the inner node chosen beside each."""
-        inner, heights, step = self.grid.columns.inner[column], self._heights[column], self._steps[column, None]
+        inner, heights, step = (
+            self.grid.columns.inner[column],
+            self._heights[column],
+            self._steps[column, None],
+        )
         nodes = np.concatenate([inner[:, :1] - step, inner, inner[:, -1:] + step], axis=1)
         padded = np.pad(heights, ((0, 0), (1, 1)))
         t = np.where(from_prior, special.ndtri(u), draw(nodes, padded, u))
@@ -190,7 +194,7 @@ class Proposal:
         return places
 
     def _centre(self, node: Indices, signal: Array) -> Array:
-        """Return (draw, nuisance) maxima, followed from a node along their response for at most two inner steps."""
+        """Return (draw, nuisance) maxima, followed from a node along their response for two inner steps."""
         if self.centres.shape[1] == 0:
             return self.centres[node]
         offset = signal - self.places[node]
@@ -230,7 +234,9 @@ class Proposal:
         wide = self._widening
         narrow = (1.0 - _WIDE_SHARE) * np.exp(-0.5 * square)
         broad = _WIDE_SHARE * wide ** (-nuisance.size) * np.exp(-0.5 * square / wide**2)
-        return np.asarray((narrow + broad) * np.exp(self._ln_volume[node] - ln_stretch - 0.5 * nuisance.size * _LN_2PI))
+        return np.asarray(
+            (narrow + broad) * np.exp(self._ln_volume[node] - ln_stretch - 0.5 * nuisance.size * _LN_2PI)
+        )
 
 
 def propose(grid: Grid) -> Proposal:
@@ -255,7 +261,9 @@ def propose(grid: Grid) -> Proposal:
     roots = _upper_roots(block)
     bend = grid.bending
     if bend is None:
-        return Proposal(grid, roots, following(np.zeros(3 * (nuisance.size,))), points[:, nuisance], responses, places)
+        return Proposal(
+            grid, roots, following(np.zeros(3 * (nuisance.size,))), points[:, nuisance], responses, places
+        )
     best = int(np.argmax(columns.ln_height))
     turn = np.linalg.solve(roots[best].T, bend.axes.T).T
     return Proposal(grid, turn @ roots, following(bend.third), points[:, nuisance], responses, places)

@@ -50,8 +50,9 @@ class Grid:
 def integrate(model: Model, counts: Array) -> Grid:
     """Return the quadrature of a hypothesis' evidence with its nodes.
 
-    Peaks are located first: panels follow the angle between neighbouring signals, so that no resolution element is
-    without two nodes, and panels are cut in half where the seven-point and the three-point rule differ.
+    Peaks are located first: panels follow the angle between neighbouring signals, so that no resolution
+    element is without two nodes, and panels are cut in half where the seven-point and the three-point rule
+    differ.
 
     Args:
         model: a hypothesis.
@@ -120,8 +121,10 @@ def _refined(axes: tuple[Axis, ...], columns: Columns) -> tuple[Axis, ...] | Non
         # The seven-point rule is far better than its difference to the three-point one.
         bad = np.flatnonzero(errors > 0.02)
         if bad.size and np.diff(axis.edges)[bad].min() > 1e-9:
-            axis, grown = axis.split(bad), True
-        finer.append(axis)
+            finer.append(axis.split(bad))
+            grown = True
+        else:
+            finer.append(axis)
     if not grown or np.prod([axis.nodes.size for axis in finer]) > _MOST_COLUMNS:
         return None
     return tuple(finer)
@@ -163,7 +166,7 @@ def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns) -> G
 
 
 def _bending(integrand: Integrand, columns: Columns) -> Bending | None:
-    """Return how the nuisance coordinates depart from a Gaussian at the best node; None where there are none."""
+    """Return how the nuisance coordinates depart from a Gaussian at the best node; None without any."""
     nuisance = integrand.nuisance
     if nuisance.size == 0:
         return None

@@ -68,7 +68,7 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
     priors = np.array([hypothesis.prior for hypothesis in analysis.hypotheses], dtype=float)
     comparisons = tuple(
         replace(
-            compare(evidences[index], evidences[0], priors[index] / priors[0]),
+            compare(evidences[index], evidences[0], float(priors[index] / priors[0])),
             sensitivity=sensitivities(one.model, one.grid, one.evidence, evidences[0]),
         )
         for index, one in enumerate(weighed)
@@ -174,7 +174,9 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
     if drawn.error > LARGEST_ERROR:
         return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
     if drawn.k_hat >= allowed:
-        return f"a few draws dominate the sampling pass (k-hat {drawn.k_hat:.2f}, allowed below {allowed:.2f})"
+        return (
+            f"a few draws dominate the sampling pass (k-hat {drawn.k_hat:.2f}, allowed below {allowed:.2f})"
+        )
     gap = abs(grid.ln_evidence - drawn.ln_evidence)
     limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
     if not gap <= limit:
