@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -16,7 +17,7 @@ from workbench.likelihood.objective import StandardObjective
 
 Array = npt.NDArray[np.float64]
 
-_WANTED = 1e-3
+_NOWHERE: Mapping[str, float] = {}
 _ROUNDS = 12
 _MOST_COLUMNS = 6000
 
@@ -42,12 +43,21 @@ class Grid:
     bending: Bending | None
 
     @property
+    def mode(self) -> dict[str, float]:
+        """Return the standard coordinates of the best node by name, signal coordinates left out."""
+        best = np.unravel_index(int(np.argmax(self.columns.ln_height)), self.columns.ln_height.shape)
+        model = self.integrand.model
+        return {
+            model.names[index]: float(self.columns.points[best][index]) for index in self.integrand.nuisance
+        }
+
+    @property
     def evaluations(self) -> int:
         """Return the number of nodes."""
         return int(self.columns.inner.size)
 
 
-def integrate(model: Model, counts: Array) -> Grid:
+def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE) -> Grid:
     """Return the quadrature of a hypothesis' evidence with its nodes.
 
     Peaks are located first: panels follow the angle between neighbouring signals, so that no resolution
@@ -57,6 +67,7 @@ def integrate(model: Model, counts: Array) -> Grid:
     Args:
         model: a hypothesis.
         counts: (bin,) observed counts [events].
+        near: standard coordinates by name to start from, such as another hypothesis' mode.
 
     Returns:
         The grid of nodes with ln evidence and error.
@@ -64,7 +75,7 @@ def integrate(model: Model, counts: Array) -> Grid:
     Limits:
         Nuisance coordinates far from Gaussian: the error says so, and the sampling pass corrects it.
     """
-    landscape = survey(model, counts)
+    landscape = survey(model, counts, near)
     integrand = Integrand(model, counts, landscape)
     outer = integrand.outer
     axes = tuple(lay_out(model, landscape, axis, outer) for axis in outer)
@@ -75,7 +86,22 @@ def integrate(model: Model, counts: Array) -> Grid:
             break
         columns = _extended(integrand, axes, columns, finer)
         axes = finer
-    return _summed(integrand, axes, columns)
+    return _summed(integrand, axes, columns, _bending(integrand, columns))
+
+
+def integrate_again(model: Model, grid: Grid) -> Grid:
+    """Return the quadrature under another prior of a strength, on the axes of a quadrature that stands.
+
+    Args:
+        model: the hypothesis of the grid, the prior of a strength changed.
+        grid: its quadrature, whose bending is kept, so that it cancels in the change.
+
+    Returns:
+        The grid with new columns.
+    """
+    integrand = replace(grid.integrand, model=model)
+    columns = integrand.columns(_product([axis.nodes for axis in grid.axes]))
+    return _summed(integrand, grid.axes, columns, grid.bending)
 
 
 def _product(nodes: list[Array]) -> Array:
@@ -144,7 +170,9 @@ def _extended(
     return columns.joined(integrand.columns(wanted[new])).take(order)
 
 
-def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns) -> Grid:
+def _summed(
+    integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend: Bending | None
+) -> Grid:
     top, field = _field(axes, columns)
     total = float(_contract(field, [axis.weights for axis in axes]))
     share = field / field.sum()
@@ -153,7 +181,6 @@ def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns) -> G
         for e in (_panel_errors(axes, field, which) / total for which in range(len(axes)))
     )
     inner_error = float((share.ravel() * columns.inner_error()).sum())
-    bend = _bending(integrand, columns)
     order, doubt = (0.0, 0.0) if bend is None else (bend.ln_correction, bend.doubt)
     return Grid(
         integrand,

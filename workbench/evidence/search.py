@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -59,19 +60,24 @@ class Landscape:
         return (projected @ self.residual) / information, information
 
 
-def survey(model: Model, counts: Array) -> Landscape:
+def survey(model: Model, counts: Array, near: Mapping[str, float]) -> Landscape:
     """Return the background's mode and the linear response around it.
 
     Args:
         model: a hypothesis.
         counts: (bin,) observed counts [events].
+        near: standard coordinates by name to start from; 0 for those not named.
 
     Returns:
-        The landscape that starting points and node positions are read from.
+        The landscape that starting points and node positions are read from; without signal coordinates just
+        where it starts.
     """
+    start = np.array([0.0 if c.role == "signal" else near.get(c.name, 0.0) for c in model.coordinates])
+    if model.signal.size == 0:
+        nothing = np.zeros(0)
+        return Landscape(start, nothing, nothing, nothing, nothing, nothing)
     background = model.restricted("background", spare=True)
-    objective = StandardObjective(background)
-    mode = maximise(objective, np.zeros((1, model.size)), counts, tolerance=_ROUGHLY)
+    mode = maximise(StandardObjective(background), start[None], counts, tolerance=_ROUGHLY)
     base = mode.points[0]
     nuisance = np.setdiff1d(np.arange(model.size), model.signal)
     seeds = background.seeds(base[None])

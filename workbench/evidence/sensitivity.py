@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
-from workbench.evidence.quadrature import Grid, integrate
+from workbench.evidence.quadrature import Grid, integrate, integrate_again
 from workbench.evidence.results import Evidence, ScaledPrior
 from workbench.likelihood.model import Model
 
@@ -36,7 +36,7 @@ def sensitivities(
         if not coordinate.is_strength:
             continue
         changed = [
-            _ln_evidence(scaled, closed=grid is None)
+            _ln_evidence(scaled, grid, index)
             for scaled in (_scaled(model, index, 0.5), _scaled(model, index, 2.0))
         ]
         halved, doubled = (None if one is None else ln_bayes_factor + one - base for one in changed)
@@ -54,10 +54,13 @@ def _scaled(model: Model, index: int, factor: float) -> Model | None:
     return replace(model, coordinates=tuple(coordinates))
 
 
-def _ln_evidence(model: Model | None, closed: bool) -> float | None:
+def _ln_evidence(model: Model | None, grid: Grid | None, index: int) -> float | None:
+    """Return ln Z under another prior of one strength, by the way it was found before."""
     if model is None or model.observed is None:
         return None
-    if not closed:
-        return integrate(model, model.observed).ln_evidence
-    rates = linear_rates(model)
-    return None if rates is None else exact_ln_evidence(rates, model.observed)
+    if grid is None:
+        rates = linear_rates(model)
+        return None if rates is None else exact_ln_evidence(rates, model.observed)
+    if index == grid.integrand.inner:
+        return integrate_again(model, grid).ln_evidence
+    return integrate(model, model.observed, grid.mode).ln_evidence

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -23,6 +24,7 @@ Array = npt.NDArray[np.float64]
 
 LARGEST_ERROR = 0.1
 _WANTED_ERROR = 0.005
+_NOWHERE: Mapping[str, float] = {}
 _FIRST_DRAWS = 64
 _MOST_DRAWS = 2048
 
@@ -60,10 +62,11 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         InputError: if a region has no observed counts.
     """
     children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses))
-    weighed = [
-        weigh_hypothesis(compile_model(analysis, hypothesis.name), child, closed_forms=closed_forms)
-        for hypothesis, child in zip(analysis.hypotheses, children, strict=True)
-    ]
+    weighed: list[Weighed] = []
+    for hypothesis, child in zip(analysis.hypotheses, children, strict=True):
+        near = weighed[0].grid.mode if weighed and weighed[0].grid is not None else {}
+        model = compile_model(analysis, hypothesis.name)
+        weighed.append(weigh_hypothesis(model, child, closed_forms=closed_forms, near=near))
     evidences = tuple(one.evidence for one in weighed)
     priors = np.array([hypothesis.prior for hypothesis in analysis.hypotheses], dtype=float)
     comparisons = tuple(
@@ -102,13 +105,20 @@ def observed_counts(model: Model) -> Array:
     )
 
 
-def weigh_hypothesis(model: Model, seed: np.random.SeedSequence, *, closed_forms: bool = True) -> Weighed:
+def weigh_hypothesis(
+    model: Model,
+    seed: np.random.SeedSequence,
+    *,
+    closed_forms: bool = True,
+    near: Mapping[str, float] = _NOWHERE,
+) -> Weighed:
     """Return one hypothesis' evidence: in closed form where it holds, else by two estimators that must agree.
 
     Args:
         model: the compiled hypothesis.
         seed: where its random numbers come from.
         closed_forms: False keeps to the numerical estimators.
+        near: standard coordinates by name to start from, such as another hypothesis' mode.
 
     Returns:
         The evidence with grid and sample.
@@ -127,7 +137,7 @@ def weigh_hypothesis(model: Model, seed: np.random.SeedSequence, *, closed_forms
     exact = exact_ln_evidence(rates, counts) if rates is not None else None
     if exact is not None and np.isfinite(exact):
         return Weighed(model, _exactly(model, exact))
-    grid = integrate(model, counts)
+    grid = integrate(model, counts, near)
     drawn = _sampled(grid, seed)
     return Weighed(model, _agreed(model, grid, drawn), grid, drawn)
 
