@@ -139,7 +139,7 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
 
         write_analysis(analysis, Path(options.save))
         notes.append(f"The analysis file that this made is {options.save}.")
-    made = {"strength": strength.text(), "background_uncertainty": size}
+    made = {"strength": options.strength or EXAMPLE_PRIOR, "background_uncertainty": size}
     return analysis, Origin(name, analysis.digest, seed, made, tuple(notes))
 
 

@@ -50,16 +50,8 @@ def draw_counts(
     bins = _bins_of(analysis, region_name)
     curves = [fit.expected[bins] for fit in fits]
     per_width, label = _scale(region)
-    grid = figure.add_gridspec(
-        2, 1, height_ratios=(3, 1), hspace=0.08, left=0.09, right=0.81, top=0.90, bottom=0.13
-    )
-    upper = figure.add_subplot(grid[0])
-    lower = figure.add_subplot(grid[1], sharex=upper)
-    figure.set_facecolor(palette.paper)
-    for axes in (upper, lower):
-        clean_axes(axes, palette)
+    upper, lower = _panels(figure, region, palette)
     binning = region.table.binning
-    upper.set_xlim(binning.first - 0.02 * (binning.last - binning.first), binning.last)
     _draw_curves(upper, binning, [curve / per_width for curve in curves], palette)
     _set_heights(upper, region, curves, per_width)
     _draw_points(upper, region, per_width, palette)
@@ -71,6 +63,20 @@ def draw_counts(
     _name_marks(
         upper, region, [fit.hypothesis for fit in fits], [curve / per_width for curve in curves], palette
     )
+    return upper, lower
+
+
+def _panels(figure: FigureBase, region: Region, palette: Palette) -> tuple[Axes, Axes]:
+    grid = figure.add_gridspec(
+        2, 1, height_ratios=(3, 1), hspace=0.08, left=0.09, right=0.81, top=0.90, bottom=0.13
+    )
+    upper = figure.add_subplot(grid[0])
+    lower = figure.add_subplot(grid[1], sharex=upper)
+    figure.set_facecolor(palette.paper)
+    for axes in (upper, lower):
+        clean_axes(axes, palette)
+    binning = region.table.binning
+    upper.set_xlim(binning.first - 0.02 * (binning.last - binning.first), binning.last)
     return upper, lower
 
 

@@ -97,9 +97,7 @@ def _draw_whisker(
             [end, end], [_RULER - 0.05, _RULER + 0.05], color=stroke.line, linewidth=1.2, gid="whisker end"
         )
     names = " and ".join(shortened(item.parameter, 24) for item in comparison.sensitivity)
-    words = (
-        f"{odds(low * _LN_10, 0.0)} to {odds(high * _LN_10, 0.0)}  when the prior of {names} is half or twice as wide"
-    )
+    words = f"{odds(low * _LN_10, 0.0)} to {odds(high * _LN_10, 0.0)}  when the prior of {names} is half or twice as wide"
     _write(axes, 0.5 * (low + high), _WHISKER, words, stroke.words, 9, palette)
 
 

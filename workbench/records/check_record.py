@@ -24,9 +24,6 @@ def check_record(outcome: CheckOutcome) -> dict[str, Any]:
         outcome: what was found.
     """
     analysis = outcome.analysis
-    total = sum(item.prior for item in analysis.hypotheses)
-    adequacies = {item.hypothesis: adequacy_entry(item) for item in outcome.adequacies}
-    predictives = {item.hypothesis: _predictive(item) for item in outcome.predictives}
     return {
         "format": FORMAT,
         "command": "check",
@@ -45,20 +42,28 @@ def check_record(outcome: CheckOutcome) -> dict[str, Any]:
         "uncertainties": [
             {"name": source.name, "effects": dict(source_words(source))} for source in analysis.uncertainties
         ],
-        "hypotheses": [
-            {
-                "name": item.name,
-                "prior": item.prior / total,
-                "processes": list(item.processes),
-                "fix": dict(item.fix),
-                "prior_predictive": predictives.get(item.name),
-                "adequacy": adequacies.get(item.name),
-            }
-            for item in analysis.hypotheses
-        ],
+        "hypotheses": _hypotheses(outcome),
         "adequacy_verdict": verdict_on_all(outcome.adequacies) or None,
         "warnings": caution_entries(analysis.cautions),
     }
+
+
+def _hypotheses(outcome: CheckOutcome) -> list[dict[str, Any]]:
+    hypotheses = outcome.analysis.hypotheses
+    total = sum(item.prior for item in hypotheses)
+    adequacies = {item.hypothesis: adequacy_entry(item) for item in outcome.adequacies}
+    predictives = {item.hypothesis: _predictive(item) for item in outcome.predictives}
+    return [
+        {
+            "name": item.name,
+            "prior": item.prior / total,
+            "processes": list(item.processes),
+            "fix": dict(item.fix),
+            "prior_predictive": predictives.get(item.name),
+            "adequacy": adequacies.get(item.name),
+        }
+        for item in hypotheses
+    ]
 
 
 def _region(analysis: Analysis, region: Region) -> dict[str, Any]:
