@@ -130,6 +130,15 @@ def test_what_is_not_established_has_no_odds_in_its_picture(palette: Palette) ->
     check_words(axes)
 
 
+@pytest.mark.parametrize("size", [(9.0, 3.2), (5.0, 2.6)])
+@pytest.mark.parametrize("repeats", [1, 3, 12])
+def test_reasons_of_any_length_stay_in_their_lane(size: tuple[float, float], repeats: int) -> None:
+    weighing = hand.unestablished()
+    reason = "; ".join(["a few draws dominate the sampling pass (k-hat 1.06, allowed below 0.70)"] * repeats)
+    evidences = tuple(replace(item, established=False, reason=reason) for item in weighing.evidences)
+    check_words(drawn(replace(weighing, evidences=evidences), size=size))
+
+
 def test_the_ruler_holds_even_odds_and_every_value() -> None:
     low, high = ruler_range([3.0, 868.0])
     assert low < -1.0

@@ -10,7 +10,7 @@ from workbench.ensembles.results import Adequacy
 from workbench.evidence.results import Comparison, Evidence
 from workbench.plots.palette import LIGHT, Palette
 from workbench.plots.ruler import draw_ruler, ruler_range
-from workbench.plots.words import keep_apart, keep_inside, shortened, typeset
+from workbench.plots.words import fill_block, keep_apart, keep_inside, shortened, typeset
 from workbench.records.numbers import factor, odds
 from workbench.records.outcomes import spread_of_ln_bayes_factor
 from workbench.records.sentences import adequacy_number, ln_posterior_odds, verdict_on_all
@@ -25,6 +25,8 @@ _LN_10 = math.log(10.0)
 _ADEQUACY, _SIDES, _PRIOR, _FACTOR, _ARROW, _POSTERIOR, _RULER, _WHISKER = (
     0.93, 0.80, 0.69, 0.58, 0.505, 0.395, 0.275, 0.07,
 )  # fmt: skip
+# The drawing without odds has lanes of its own: the verdict, the ruler with the prior odds, and the reasons.
+_VERDICT, _BARE_PRIOR, _BARE_RULER, _REASONS, _REASONS_HEIGHT = 0.67, 0.545, 0.43, 0.15, 0.29
 
 
 def draw_odds(
@@ -97,7 +99,8 @@ def _draw_whisker(
             [end, end], [_RULER - 0.05, _RULER + 0.05], color=stroke.line, linewidth=1.2, gid="whisker end"
         )
     names = " and ".join(shortened(item.parameter, 24) for item in comparison.sensitivity)
-    words = f"{odds(low * _LN_10, 0.0)} to {odds(high * _LN_10, 0.0)}  when the prior of {names} is half or twice as wide"
+    ends = f"{odds(low * _LN_10, 0.0)} to {odds(high * _LN_10, 0.0)}"
+    words = f"{ends}  when the prior of {names} is half or twice as wide"
     _write(axes, 0.5 * (low + high), _WHISKER, words, stroke.words, 9, palette)
 
 
@@ -122,13 +125,19 @@ def _draw_step(axes: Axes, prior: float, posterior: float, comparison: Compariso
     _write(axes, 0.5 * (prior + posterior), _FACTOR, words, palette.ink, 11, palette)
 
 
-def _draw_prior(axes: Axes, prior: float, comparison: Comparison, palette: Palette) -> None:
-    axes.plot(
-        [prior, prior], [_RULER - 0.03, _RULER + 0.06], color=palette.ink, linewidth=3.0, gid="prior odds"
-    )
-    axes.plot([prior, prior], [_RULER, _PRIOR - 0.03], ":", color=palette.faint, linewidth=1.0, zorder=0)
+def _draw_prior(
+    axes: Axes,
+    prior: float,
+    comparison: Comparison,
+    palette: Palette,
+    ruler: float = _RULER,
+    height: float = _PRIOR,
+) -> None:
+    foot, head = ruler - 0.03, ruler + 0.06
+    axes.plot([prior, prior], [foot, head], color=palette.ink, linewidth=3.0, gid="prior odds")
+    axes.plot([prior, prior], [ruler, height - 0.03], ":", color=palette.faint, linewidth=1.0, zorder=0)
     words = f"prior odds  {odds(math.log(comparison.prior_odds))}"
-    _write(axes, prior, _PRIOR, words, palette.muted, 9, palette)
+    _write(axes, prior, height, words, palette.muted, 9, palette)
 
 
 def _draw_sides(axes: Axes, comparison: Comparison, palette: Palette, place: int) -> None:
@@ -187,8 +196,8 @@ def _draw_not_established(
     axes: Axes, comparison: Comparison, evidences: Sequence[Evidence], prior: float, palette: Palette
 ) -> None:
     axes.set_xlim(*ruler_range([prior, -2.0, 2.0]))
-    draw_ruler(axes, _RULER, palette, is_faint=True)
-    _draw_prior(axes, prior, comparison, palette)
+    draw_ruler(axes, _BARE_RULER, palette, is_faint=True)
+    _draw_prior(axes, prior, comparison, palette, _BARE_RULER, _BARE_PRIOR)
     low, high = axes.get_xlim()
     concerned = {comparison.hypothesis, comparison.against}
     reasons = [
@@ -198,7 +207,7 @@ def _draw_not_established(
     ]
     words = axes.text(
         0.5 * (low + high),
-        _FACTOR - 0.03,
+        _VERDICT,
         "not established: no odds are given",
         color=palette.ink,
         fontsize=14,
@@ -214,7 +223,8 @@ def _draw_not_established(
         },
     )
     keep_inside(words, axes, margin=12.0)
-    _write(axes, 0.5 * (low + high), _WHISKER, "\n".join(reasons), palette.ink, 9, palette)
+    why = _write(axes, 0.5 * (low + high), _REASONS, "", palette.ink, 9, palette)
+    fill_block(why, reasons, axes, _REASONS_HEIGHT)
 
 
 def _write(axes: Axes, x: float, y: float, words: str, colour: str, size: float, palette: Palette) -> Text:

@@ -83,6 +83,40 @@ def _shrink(text: Text, room: float) -> None:
         text.set_fontsize(size)
 
 
+def fill_block(text: Text, sentences: Sequence[str], axes: Axes, height: float) -> None:
+    """Write sentences into a block as wide as the axes, small enough for its height.
+
+    Args:
+        text: an empty text at the block's centre.
+        sentences: each begins a line of its own.
+        axes: what it has to stay inside of.
+        height: the block's height, as a part of the axes' height.
+    """
+    frame = axes.get_window_extent()
+    size = float(text.get_fontsize())
+    while True:
+        text.set_fontsize(size)
+        text.set_text("\n".join(sentences))
+        left, right = extent(text)
+        longest = max((len(sentence) for sentence in sentences), default=1)
+        share = max(int(0.96 * longest * (frame.x1 - frame.x0) / max(right - left, 1.0)), 8)
+        lines = [line for sentence in sentences for line in textwrap.wrap(sentence, share)]
+        text.set_text("\n".join(lines))
+        if _height(text) <= height * (frame.y1 - frame.y0):
+            return
+        if size <= SMALLEST:
+            break
+        size = max(size - 0.5, SMALLEST)
+    while len(lines) > 1 and _height(text) > height * (frame.y1 - frame.y0):
+        lines = lines[:-1]
+        text.set_text("\n".join(lines) + "…")
+
+
+def _height(text: Text) -> float:
+    box = text.get_window_extent()
+    return float(box.y1 - box.y0)
+
+
 def spread(wanted: Sequence[float], sizes: Sequence[float], low: float, high: float) -> list[float]:
     """Return positions near the wanted ones at which things of some size do not overlap.
 
