@@ -57,7 +57,8 @@ class Grid:
         return int(self.columns.inner.size)
 
 
-def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE) -> Grid:
+@np.errstate(all="ignore")  # an impossible point has ln probability -inf, and a step to it is shortened
+def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE) -> Grid | None:
     """Return the quadrature of a hypothesis' evidence with its nodes.
 
     Peaks are located first: panels follow the angle between neighbouring signals, so that no resolution
@@ -70,7 +71,8 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
         near: standard coordinates by name to start from, such as another hypothesis' mode.
 
     Returns:
-        The grid of nodes with ln evidence and error.
+        The grid of nodes with ln evidence and error; None where the signal coordinates need more nodes than can be
+        held.
 
     Limits:
         Nuisance coordinates far from Gaussian: the error says so, and the sampling pass corrects it.
@@ -79,6 +81,8 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
     integrand = Integrand(model, counts, landscape)
     outer = integrand.outer
     axes = tuple(lay_out(model, landscape, axis, outer) for axis in outer)
+    if np.prod([float(axis.nodes.size) for axis in axes]) > _MOST_COLUMNS:
+        return None
     columns = integrand.columns(_product([axis.nodes for axis in axes]))
     for _ in range(_ROUNDS):
         finer = _refined(axes, columns)
@@ -89,6 +93,7 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
     return _summed(integrand, axes, columns, _bending(integrand, columns))
 
 
+@np.errstate(all="ignore")
 def integrate_again(model: Model, grid: Grid) -> Grid:
     """Return the quadrature under another prior of a strength, on the axes of a quadrature that stands.
 

@@ -42,6 +42,7 @@ class Sample:
     k_hat: float
 
 
+@np.errstate(all="ignore")  # an impossible point has ln weight -inf
 def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> Sample:
     """Return the importance-sampling estimate of the evidence on a grid's proposal.
 

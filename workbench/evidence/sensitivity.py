@@ -63,4 +63,5 @@ def _ln_evidence(model: Model | None, grid: Grid | None, index: int) -> float | 
         return None if rates is None else exact_ln_evidence(rates, model.observed)
     if index == grid.integrand.inner:
         return integrate_again(model, grid).ln_evidence
-    return integrate(model, model.observed, grid.mode).ln_evidence
+    again = integrate(model, model.observed, grid.mode)
+    return None if again is None else again.ln_evidence

@@ -138,6 +138,9 @@ def weigh_hypothesis(
     if exact is not None and np.isfinite(exact):
         return Weighed(model, _exactly(model, exact))
     grid = integrate(model, counts, near)
+    if grid is None:
+        reason = "its signal coordinates need more nodes than can be held; fix some, or narrow their priors"
+        return Weighed(model, Evidence(model.hypothesis, None, None, False, reason, ()))
     drawn = _sampled(grid, seed)
     return Weighed(model, _agreed(model, grid, drawn), grid, drawn)
 
