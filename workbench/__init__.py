@@ -4,6 +4,7 @@ Everything public is reachable from here and imported on first use, so that `imp
 
     import workbench as wb
     analysis = wb.read_analysis("skerry.toml")
+    weighing = wb.weigh(analysis)
 """
 
 from __future__ import annotations
@@ -19,7 +20,10 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.counts.csv_table": ("read_csv_table",),
     "workbench.counts.region": ("Region",),
     "workbench.counts.table": ("Table",),
+    "workbench.ensembles.adequacy": ("adequacy",),
+    "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
+    "workbench.hypotheses.bare": ("analysis_from_table",),
     "workbench.hypotheses.priors": (
         "Beta",
         "Exponential",
@@ -48,6 +52,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     ),
     "workbench.hypotheses.uncertainties": ("Effect", "Uncertainty"),
     "workbench.hypotheses.writing": ("write_analysis",),
+    "workbench.likelihood.fit": ("fit",),
 }
 _HOME_OF = {name: home for home, names in _HOMES.items() for name in names}
 

@@ -13,7 +13,15 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class Problem:
-    """One fault in an input: what, where, found, expected, and an action that works."""
+    """One fault in an input, in the parts that a user needs to mend it.
+
+    Attributes:
+        what: the fault in a few words.
+        where: the file, line, key, column or option.
+        found: the value as given.
+        expected: the condition that it breaks.
+        remedy: an action that works, said after "try".
+    """
 
     what: str
     where: str
@@ -42,7 +50,12 @@ class InputError(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Caution:
-    """Something worth knowing about a result that stands: a short code and a sentence."""
+    """Something worth knowing about a result that stands.
+
+    Attributes:
+        code: a short name that stays the same.
+        text: the sentence.
+    """
 
     code: str
     text: str

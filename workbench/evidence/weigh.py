@@ -60,6 +60,10 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
 
     Raises:
         InputError: if a region has no observed counts.
+
+    Source:
+        R.E. Kass, A.E. Raftery, Bayes factors, J. Am. Stat. Assoc. 90 (1995) 773; from memory. The estimators
+        name theirs.
     """
     children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses))
     weighed: list[Weighed] = []
