@@ -23,10 +23,12 @@ _ERRORS_AWAY = 3.0
 def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000) -> Adequacy:
     """Return how often pseudo-experiments from a hypothesis fit it worse than the observed counts do.
 
-    T = 2 (ln p of the saturated model - largest penalised ln p); p = (1 + number with T at least as large)/(1 + number).
-    Sources, and nuisance parameters whose prior is not flat, are drawn from their priors, the others held at their
-    fitted values; counts come from the hypothesis' law; each pseudo-experiment is fitted again. Drawn until p is 3
-    errors away from 0.01: at least 200, at most `most`.
+        T = 2 (ln p of the saturated model - largest penalised ln p)
+        p = (1 + pseudo-experiments with T at least as large)/(1 + their number)
+
+    Sources, and nuisance parameters whose prior is not flat, are drawn from their priors, the others held at
+    their fitted values; counts come from the hypothesis' law; each pseudo-experiment is fitted again. Drawn
+    until p is 3 errors away from 0.01: at least 200, at most `most`.
 
     Args:
         analysis: everything declared, with observed counts.
@@ -41,8 +43,9 @@ def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 
         InputError: if there is no such hypothesis or a region has no observed counts.
 
     Source:
-        Saturated-model test: S. Baker, R.D. Cousins, Nucl. Instrum. Meth. 221 (1984) 437; from memory. p of a simulated
-        ensemble: A.C. Davison, D.V. Hinkley, Bootstrap Methods and their Application (1997); from memory.
+        Saturated-model test: S. Baker, R.D. Cousins, Nucl. Instrum. Meth. 221 (1984) 437; from memory.
+        p of a simulated ensemble: A.C. Davison, D.V. Hinkley, Bootstrap Methods and their Application (1997);
+        from memory.
     """
     model = compile_model(analysis, hypothesis)
     if model.observed is None:

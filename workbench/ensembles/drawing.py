@@ -12,7 +12,9 @@ Array = npt.NDArray[np.float64]
 _BLOCK = 100
 
 
-def blocks(seed: np.random.SeedSequence, number: int, first: int = 0) -> list[tuple[np.random.Generator, int]]:
+def blocks(
+    seed: np.random.SeedSequence, number: int, first: int = 0
+) -> list[tuple[np.random.Generator, int]]:
     """Return generators for blocks of pseudo-experiments, one child of the seed a block.
 
     The same pseudo-experiment always comes from the same child, whoever draws it and in whatever order.
@@ -32,7 +34,9 @@ def blocks(seed: np.random.SeedSequence, number: int, first: int = 0) -> list[tu
     return found
 
 
-def draw_parameters(model: Model, generator: np.random.Generator, number: int, held: Array | None = None) -> Array:
+def draw_parameters(
+    model: Model, generator: np.random.Generator, number: int, held: Array | None = None
+) -> Array:
     """Return parameter values drawn from their priors, or held where a number is given.
 
     Args:

@@ -33,7 +33,9 @@ class PriorPredictive:
     total_high: float
 
 
-def prior_predictive(analysis: Analysis, hypothesis: str, *, seed: int = 1, draws: int = 400) -> PriorPredictive:
+def prior_predictive(
+    analysis: Analysis, hypothesis: str, *, seed: int = 1, draws: int = 400
+) -> PriorPredictive:
     """Return the central 68 % of counts drawn from a hypothesis with all parameters drawn from their priors.
 
     Args:

@@ -71,10 +71,7 @@ def _part(
 ) -> tuple[Part, Variations]:
     contribution = process.regions[region.name]
     found = _variations(analysis, process, region, contribution)
-    quantity: Quantity = tuple(process.factors)
-    events = contribution.events
-    if events is not None:
-        quantity = (*quantity, *(events if isinstance(events, tuple) else (events,)))
+    quantity = _amplitude(process, contribution)
     used = list(parameters_of(quantity))
     core, error_core, of_shape = _cores(region, contribution, found)
     used += [name for name in (*of_shape, *found.added) if name not in used]
@@ -101,6 +98,14 @@ def _part(
         error=None if error_core is None else stem(error_core),
         by_bin=_by_bin(found, coordinates),
     ), found
+
+
+def _amplitude(process: Process, contribution: Contribution) -> Quantity:
+    """Return factors times yield as one product."""
+    events = contribution.events
+    if events is None:
+        return process.factors
+    return (*process.factors, *(events if isinstance(events, tuple) else (events,)))
 
 
 def _by_bin(found: Variations, coordinates: Mapping[str, int]) -> Sources | None:
@@ -269,5 +274,3 @@ def _additive(nominal: Array, unit: float, added: Mapping[str, tuple[Array, Arra
 def _square_root(jet: Jet) -> Jet:
     root = np.sqrt(jet.value)
     return jet.apply(root, 0.5 / root, -0.25 / root**3)
-
-

@@ -6,7 +6,7 @@ sum_i w_i d2T_i/(da db), which is formed from the parts' own small pieces.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -88,9 +88,34 @@ class Expansion:
             return
         rows = np.array([piece.row for piece in self.pieces])
         slopes = self.slopes[:, :, rows]
-        hessian[:, indices[:, None], indices[None, :]] += (slopes * totals[:, None, :]) @ np.swapaxes(slopes, 1, 2)
+        hessian[:, indices[:, None], indices[None, :]] += (slopes * totals[:, None, :]) @ np.swapaxes(
+            slopes, 1, 2
+        )
         if self.overall.is_bent:
             hessian[:, indices, indices] += (self.bends[:, :, rows] @ totals[:, :, None])[..., 0]
+
+    def add_squares(self, weights: Array, hessian: Array) -> Array:
+        """Add sum_i w_i d2 V_i of V = sum of squared events to a Hessian, and return V's first derivatives.
+
+        Args:
+            weights: (batch, bin) w.
+            hessian: (batch, coordinate, coordinate) what is added to.
+
+        Returns:
+            (batch, coordinate, bin) dV.
+        """
+        tilt = np.zeros((len(weights), self.size, weights.shape[1]))
+        for piece in self.pieces:
+            own = np.zeros((len(weights), self.size, piece.events.shape[1]))
+            alone = replace(self, pieces=(piece,))
+            alone.add_gradient(piece, own)
+            tilt[:, :, piece.bins] += 2.0 * piece.events[:, None, :] * own
+            doubled = 2.0 * weights[:, piece.bins]
+            hessian += (own * doubled[:, None, :]) @ np.swapaxes(own, 1, 2)
+            curved = np.zeros_like(weights)
+            curved[:, piece.bins] = doubled * piece.events
+            alone.add_curvature(curved, hessian)
+        return tilt
 
     def _add_piece(self, piece: Piece, weights: Array, weighted: Array, hessian: Array) -> None:
         """Add what one part's stem and its sources by bin contribute, with their cross terms."""
@@ -154,7 +179,9 @@ def expand(
 _EMPTY = np.zeros((0, 0, 0))
 
 
-def _piece(row: int, part: Part, stem: Stem, seeds: Seeds, factor: Array, by_bin: tuple[Array, Array]) -> Piece:
+def _piece(
+    row: int, part: Part, stem: Stem, seeds: Seeds, factor: Array, by_bin: tuple[Array, Array]
+) -> Piece:
     value, first, second = stem.expanded(seeds)
     events = factor * value
     count = len(stem.local)

@@ -2,18 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 import numpy.typing as npt
 from scipy import special
 
 Array = npt.NDArray[np.float64]
+Flags = npt.NDArray[np.bool_]
 
 _LN_2PI = float(np.log(2.0 * np.pi))
-_TINY = 1e-300
 _STIRLING = (1.0 / 12.0, -1.0 / 360.0, 1.0 / 1260.0, -1.0 / 1680.0, 1.0 / 1188.0)
 _LARGE = 16.0
+_LARGEST_PLAIN_COUNT = 1e5
+_NEAR = 0.2
+_SMALLEST_NOISY_MEAN = 1e-40
+_SMALLEST_RELATIVE_VARIANCE = 1e-30
 
 
 def stirling_error(n: Array) -> Array:
@@ -31,15 +33,49 @@ def stirling_error(n: Array) -> Array:
         C. Loader, Fast and accurate computation of binomial probabilities (2000); from memory.
     """
     n = np.asarray(n, dtype=float)
-    small = np.where(n < _LARGE, n, _LARGE)
-    direct = special.gammaln(small + 1.0) - (small + 0.5) * np.log(small) + small - 0.5 * _LN_2PI
-    large = np.where(n < _LARGE, _LARGE, n)
+    is_small = n < _LARGE
+    large = np.where(is_small, _LARGE, n)
     inverse = 1.0 / large
     square = inverse * inverse
     series = np.zeros_like(large)
     for coefficient in reversed(_STIRLING):
         series = series * square + coefficient
-    return np.where(n < _LARGE, direct, series * inverse)
+    series *= inverse
+    if not is_small.any():
+        return series
+    small = np.where(is_small, n, _LARGE)
+    direct = special.gammaln(small + 1.0) - (small + 0.5) * np.log(small) + small - 0.5 * _LN_2PI
+    return np.where(is_small, direct, series)
+
+
+def log_gap(x: Array, whole: Array) -> Array:
+    """Return x - ln(1 + x), exact to rounding also near 0 and near -1.
+
+    With r = x/(2 + x):
+        x - ln(1 + x) = x r - 2 r^3 (1/3 + r^2/5 + r^4/7 + ...)
+
+    Args:
+        x: (...) numbers; >= -1.
+        whole: (...) 1 + x, worked out without adding 1: near x = -1 the sum has lost its digits.
+
+    Returns:
+        (...) the gap; >= 0, infinite at -1.
+
+    Source:
+        ln(1 + x) = 2 artanh(x/(2 + x)), as in C. Loader (2000), the function bd0; from memory.
+    """
+    is_near = np.abs(x) < _NEAR
+    near = np.where(is_near, x, 0.0)
+    ratio = near / (2.0 + near)
+    square = ratio * ratio
+    series = np.zeros_like(near)
+    for power in range(8, -1, -1):
+        series = series * square + 1.0 / (2.0 * power + 3.0)
+    series = near * ratio - 2.0 * ratio * square * series
+    if is_near.all():
+        return series
+    with np.errstate(divide="ignore"):  # at -1 the gap is infinite
+        return np.where(is_near, series, x - np.log(whole))
 
 
 def half_deviance(n: Array, expected: Array) -> Array:
@@ -47,19 +83,17 @@ def half_deviance(n: Array, expected: Array) -> Array:
 
     Args:
         n: (..., bin) counts or other numbers [events]; >= 0.
-        expected: (..., bin) v [events]; > 0.
+        expected: (..., bin) v [events]; >= 0.
 
     Returns:
-        (..., bin) half the deviance of each bin [nats]; >= 0.
+        (..., bin) half the deviance of each bin [nats]; >= 0, infinite where v = 0 and n > 0.
 
     Source:
-        C. Loader (2000), the function bd0; from memory. The form n (x - ln(1 + x)) with x = (v - n)/n has
-        an absolute error of rounding times |v - n|.
+        C. Loader (2000), the function bd0; from memory. Written as n [x - ln(1 + x)] with x = (v - n)/n.
     """
-    excess = (expected - n) / np.where(n > 0.0, n, 1.0)
-    with np.errstate(divide="ignore"):  # v = 0 with n > 0 is impossible: the deviance is infinite
-        gap = excess - np.log1p(excess)
-    return np.where(n > 0.0, n * gap, expected)
+    positive = np.where(n > 0.0, n, 1.0)
+    gap = log_gap((expected - positive) / positive, expected / positive)
+    return np.where(n > 0.0, positive * gap, expected)
 
 
 def ln_poisson(n: Array, expected: Array) -> Array:
@@ -73,6 +107,9 @@ def ln_poisson(n: Array, expected: Array) -> Array:
 
     Returns:
         (..., bin) ln probability [nats]; -inf where v = 0 and n > 0.
+
+    Limits:
+        Differences of two of these lose digits at huge counts: take n log1p(s/b) - s for a ratio.
 
     Source:
         C. Loader, Fast and accurate computation of binomial probabilities (2000); from memory.
@@ -116,99 +153,58 @@ def ln_negative_binomial(n: Array, expected: Array, variance: Array) -> Array:
         (..., bin) ln probability [nats].
 
     Source:
-        Gamma-Poisson mixture; evaluated by the saddle-point form of C. Loader (2000), from memory.
+        Gamma-Poisson mixture; evaluated by the saddle-point form of C. Loader (2000), from memory, its two
+        deviances written with their small arguments (n - T)/(A + T) and A (T - n)/(n (A + T)).
     """
     shape = expected**2 / variance
     positive = np.where(n > 0.0, n, 1.0)
     total = positive + shape
+    excess = (positive - expected) / (shape + expected)
+    whole = total / (shape + expected)
     counted = (
         stirling_error(total)
         - stirling_error(shape)
         - stirling_error(positive)
-        - half_deviance(shape, total * shape / (shape + expected))
-        - half_deviance(positive, total * expected / (shape + expected))
-        + 0.5 * (np.log(total) - np.log(shape) - np.log(positive) - _LN_2PI)
-        + np.log(shape / total)
+        - shape * log_gap(excess, whole)
+        - positive * log_gap(-excess * shape / positive, whole * expected / positive)
+        + 0.5 * (np.log(shape) - np.log(total) - np.log(positive) - _LN_2PI)
     )
     return np.where(n > 0.0, counted, -shape * np.log1p(expected / shape))
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class Slopes:
-    """Derivatives of the ln probability of each bin in its expectation T and variance V."""
-
-    t: Array
-    tt: Array
-    v: Array
-    vv: Array
-    tv: Array
-
-
-def poisson_slopes(n: Array, expected: Array) -> Slopes:
-    """Return the first two derivatives of the ln Poisson probability in its expectation.
+def noisy_bins(expected: Array, variance: Array) -> Flags:
+    """Return where the law differs from Poisson, so that the shape A = T^2/V is a number to work with.
 
     Args:
-        n: (..., bin) counted events [events].
-        expected: (..., bin) T [events].
+        expected: (..., bin) T [events]; >= 0.
+        variance: (..., bin) V [events^2]; >= 0.
 
     Returns:
-        Slopes with t = n/T - 1 and tt = -n/T^2.
+        (..., bin) False where V = 0, or so small beside T^2 or with T so small that nothing tells the two
+        apart.
     """
-    ratio = n / np.maximum(expected, _TINY)
-    nothing = np.zeros(1)
-    return Slopes(ratio - 1.0, -ratio / np.maximum(expected, _TINY), nothing, nothing, nothing)
+    return (variance > _SMALLEST_RELATIVE_VARIANCE * expected * expected) & (expected > _SMALLEST_NOISY_MEAN)
 
 
-def negative_binomial_slopes(n: Array, expected: Array, variance: Array) -> Slopes:
-    """Return the first two derivatives of the ln negative binomial in its mean T and variance part V.
-
-    Derivatives in (T, A) follow from the closed form; A = T^2/V then carries them to (T, V).
+def bin_ln_probability(expected: Array, variance: Array | None, counts: Array) -> Array:
+    """Return the ln probability of each bin's count under the law in force.
 
     Args:
-        n: (..., bin) counted events [events].
-        expected: (..., bin) T [events]; > 0.
-        variance: (..., bin) V [events^2]; >= 0; bins with V = 0 are Poisson.
+        expected: (..., bin) T [events]; >= 0.
+        variance: (..., bin) V [events^2]; bins with 0 are Poisson; None when all are.
+        counts: (bin,) or (..., bin) counted events [events].
 
     Returns:
-        Slopes with all five derivatives; those in V are 0 where V = 0.
+        (..., bin) ln probability [nats]; -inf where T = 0 and a count is there.
     """
-    plain = poisson_slopes(n, expected)
-    noisy = variance > 0.0
-    t = np.maximum(expected, _TINY)
-    v = np.where(noisy, variance, 1.0)
-    a = t * t / v
-    at = a + t
-    f_t = a * (n - t) / (t * at)
-    f_tt = -n / (t * t) + (a + n) / (at * at)
-    f_ta = (n - t) / (at * at)
-    f_a, f_aa = _shape_slopes(n, t, a)
-    a_t, a_v = 2.0 * a / t, -a / v
-    a_tt, a_tv, a_vv = 2.0 / v, -2.0 * a / (t * v), 2.0 * a / (v * v)
-    first_t = f_t + f_a * a_t
-    second_tt = f_tt + 2.0 * f_ta * a_t + f_aa * a_t**2 + f_a * a_tt
-    second_tv = f_ta * a_v + f_aa * a_t * a_v + f_a * a_tv
-    second_vv = f_aa * a_v**2 + f_a * a_vv
-    return Slopes(
-        np.where(noisy, first_t, plain.t),
-        np.where(noisy, second_tt, plain.tt),
-        np.where(noisy, f_a * a_v, 0.0),
-        np.where(noisy, second_vv, 0.0),
-        np.where(noisy, second_tv, 0.0),
-    )
-
-
-def _shape_slopes(n: Array, t: Array, a: Array) -> tuple[Array, Array]:
-    """Return the first two derivatives in A at fixed T, by series where digamma differences lose digits."""
-    scale = 1.0 + n + t
-    series = a > 1e5 * scale
-    safe = np.where(series, 1.0, a)
-    at = safe + t
-    first = special.digamma(n + safe) - special.digamma(safe) - np.log1p(t / safe) + (t - n) / at
-    second = (
-        special.polygamma(1, n + safe)
-        - special.polygamma(1, safe)
-        + t / (safe * at)
-        - (t - n) / (at * at)
-    )
-    half = 0.5 * ((n - t) ** 2 - n)
-    return np.where(series, -half / a**2, first), np.where(series, 2.0 * half / a**3, second)
+    if counts.max(initial=0.0) < _LARGEST_PLAIN_COUNT:
+        with np.errstate(divide="ignore"):
+            logs = np.where(counts > 0.0, np.log(expected), 0.0)
+        plain = counts * logs - expected - special.gammaln(counts + 1.0)
+    else:
+        plain = ln_poisson(counts, expected)
+    if variance is None:
+        return np.asarray(plain)
+    noisy = noisy_bins(expected, variance)
+    t, v = np.where(noisy, expected, 1.0), np.where(noisy, variance, 1.0)
+    return np.where(noisy, ln_negative_binomial(counts + np.zeros_like(t), t, v), plain)

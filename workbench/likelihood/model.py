@@ -8,43 +8,16 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from workbench.hypotheses.analysis import Analysis, Parameter
-from workbench.hypotheses.priors import Normal, Prior
-from workbench.hypotheses.processes import Process
+from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.assembly import assemble
+from workbench.likelihood.coordinates import Coordinate, coordinates_of
 from workbench.likelihood.kernel import Expansion, expand
-from workbench.likelihood.laws import (
-    Slopes,
-    ln_negative_binomial,
-    ln_poisson,
-    negative_binomial_slopes,
-    poisson_slopes,
-)
+from workbench.likelihood.laws import bin_ln_probability
 from workbench.likelihood.parts import Part, Seeds, Sources
+from workbench.likelihood.slopes import Slopes, negative_binomial_slopes, poisson_slopes
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
-
-_LARGEST_PLAIN_COUNT = 1e5
-_SOURCE_PRIOR = Normal(mean=0.0, sd=1.0)
-
-
-@dataclass(frozen=True, slots=True)
-class Coordinate:
-    """One free direction of a hypothesis.
-
-    Attributes:
-        name, unit: the parameter or source it belongs to.
-        role: "signal", "nuisance" or "source".
-        prior: its prior; a source's is the standard normal.
-        is_strength: True for a signal parameter that only multiplies yields.
-    """
-
-    name: str
-    unit: str
-    role: str
-    prior: Prior
-    is_strength: bool = False
 
 
 @dataclass(frozen=True, eq=False)
@@ -147,13 +120,9 @@ class Model:
         """Return the same coordinates with the processes of one kind only, "signal" or "background"."""
         kinds = {process.name: process.kind for process in self.analysis.processes}
         rows = [row for row, part in enumerate(self.parts) if kinds[part.process] == kind]
-        overall = replace(
-            self.overall, linear=self.overall.linear[:, rows], bend=self.overall.bend[:, rows]
-        )
+        overall = replace(self.overall, linear=self.overall.linear[:, rows], bend=self.overall.bend[:, rows])
         parts = tuple(self.parts[row] for row in rows)
-        return replace(
-            self, parts=parts, overall=overall, spare=self.spare if spare else np.zeros(self.bins)
-        )
+        return replace(self, parts=parts, overall=overall, spare=self.spare if spare else np.zeros(self.bins))
 
     def responses(self, seeds: Seeds) -> Array:
         """Return (batch, coordinate, bin) first derivatives of the expected events."""
@@ -170,7 +139,7 @@ class Model:
         Returns:
             (batch,) ln probability [nats]; -inf where an impossible count is observed.
         """
-        return bin_ln_probability(*self.expected(seeds), counts).sum(axis=-1)
+        return np.asarray(bin_ln_probability(*self.expected(seeds), counts).sum(axis=-1))
 
     def derivatives(self, seeds: Seeds, counts: Array) -> tuple[Array, Array, Array]:
         """Return the ln probability of counts with exact first and second derivatives.
@@ -199,22 +168,14 @@ class Model:
     ) -> tuple[Array, Array, Array]:
         """Return the derivatives of the negative binomial: T as before, V = sum of squared errors."""
         variance = np.zeros_like(total) + self.spare**2
-        tilt = np.zeros_like(slope)
-        pieces = () if errors is None else errors.pieces
-        for piece in pieces:
+        for piece in () if errors is None else errors.pieces:
             variance[:, piece.bins] += piece.events**2
         slopes = negative_binomial_slopes(counts, total, variance)
         value = bin_ln_probability(total, variance, counts).sum(axis=-1)
         gradient, hessian = _contraction(events, slope, slopes)
-        for piece in pieces:
-            own = np.zeros((len(total), self.size, piece.events.shape[1]))
-            alone = replace(errors, pieces=(piece,))
-            alone.add_gradient(piece, own)
-            tilt[:, :, piece.bins] += 2.0 * piece.events[:, None, :] * own
-            hessian += (own * (2.0 * slopes.v[:, piece.bins])[:, None, :]) @ np.swapaxes(own, 1, 2)
-            weights = np.zeros_like(total)
-            weights[:, piece.bins] = 2.0 * slopes.v[:, piece.bins] * piece.events
-            alone.add_curvature(weights, hessian)
+        if errors is None:
+            return value, gradient, hessian
+        tilt = errors.add_squares(slopes.v, hessian)
         gradient += (tilt @ slopes.v[:, :, None])[..., 0]
         cross = (slope * slopes.tv[:, None, :]) @ np.swapaxes(tilt, 1, 2)
         hessian += cross + np.swapaxes(cross, 1, 2)
@@ -227,32 +188,6 @@ def _contraction(events: Expansion, slope: Array, slopes: Slopes) -> tuple[Array
     hessian = (slope * slopes.tt[:, None, :]) @ np.swapaxes(slope, 1, 2)
     events.add_curvature(slopes.t, hessian)
     return gradient, hessian
-
-
-def bin_ln_probability(expected: Array, variance: Array | None, counts: Array) -> Array:
-    """Return the ln probability of each bin's count under the law in force.
-
-    Args:
-        expected: (..., bin) T [events]; >= 0.
-        variance: (..., bin) V [events^2]; bins with 0 are Poisson; None when all are.
-        counts: (bin,) or (..., bin) counted events [events].
-
-    Returns:
-        (..., bin) ln probability [nats].
-    """
-    if counts.max(initial=0.0) < _LARGEST_PLAIN_COUNT:
-        from scipy import special
-
-        with np.errstate(divide="ignore"):
-            logs = np.where(counts > 0.0, np.log(expected), 0.0)
-        plain = counts * logs - expected - special.gammaln(counts + 1.0)
-    else:
-        plain = ln_poisson(counts, expected)
-    if variance is None:
-        return plain
-    noisy = (variance > 0.0) & (expected > 0.0)
-    t, v = np.where(noisy, expected, 1.0), np.where(noisy, variance, 1.0)
-    return np.where(noisy, ln_negative_binomial(counts + np.zeros_like(t), t, v), plain)
 
 
 def compile_model(analysis: Analysis, hypothesis: str) -> Model:
@@ -268,47 +203,23 @@ def compile_model(analysis: Analysis, hypothesis: str) -> Model:
     Raises:
         InputError: if the analysis has no such hypothesis.
     """
-    signal = set(analysis.signal_parameters(hypothesis))
-    strengths = _strengths(analysis.processes_of(hypothesis))
+    coordinates = coordinates_of(analysis, hypothesis)
     held = analysis.held_parameters(hypothesis)
-    coordinates = [
-        _coordinate(analysis.parameter(name), name in signal, name in strengths)
-        for name in analysis.parameters_used(hypothesis)
-    ]
-    coordinates += [
-        Coordinate(name, "", "source", _SOURCE_PRIOR) for name in analysis.sources_used(hypothesis)
-    ]
     positions = {coordinate.name: index for index, coordinate in enumerate(coordinates)}
     parts, overall = assemble(analysis, hypothesis, positions, held)
     bins = sum(region.table.binning.number for region in analysis.regions)
     counts = [region.table.observed for region in analysis.regions]
     present = [count for count in counts if count is not None]
     observed = np.concatenate(present) if len(present) == len(counts) else None
-    model = Model(analysis, hypothesis, tuple(coordinates), parts, overall, observed, bins, np.zeros(bins))
+    model = Model(analysis, hypothesis, coordinates, parts, overall, observed, bins, np.zeros(bins))
     return _with_spare(model)
-
-
-def _coordinate(parameter: Parameter, is_signal: bool, is_strength: bool) -> Coordinate:
-    role = "signal" if is_signal else "nuisance"
-    return Coordinate(parameter.name, parameter.unit, role, parameter.prior, is_signal and is_strength)
-
-
-def _strengths(processes: tuple[Process, ...]) -> set[str]:
-    """Return the names that only multiply yields: in `factors` and in no yield or shape."""
-    factors = {f for process in processes for f in process.factors if isinstance(f, str)}
-    elsewhere = {
-        name
-        for process in processes
-        for contribution in process.regions.values()
-        for name in contribution.parameters
-    }
-    return factors - elsewhere
 
 
 def _with_spare(model: Model) -> Model:
     """Return the model with the events that regions give to bins which nothing can fill."""
     wanted = [
-        np.full(region.table.binning.number, region.empty_bin_events or 0.0) for region in model.analysis.regions
+        np.full(region.table.binning.number, region.empty_bin_events or 0.0)
+        for region in model.analysis.regions
     ]
     asked = np.concatenate(wanted)
     if not asked.any():

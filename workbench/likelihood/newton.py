@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -11,6 +11,7 @@ from workbench.likelihood.objective import Objective
 
 Array = npt.NDArray[np.float64]
 Flags = npt.NDArray[np.bool_]
+Indices = npt.NDArray[np.intp]
 
 _LONGEST_STEP = 4.0
 
@@ -48,15 +49,15 @@ def maximise(
 ) -> Maxima:
     """Return the maxima reached from a batch of starting points.
 
-    Each iteration solves -H step = gradient over the coordinates that move and are not pressed against the end
-    of their range; where -H is not positive definite its eigenvalues are made so. A step that lowers the
+    Each iteration solves -H step = gradient over the coordinates that move and are not pressed against the
+    end of their range; where -H is not positive definite its eigenvalues are made so. A step that lowers the
     value is shortened until it does not. The expected further gain gradient.step/2 decides when to stop.
 
     Args:
         objective: what is maximised.
         start: (batch, coordinate) starting points.
         counts: (bin,) or (batch, bin) counted events [events].
-        moving: (coordinate,) which coordinates may move; all by default.
+        moving: (coordinate,) or (batch, coordinate) which coordinates may move; all by default.
         tolerance: expected further gain at which a point is final [nats].
         most: iterations at the most.
         scale: (coordinate,) a length for each coordinate, to bound steps; 1 by default.
@@ -64,21 +65,18 @@ def maximise(
     Returns:
         The maxima; a point that did not converge is the best one found.
     """
-    size = start.shape[1]
-    free = np.arange(size) if moving is None else np.flatnonzero(moving)
-    unit = np.ones(size) if scale is None else scale
-    points = np.clip(start, objective.low, objective.high)
+    box = _Box.around(objective, start, moving, scale)
+    points = np.clip(start, box.low, box.high)
     values, gradients, hessians = objective.derivatives(points, counts)
-    converged = np.zeros(len(points), dtype=bool)
     shrink = np.ones(len(points))
-    steps, gain = _steps(objective, points, gradients, hessians, free, unit)
+    steps, gain = _steps(box, points, gradients, hessians)
+    converged = (gain <= tolerance) & np.isfinite(values)
     active = np.flatnonzero(gain > tolerance)
-    converged[gain <= tolerance] = True
     for _ in range(most):
         if active.size == 0:
             break
         wanted = points[active] + shrink[active, None] * steps[active]
-        trial = np.clip(wanted, objective.low, objective.high)
+        trial = np.clip(wanted, box.low, box.high)
         rows = counts if counts.ndim == 1 else counts[active]
         value, gradient, hessian = objective.derivatives(trial, rows)
         better = value >= values[active] - 1e-10 * (1.0 + np.abs(values[active]))
@@ -90,38 +88,71 @@ def maximise(
         shrink[moved] = 1.0
         if moved.size:
             steps[moved], gain[moved] = _steps(
-                objective, points[moved], gradients[moved], hessians[moved], free, unit
+                box.of(moved), points[moved], gradients[moved], hessians[moved]
             )
-        converged[moved] = gain[moved] <= tolerance
+        converged[moved] = (gain[moved] <= tolerance) & np.isfinite(values[moved])
         active = active[~converged[active] & (shrink[active] > 1e-9)]
     return Maxima(points, values, np.where(converged, gain, 0.0), gradients, hessians, converged)
 
 
-def _steps(
-    objective: Objective, points: Array, gradients: Array, hessians: Array, free: npt.NDArray[np.intp], unit: Array
-) -> tuple[Array, Array]:
+@dataclass(frozen=True, slots=True, eq=False)
+class _Box:
+    """Where points may go.
+
+    Attributes:
+        low, high: (coordinate,) ends of the allowed box.
+        free: indices of the coordinates that move in any row.
+        held: (batch, free) True where a row holds one of these; None where none does.
+        unit: (coordinate,) a length for each coordinate.
+    """
+
+    low: Array
+    high: Array
+    free: Indices
+    held: Flags | None
+    unit: Array
+
+    @classmethod
+    def around(cls, objective: Objective, start: Array, moving: Flags | None, scale: Array | None) -> _Box:
+        """Return the box of an objective for a batch of starting points."""
+        size = start.shape[1]
+        held = None
+        free = np.arange(size)
+        if moving is not None:
+            free = np.flatnonzero(moving if moving.ndim == 1 else moving.any(axis=0))
+            held = None if moving.ndim == 1 else ~moving[:, free]
+        unit = np.ones(size) if scale is None else scale
+        return cls(objective.low, objective.high, free, held, unit)
+
+    def of(self, rows: Indices) -> _Box:
+        """Return the box of some rows."""
+        return self if self.held is None else replace(self, held=self.held[rows])
+
+
+def _steps(box: _Box, points: Array, gradients: Array, hessians: Array) -> tuple[Array, Array]:
     """Return (batch, coordinate) Newton steps and the (batch,) gain each promises."""
     steps = np.zeros_like(points)
+    free = box.free
     if free.size == 0:
         return steps, np.zeros(len(points))
-    with np.errstate(invalid="ignore"):
-        gradient = np.nan_to_num(gradients[:, free])
-        curvature = np.nan_to_num(-hessians[:, free[:, None], free[None, :]])
+    low, high, unit = box.low[free], box.high[free], box.unit[free]
+    gradient = np.nan_to_num(gradients[:, free])
+    curvature = np.nan_to_num(-hessians[:, free[:, None], free[None, :]])
     at = points[:, free]
-    pressed = ((at <= objective.low[free]) & (gradient < 0.0)) | (
-        (at >= objective.high[free]) & (gradient > 0.0)
-    )
+    pressed = ((at <= low) & (gradient < 0.0)) | ((at >= high) & (gradient > 0.0))
+    if box.held is not None:
+        pressed |= box.held
     gradient = np.where(pressed, 0.0, gradient)
     if pressed.any():
         keep = ~pressed
         curvature = curvature * keep[:, :, None] * keep[:, None, :]
         diagonal = np.arange(free.size)
-        curvature[:, diagonal, diagonal] += np.where(pressed, 1.0 / unit[free] ** 2, 0.0)
-    step = solve_definite(curvature, gradient, unit[free])
-    longest = np.abs(step / unit[free]).max(axis=1)
+        curvature[:, diagonal, diagonal] += np.where(pressed, 1.0 / unit**2, 0.0)
+    step = solve_definite(curvature, gradient, unit)
+    longest = np.abs(step / unit).max(axis=1)
     step *= np.minimum(1.0, _LONGEST_STEP / np.maximum(longest, 1e-300))[:, None]
     steps[:, free] = step
-    reach = np.clip(at + step, objective.low[free], objective.high[free]) - at
+    reach = np.clip(at + step, low, high) - at
     gain = np.maximum(
         0.5 * np.einsum("na,na->n", gradient, step), 0.5 * np.einsum("na,na->n", gradient, reach)
     )

@@ -71,7 +71,8 @@ class StandardObjective:
 
 
 def _half_square(points: Array) -> Array:
-    return 0.5 * np.einsum("na,na->n", points, points) + 0.5 * points.shape[1] * np.log(2.0 * np.pi)
+    squares = np.einsum("na,na->n", points, points)
+    return np.asarray(0.5 * squares + 0.5 * points.shape[1] * np.log(2.0 * np.pi))
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -4,9 +4,9 @@ Expected events of a part in bin i:
 
     T_i = amplitude(x) core_i(x) exp( sum over sources of [ l_ik z_k + q_ik g(z_k) ] )
 
-with l = (u - d)/2, q = (u + d)/2, u and d the ln factors of the source at z = +1 and -1, and g the smooth even
-curve of `hypotheses.uncertainties`. Sources whose effect is the same in all bins are kept for all parts together
-(`Sources`), the others with their part.
+with l = (u - d)/2, q = (u + d)/2, u and d the ln factors of the source at z = +1 and -1, and g the smooth
+even curve of `hypotheses.uncertainties`. Sources whose effect is the same in all bins are kept for all parts
+together (`Sources`), the others with their part.
 """
 
 from __future__ import annotations
@@ -23,6 +23,8 @@ from workbench.hypotheses.uncertainties import curvature
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 Formula = Callable[[Mapping[str, Jet]], Jet]
+
+_LARGEST_EXPONENT = 230.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,19 +60,24 @@ class Sources:
         z = x[self.indices]
         exponent = z.T @ self.linear
         if self.is_bent:
-            exponent += curvature(z)[0].T @ self.bend
-        return np.asarray(np.exp(exponent))
+            exponent += curvature(z).value.T @ self.bend
+        return _power(exponent)
 
     def expanded(self, x: Array) -> tuple[Array, Array, Array]:
         """Return factors (batch, row) with slopes and bends (batch, source, row) of their ln in each z."""
         z = x[self.indices]
         if not self.is_bent:
             slopes = np.broadcast_to(self.linear, (x.shape[1], *self.linear.shape))
-            return np.exp(z.T @ self.linear), slopes, np.zeros((1, 1, 1))
+            return _power(z.T @ self.linear), slopes, np.zeros((1, 1, 1))
         g, first, second = curvature(z)
-        factors = np.exp(z.T @ self.linear + g.T @ self.bend)
+        factors = _power(z.T @ self.linear + g.T @ self.bend)
         slopes = self.linear + first.T[:, :, None] * self.bend
         return factors, slopes, second.T[:, :, None] * self.bend
+
+
+def _power(exponent: Array) -> Array:
+    """Return e to the power, held at a huge number whose square, times a count, is still finite."""
+    return np.asarray(np.exp(np.minimum(exponent, _LARGEST_EXPONENT)))
 
 
 _NO_FIRST, _NO_SECOND = np.zeros((0, 1, 1)), np.zeros((0, 0, 1, 1))
@@ -109,7 +116,7 @@ class Stem:
         return np.atleast_2d(self.amplitude(arguments).value[..., None] * core)
 
     def expanded(self, seeds: Seeds) -> tuple[Array, Array, Array]:
-        """Return events (batch, bin), first (m, batch, bin) and second (m, m, batch, bin) local derivatives."""
+        """Return events (batch, bin) with (m, batch, bin) first and (m, m, batch, bin) second derivatives."""
         if not self.local:
             return self.value(seeds), _NO_FIRST, _NO_SECOND
         arguments = self._arguments(seeds, derivatives=True)

@@ -31,7 +31,8 @@ class Fitted:
         value: fitted value.
         error: from the second derivatives; None where it means nothing (at a limit, flat).
         low, high: asymmetric errors (low negative), None where there is none on that side or not asked for.
-        pull: (value - prior centre)/prior sd for sources and nuisance parameters; None for signal parameters.
+        pull: (value - prior mean)/prior sd of sources and nuisance parameters, of ln value where the prior is
+            lognormal; None for signal parameters and flat priors.
         contraction: 1 - (error/prior sd)**2; None where error is None or the parameter is a signal parameter.
         at_limit: True when the value is at an end of its range.
     """
@@ -58,7 +59,8 @@ class Fit:
         ln_likelihood: ln p of the counts at the best point [nats], penalties not included.
         penalised: the same with penalties, what was maximised [nats].
         fitted: every free parameter and source.
-        correlations: (parameter, parameter) correlation matrix in the order of `fitted`; nan-free, 0 where an error is None.
+        correlations: (parameter, parameter) correlation matrix in the order of `fitted`; nan-free, 0 where an
+            error is None.
         expected: (bin,) expected events of the whole hypothesis at the best point, all regions in order.
         by_process: process name to (bin,) expected events.
         notes: sentences on what stands out (flat directions and degenerate pairs by name).

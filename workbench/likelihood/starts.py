@@ -7,7 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.likelihood.model import Coordinate, Model
+from workbench.likelihood.coordinates import Coordinate
+from workbench.likelihood.model import Model
 from workbench.likelihood.newton import maximise
 from workbench.likelihood.objective import FitObjective, fit_objective
 
@@ -27,7 +28,8 @@ class Searcher:
         background: the same with every signal process left out.
         centre: (coordinate,) central values of all parameters.
         scale: (coordinate,) a length for each coordinate.
-        grid: (start, coordinate) candidate points over the signal coordinates, nuisance parameters at the centre.
+        grid: (start, coordinate) candidate points over the signal coordinates, nuisance parameters at the
+            centre.
         events: (start, bin) events that each candidate adds to the background.
     """
 
@@ -41,8 +43,8 @@ class Searcher:
     def starts(self, counts: Array) -> tuple[Array, Indices]:
         """Return starting points for each row of counts.
 
-        The background is fitted to each row; the gain of every candidate is then judged by the linear response
-        of the residuals, what nuisance parameters can absorb taken out.
+        The background is fitted to each row; the gain of every candidate is then judged by the linear
+        response of the residuals, what nuisance parameters can absorb taken out.
 
         Args:
             counts: (batch, bin) counts [events].
@@ -52,7 +54,11 @@ class Searcher:
         """
         model = self.objective.model
         fitted = maximise(
-            self.background, np.repeat(self.centre[None], len(counts), axis=0), counts, scale=self.scale, most=25
+            self.background,
+            np.repeat(self.centre[None], len(counts), axis=0),
+            counts,
+            scale=self.scale,
+            most=25,
         )
         rows = np.arange(len(counts))
         plain = fitted.points.copy()
@@ -82,7 +88,9 @@ class Searcher:
         nuisance = np.setdiff1d(np.arange(model.size), model.signal)
         response = slope[0, nuisance].T * self.scale[nuisance]
         expected, variance = model.expected(model.natural_seeds(points))
-        typical = np.maximum(expected.mean(axis=0) + (0.0 if variance is None else variance.mean(axis=0)), 0.5)
+        typical = np.maximum(
+            expected.mean(axis=0) + (0.0 if variance is None else variance.mean(axis=0)), 0.5
+        )
         weighted = response / typical[:, None]
         stiffness = response.T @ weighted + np.eye(nuisance.size)
         projected = self.events / typical
@@ -154,7 +162,9 @@ def _candidates(model: Model, centre: Array) -> Array:
     return np.concatenate([points, *alone])
 
 
-def best_points(search: Searcher, counts: Array, tolerance: float = 1e-7) -> tuple[Array, Array, npt.NDArray[np.bool_]]:
+def best_points(
+    search: Searcher, counts: Array, tolerance: float = 1e-7
+) -> tuple[Array, Array, npt.NDArray[np.bool_]]:
     """Return the best fit of each row of counts.
 
     Args:
