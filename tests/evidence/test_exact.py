@@ -5,11 +5,11 @@ from __future__ import annotations
 from itertools import product
 
 import numpy as np
-import numpy.typing as npt
 import pytest
 from scipy import integrate, special, stats
 
 from tests.analyses import TAU, YIELD, counting, one_bin, several_bins, source, templates
+from tests.evidence.brute_force import panels
 from workbench.evidence.exact import LinearRates, linear_rates, ln_evidence, ln_moment
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis, Parameter
@@ -17,8 +17,6 @@ from workbench.hypotheses.priors import Exponential, Gamma, HalfNormal, Prior, U
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.shapes import Flat
 from workbench.likelihood.model import compile_model
-
-Array = npt.NDArray[np.float64]
 
 
 def ln_bayes_factor(analysis: Analysis) -> float:
@@ -58,13 +56,6 @@ def test_a_known_background_is_the_sum_over_what_is_signal(n: int, b: float) -> 
     found = weigh(counting(n, b, Gamma(shape=2.5, rate=2.0))).evidences[1]
     assert found.ln_evidence == pytest.approx(exact, abs=1e-11)
     assert (found.error, found.established) == (0.0, True)
-
-
-def panels(*ends: float) -> tuple[Array, Array]:
-    """Return nodes and weights of twenty-point Gauss-Legendre rules between neighbouring ends."""
-    nodes, weights = np.polynomial.legendre.leggauss(20)
-    low, half = np.array(ends[:-1])[:, None], 0.5 * np.diff(ends)[:, None]
-    return (low + half * (1.0 + nodes)).ravel(), (half * weights).ravel()
 
 
 @pytest.mark.parametrize(("n_on", "n_off"), [(0, 0), (4, 1), (1, 9), (12, 20)])
