@@ -15,11 +15,15 @@ from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
+from scipy import special
+
+from workbench.evidence.ridge import Ridge
 
 Array = npt.NDArray[np.float64]
 
 _STEP = 1.5
 _NEGLIGIBLE = 2e-3
+_BEYOND = 0.55
 _LARGEST_LOG_SCALE = 0.7
 
 
@@ -32,11 +36,38 @@ class Bending:
             first.
         third: (nuisance, nuisance, nuisance) K_abc.
         fourth: (nuisance, nuisance) K_aabb.
+        ridge: nodes along the first direction, where third derivatives do not describe it; else None.
     """
 
     axes: Array
     third: Array
     fourth: Array
+    ridge: Ridge | None = None
+
+    @property
+    def outward(self) -> Array:
+        """Return the inverse of the whitening."""
+        return np.asarray(np.linalg.inv(self.axes))
+
+    @property
+    def bent_most(self) -> int:
+        """Return the direction whose ridge curves or leans most."""
+        return int(np.argmax(self._bends))
+
+    @property
+    def is_beyond_third_order(self) -> bool:
+        """Return True where third derivatives describe the most bent direction poorly."""
+        return bool(self._bends.max() > _BEYOND)
+
+    @property
+    def _bends(self) -> Array:
+        return np.sqrt(np.einsum("jjk,jjk->j", self.third, self.third))
+
+    def led_by(self, direction: int) -> Bending:
+        """Return the same with one direction moved to the front."""
+        order = np.array([direction, *(i for i in range(len(self.axes)) if i != direction)])
+        third = self.third[np.ix_(order, order, order)]
+        return Bending(self.axes[order], third, self.fourth[np.ix_(order, order)], self.ridge)
 
     @property
     def ln_correction(self) -> float:
@@ -48,21 +79,25 @@ class Bending:
             Z. Shun, P. McCullagh, Laplace approximation of high dimensional integrals, J. R. Stat. Soc. B 57
             (1995) 749; from memory. In one dimension K_4/8 + 5 K_3^2/24.
         """
-        return float(sum(self._terms))
+        along = 0.0 if self.ridge is None else self.ridge.ln_correction
+        return along + float(sum(self._terms))
 
     @property
     def doubt(self) -> float:
         """Return what later orders may add: a third of the size of this one, more once it is large."""
         size = sum(abs(term) for term in self._terms)
-        return float(size * (0.3 + 0.5 * min(1.0, size)))
+        along = 0.0 if self.ridge is None else self.ridge.error
+        return along + float(size * (0.3 + 0.5 * min(1.0, size)))
 
     @property
     def _terms(self) -> tuple[float, float, float]:
-        traces = np.einsum("aab->b", self.third)
+        first = 0 if self.ridge is None else 1  # what runs along the ridge is integrated there
+        third, fourth = self.third[first:, first:, first:], self.fourth[first:, first:]
+        traces = np.einsum("aab->b", third)
         return (
-            float(self.fourth.sum()) / 8.0,
+            float(fourth.sum()) / 8.0,
             float((traces**2).sum()) / 8.0,
-            float((self.third**2).sum()) / 12.0,
+            float((third**2).sum()) / 12.0,
         )
 
 
@@ -143,6 +178,41 @@ class TriangularMap:
         return mean, np.clip(ln_scale, -_LARGEST_LOG_SCALE, _LARGEST_LOG_SCALE)
 
 
-def following(third: Array) -> TriangularMap:
-    """Return the map that follows third derivatives (nuisance, nuisance, nuisance)."""
-    return TriangularMap(np.where(np.abs(third) > _NEGLIGIBLE, third, 0.0))
+@dataclass(frozen=True, slots=True, eq=False)
+class RidgeMap:
+    """A map of standard-normal draws that follows a ridge, and the bends across it.
+
+    Attributes:
+        ridge: nodes along the first coordinate.
+        rest: the map of the other coordinates, around the ridge.
+    """
+
+    ridge: Ridge
+    rest: TriangularMap
+
+    def forward(self, normal: Array) -> Array:
+        """Return (draw, nuisance) whitened draws from standard-normal ones."""
+        position = self.ridge.place(special.ndtr(normal[:, 0]))
+        centre, root = self.ridge.across(position)
+        offset = np.linalg.solve(root, self.rest.forward(normal[:, 1:])[..., None])[..., 0]
+        return np.concatenate([position[:, None], centre + offset], axis=1)
+
+    def inverse(self, y: Array) -> tuple[Array, Array]:
+        """Return (draw, nuisance) standard-normal draws that map to y, and (draw,) ln |dy/de|."""
+        share, density = self.ridge.share(y[:, 0])
+        along = special.ndtri(np.clip(share, 1e-300, 1.0 - 1e-16))
+        centre, root = self.ridge.across(y[:, 0])
+        across = (root @ (y[:, 1:] - centre)[..., None])[..., 0]
+        normal, ln_volume = self.rest.inverse(across)
+        ln_density = np.log(np.maximum(density, 1e-300))
+        ln_volume = ln_volume - np.log(np.einsum("naa->na", root)).sum(axis=1)
+        ln_volume += -0.5 * along**2 - 0.5 * np.log(2.0 * np.pi) - ln_density
+        return np.concatenate([along[:, None], normal], axis=1), ln_volume
+
+
+def following(bend: Bending) -> TriangularMap | RidgeMap:
+    """Return the map that follows a bending: its third derivatives, and its ridge where it has one."""
+    third = np.where(np.abs(bend.third) > _NEGLIGIBLE, bend.third, 0.0)
+    if bend.ridge is None:
+        return TriangularMap(third)
+    return RidgeMap(bend.ridge, TriangularMap(third[1:, 1:, 1:]))

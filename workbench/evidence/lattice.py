@@ -42,7 +42,9 @@ def _generator(points: int) -> tuple[int, ...]:
     return tuple(vector)
 
 
-def shifted_lattices(points: int, dimensions: int, scrambles: int, generator: np.random.Generator) -> Array:
+def shifted_lattices(
+    points: int, dimensions: int, scrambles: int, generator: np.random.Generator, lots: int = 0
+) -> Array:
     """Return independent randomised point sets, each spread evenly over the unit cube.
 
     A lattice is shifted at random and folded by the tent map, which makes smooth integrands that are not
@@ -53,9 +55,11 @@ def shifted_lattices(points: int, dimensions: int, scrambles: int, generator: np
         dimensions: coordinates of a point.
         scrambles: number of independent sets.
         generator: where the shifts come from.
+        lots: how many more dimensions to stratify at random: for choices, whose shares come out right in each
+            set, and which a lattice's few generators would tie to each other.
 
     Returns:
-        (scramble, point, dimension) numbers strictly inside (0, 1).
+        (scramble, point, dimension + lots) numbers strictly inside (0, 1).
 
     Source:
         I. Sloan, S. Joe, Lattice Methods for Multiple Integration (1994); tent map: F. Hickernell (2002);
@@ -66,10 +70,9 @@ def shifted_lattices(points: int, dimensions: int, scrambles: int, generator: np
     base = (np.arange(points)[:, None] * vector[None, :] % points) / points
     shifts = generator.random((scrambles, 1, spread))
     folded = 1.0 - np.abs(2.0 * ((base[None] + shifts) % 1.0) - 1.0)
-    if dimensions > spread:
-        order = generator.permuted(
-            np.tile(np.arange(points)[None, :, None], (scrambles, 1, dimensions - spread)), axis=1
-        )
+    loose = dimensions - spread + lots
+    if loose:
+        order = generator.permuted(np.tile(np.arange(points)[None, :, None], (scrambles, 1, loose)), axis=1)
         rest = (order + generator.random(order.shape)) / points
         folded = np.concatenate([folded, rest], axis=2)
     return np.asarray(np.clip(folded, 1e-12, 1.0 - 1e-12))

@@ -59,3 +59,25 @@ def draw(nodes: Array, heights: Array, u: Array) -> Array:
     f0, f1 = f[row, segment], f[row, segment + 1]
     root = np.sqrt(np.maximum(f0 * f0 + 2.0 * rest * (f1 - f0) / width, 0.0))
     return np.asarray(left + np.clip(2.0 * rest / np.maximum(f0 + root, 1e-300), 0.0, width))
+
+
+def distribution(nodes: Array, heights: Array, x: Array) -> tuple[Array, Array]:
+    """Return distribution function and density of the density that is linear between nodes.
+
+    Args:
+        nodes: (node,) ascending positions.
+        heights: (node,) density at the nodes, in any unit; >= 0.
+        x: (draw,) positions.
+
+    Returns:
+        (draw,) distribution function in [0, 1] and (draw,) normalised density; 0 outside the nodes.
+    """
+    area = 0.5 * (heights[1:] + heights[:-1]) * np.diff(nodes)
+    upto = np.concatenate([[0.0], np.cumsum(area)])
+    below, share = between(nodes, x)
+    left, right = heights[below], heights[below + 1]
+    density = left + share * (right - left)
+    width = nodes[below + 1] - nodes[below]
+    within = share * width * 0.5 * (left + density)
+    inside = (x >= nodes[0]) & (x <= nodes[-1])
+    return (upto[below] + within) / upto[-1], np.where(inside, density, 0.0) / upto[-1]

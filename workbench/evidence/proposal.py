@@ -1,10 +1,10 @@
 """The mixture that draws come from, built on the quadrature's nodes.
 
-Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear
-between the nodes' heights (or, one time in ten, from their prior, so that a mode the search missed shows in
-the weights), then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along
-the third derivatives and shifted along the exact response of its maximum to the signal coordinates; one draw
-in ten from a wider one.
+Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear between
+the nodes' heights (or, one time in nine, from their prior, so that a mode the search missed shows in the weights),
+then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along the third derivatives
+or the ridge, shifted along the exact response of its maximum to the signal coordinates, its tails a little heavier
+than normal.
 """
 
 from __future__ import annotations
@@ -18,16 +18,17 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.evidence.axes import Axis, standard
-from workbench.evidence.bending import TriangularMap, following
+from workbench.evidence.bending import RidgeMap, TriangularMap, following
 from workbench.evidence.piecewise import between, draw, hat_areas
 from workbench.evidence.quadrature import Grid
+from workbench.evidence.stretching import Stretch, stretch_for
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 Flags = npt.NDArray[np.bool_]
 
-_FROM_PRIOR = 0.1
-_WIDE_SHARE = 0.1
+# One draw in nine, so that both kinds come in whole lattices of powers of 2.
+PRIOR_SHARE = 1.0 / 9.0
 _LN_2PI = float(np.log(2.0 * np.pi))
 _GATHERED = 16
 
@@ -47,19 +48,29 @@ class Proposal:
 
     grid: Grid
     whitening: Array
-    map: TriangularMap
+    map: TriangularMap | RidgeMap
     centres: Array
     responses: Array
     places: Array
 
     @property
     def dimensions(self) -> int:
-        """Return how many uniform numbers a draw takes."""
-        return 2 * len(self.grid.axes) + 4 + int(self.centres.shape[1])
+        """Return how many uniform numbers place a draw."""
+        return len(self.grid.axes) + 1 + int(self.centres.shape[1])
+
+    @property
+    def lots(self) -> int:
+        """Return how many uniform numbers choose between a draw's components."""
+        return len(self.grid.axes) + 1
 
     @cached_property
-    def _widening(self) -> float:
-        return float(1.0 + 1.0 / np.sqrt(max(1, self.centres.shape[1])))
+    def prior_share(self) -> float:
+        """Return the share of draws whose signal coordinates come from their prior; 0 without such coordinates."""
+        return PRIOR_SHARE if self.places.shape[1] else 0.0
+
+    @cached_property
+    def _stretch(self) -> Stretch:
+        return stretch_for(self.centres.shape[1])
 
     @cached_property
     def _ln_volume(self) -> Array:
@@ -93,25 +104,28 @@ class Proposal:
         sizes = [axis.nodes.size for axis in self.grid.axes]
         return np.array([int(np.prod(sizes[i + 1 :])) for i in range(len(sizes))], dtype=np.intp)
 
-    def draw(self, cube: Array) -> Array:
-        """Return (draw, coordinate) points from (draw, dimension) uniform numbers.
+    def draw(self, cube: Array, from_prior: Flags) -> Array:
+        """Return (draw, coordinate) points from (draw, dimension + lots) uniform numbers.
 
-        Positions and noise take the leading, evenest dimensions; choices between components the last ones.
+        Args:
+            cube: positions and noise in the leading, evenest dimensions, choices between nodes in the last ones.
+            from_prior: (draw,) True where the signal coordinates come from their prior.
+
+        Returns:
+            (draw, coordinate) standard coordinates.
         """
         grid, integrand = self.grid, self.grid.integrand
         outer, nuisance = len(grid.axes), integrand.nuisance.size
         position, noise, lots = np.split(cube, [outer + 1, outer + 1 + nuisance], axis=1)
-        from_prior = lots[:, 0] < _FROM_PRIOR
-        p, column = self._draw_outer(position[:, :outer], lots[:, 3:], from_prior)
+        p, column = self._draw_outer(position[:, :outer], lots[:, 1:], from_prior)
         points = np.zeros((len(cube), integrand.model.size))
         points[:, list(integrand.outer)] = standard(p)
         node = column
         if integrand.inner is not None:
-            t, place = self._draw_inner(column, position[:, outer], lots[:, 2], from_prior)
+            t, place = self._draw_inner(column, position[:, outer], lots[:, 0], from_prior)
             points[:, integrand.inner] = t
             node = column * grid.columns.inner.shape[1] + place
-        scale = np.where(lots[:, 1] < _WIDE_SHARE, self._widening, 1.0)
-        bent = self.map.forward(special.ndtri(noise) * scale[:, None])
+        bent = self.map.forward(self._stretch.forward(special.ndtri(noise)))
         moved = _grouped(self._unwhitening, node, bent)
         points[:, integrand.nuisance] = self._centre(node, self._signal(points)) + moved
         return points
@@ -209,7 +223,7 @@ class Proposal:
         """Return the nodes of one neighbouring column beside each draw, with the (draw,) weight of each."""
         columns, index = self.grid.columns, self.grid.integrand.inner
         if index is None:
-            return [(column, (1.0 - _FROM_PRIOR) * outer_density + _FROM_PRIOR * hat)]
+            return [(column, (1.0 - self.prior_share) * outer_density + self.prior_share * hat)]
         count = columns.inner.shape[1]
         t, inner, step = points[:, index], columns.inner[column], self._steps[column]
         area = self._heights.sum(axis=1)[column] * step
@@ -221,7 +235,9 @@ class Proposal:
         for side, near in ((0, 1.0 - share), (1, share)):
             place = below + side
             drawn = fade * self._heights[column, place] / area
-            weight = near * ((1.0 - _FROM_PRIOR) * outer_density * drawn + _FROM_PRIOR * hat * prior)
+            weight = near * (
+                (1.0 - self.prior_share) * outer_density * drawn + self.prior_share * hat * prior
+            )
             found.append((column * count + place, weight))
         return found
 
@@ -230,13 +246,8 @@ class Proposal:
         nuisance = self.grid.integrand.nuisance
         offset = points[:, nuisance] - self._centre(node, signal)
         normal, ln_stretch = self.map.inverse(_grouped(self.whitening, node, offset))
-        square = np.einsum("na,na->n", normal, normal)
-        wide = self._widening
-        narrow = (1.0 - _WIDE_SHARE) * np.exp(-0.5 * square)
-        broad = _WIDE_SHARE * wide ** (-nuisance.size) * np.exp(-0.5 * square / wide**2)
-        return np.asarray(
-            (narrow + broad) * np.exp(self._ln_volume[node] - ln_stretch - 0.5 * nuisance.size * _LN_2PI)
-        )
+        ln_law = self._stretch.ln_density(normal) + self._ln_volume[node] - ln_stretch
+        return np.asarray(np.exp(ln_law))
 
 
 def propose(grid: Grid) -> Proposal:
@@ -261,12 +272,11 @@ def propose(grid: Grid) -> Proposal:
     roots = _upper_roots(block)
     bend = grid.bending
     if bend is None:
-        return Proposal(
-            grid, roots, following(np.zeros(3 * (nuisance.size,))), points[:, nuisance], responses, places
-        )
+        straight = TriangularMap(np.zeros(3 * (nuisance.size,)))
+        return Proposal(grid, roots, straight, points[:, nuisance], responses, places)
     best = int(np.argmax(columns.ln_height))
     turn = np.linalg.solve(roots[best].T, bend.axes.T).T
-    return Proposal(grid, turn @ roots, following(bend.third), points[:, nuisance], responses, places)
+    return Proposal(grid, turn @ roots, following(bend), points[:, nuisance], responses, places)
 
 
 def _upper_roots(matrices: Array) -> Array:

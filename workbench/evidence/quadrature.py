@@ -11,6 +11,7 @@ import numpy.typing as npt
 from workbench.evidence.axes import Axis, lay_out, standard
 from workbench.evidence.bending import Bending, bending
 from workbench.evidence.nodes import Columns, Integrand
+from workbench.evidence.ridge import Turned, follow
 from workbench.evidence.search import survey
 from workbench.likelihood.model import Model
 from workbench.likelihood.objective import StandardObjective
@@ -175,9 +176,7 @@ def _extended(
     return columns.joined(integrand.columns(wanted[new])).take(order)
 
 
-def _summed(
-    integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend: Bending | None
-) -> Grid:
+def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend: Bending | None) -> Grid:
     top, field = _field(axes, columns)
     total = float(_contract(field, [axis.weights for axis in axes]))
     share = field / field.sum()
@@ -215,4 +214,9 @@ def _bending(integrand: Integrand, columns: Columns) -> Bending | None:
     hessian = columns.hessians[best][block]
     if np.linalg.eigvalsh(-hessian).min() <= 0.0:
         return None
-    return bending(hessians_at, hessian)
+    bend = bending(hessians_at, hessian)
+    if not bend.is_beyond_third_order:
+        return bend
+    bend = bend.led_by(bend.bent_most)
+    turned = Turned(objective, centre, nuisance, bend.outward)
+    return replace(bend, ridge=follow(turned, integrand.counts, bend.third[1:, 0, 0]))

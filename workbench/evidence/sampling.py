@@ -9,7 +9,7 @@ import numpy.typing as npt
 
 from workbench.evidence.lattice import shifted_lattices
 from workbench.evidence.pareto import k_hat
-from workbench.evidence.proposal import propose
+from workbench.evidence.proposal import Proposal, propose
 from workbench.evidence.quadrature import Grid
 from workbench.likelihood.objective import values_at_once
 
@@ -52,7 +52,8 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
     Args:
         grid: the quadrature's nodes.
         seed: where the random shifts come from.
-        draws_a_scramble: draws in each of the 16 independent scrambles; a power of 2.
+        draws_a_scramble: draws in each of the 16 independent scrambles, those from the signal coordinates' prior
+            (one for eight) not counted; a power of 2.
 
     Returns:
         The weighted sample with ln evidence, standard error and k-hat.
@@ -63,8 +64,7 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
     proposal = propose(grid)
     model, counts = grid.integrand.model, grid.integrand.counts
     generator = np.random.default_rng(seed)
-    cube = shifted_lattices(draws_a_scramble, proposal.dimensions, SCRAMBLES, generator)
-    points = proposal.draw(cube.reshape(-1, proposal.dimensions))
+    points = _drawn(proposal, generator, draws_a_scramble)
     rows = values_at_once(model)
     ln_likelihood = np.concatenate(
         [
@@ -74,6 +74,17 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
     )
     ln_weights = ln_likelihood + _ln_prior(grid, points) - proposal.ln_density(points)
     return _summary(points, np.nan_to_num(ln_weights, nan=-np.inf, posinf=-np.inf))
+
+
+def _drawn(proposal: Proposal, generator: np.random.Generator, number: int) -> Array:
+    """Return (draw, coordinate) points, scramble after scramble, each with its due share from the prior."""
+    sizes = (number, number // 8) if proposal.prior_share else (number,)
+    cubes = [
+        shifted_lattices(size, proposal.dimensions, SCRAMBLES, generator, proposal.lots) for size in sizes
+    ]
+    from_prior = np.repeat([False, True][: len(sizes)], sizes)
+    cube = np.concatenate(cubes, axis=1)
+    return proposal.draw(cube.reshape(-1, cube.shape[-1]), np.tile(from_prior, SCRAMBLES))
 
 
 def _ln_prior(grid: Grid, points: Array) -> Array:
