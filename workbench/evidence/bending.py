@@ -61,7 +61,7 @@ class Bending:
 
     @property
     def _bends(self) -> Array:
-        return np.sqrt(np.einsum("jjk,jjk->j", self.third, self.third))
+        return np.asarray(np.sqrt(np.einsum("jjk,jjk->j", self.third, self.third)))
 
     def led_by(self, direction: int) -> Bending:
         """Return the same with one direction moved to the front."""
@@ -210,9 +210,9 @@ class RidgeMap:
         return np.concatenate([along[:, None], normal], axis=1), ln_volume
 
 
-def following(bend: Bending) -> TriangularMap | RidgeMap:
-    """Return the map that follows a bending: its third derivatives, and its ridge where it has one."""
-    third = np.where(np.abs(bend.third) > _NEGLIGIBLE, bend.third, 0.0)
-    if bend.ridge is None:
-        return TriangularMap(third)
-    return RidgeMap(bend.ridge, TriangularMap(third[1:, 1:, 1:]))
+def following(third: Array, ridge: Ridge | None = None) -> TriangularMap | RidgeMap:
+    """Return the map that follows (nuisance, nuisance, nuisance) third derivatives, and perhaps a ridge."""
+    kept = np.where(np.abs(third) > _NEGLIGIBLE, third, 0.0)
+    if ridge is None:
+        return TriangularMap(kept)
+    return RidgeMap(ridge, TriangularMap(kept[1:, 1:, 1:]))

@@ -1,10 +1,10 @@
 """The mixture that draws come from, built on the quadrature's nodes.
 
-Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear between
-the nodes' heights (or, one time in nine, from their prior, so that a mode the search missed shows in the weights),
-then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along the third derivatives
-or the ridge, shifted along the exact response of its maximum to the signal coordinates, its tails a little heavier
-than normal.
+Between nodes the proposal interpolates. A draw takes its signal coordinates from the density that is linear
+between the nodes' heights (or, one time in nine, from their prior, so that a mode the search missed shows in
+the weights), then the nuisance coordinates from the law that Laplace found at a neighbouring node, bent along
+the third derivatives or the ridge, shifted along the exact response of its maximum to the signal coordinates,
+its tails a little heavier than normal.
 """
 
 from __future__ import annotations
@@ -65,7 +65,7 @@ class Proposal:
 
     @cached_property
     def prior_share(self) -> float:
-        """Return the share of draws whose signal coordinates come from their prior; 0 without such coordinates."""
+        """Return the share of draws whose signal coordinates come from their prior; 0 without any."""
         return PRIOR_SHARE if self.places.shape[1] else 0.0
 
     @cached_property
@@ -108,7 +108,7 @@ class Proposal:
         """Return (draw, coordinate) points from (draw, dimension + lots) uniform numbers.
 
         Args:
-            cube: positions and noise in the leading, evenest dimensions, choices between nodes in the last ones.
+            cube: positions and noise in the leading, evenest dimensions, choices between nodes last.
             from_prior: (draw,) True where the signal coordinates come from their prior.
 
         Returns:
@@ -276,7 +276,9 @@ def propose(grid: Grid) -> Proposal:
         return Proposal(grid, roots, straight, points[:, nuisance], responses, places)
     best = int(np.argmax(columns.ln_height))
     turn = np.linalg.solve(roots[best].T, bend.axes.T).T
-    return Proposal(grid, turn @ roots, following(bend), points[:, nuisance], responses, places)
+    return Proposal(
+        grid, turn @ roots, following(bend.third, bend.ridge), points[:, nuisance], responses, places
+    )
 
 
 def _upper_roots(matrices: Array) -> Array:

@@ -72,8 +72,7 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
         near: standard coordinates by name to start from, such as another hypothesis' mode.
 
     Returns:
-        The grid of nodes with ln evidence and error; None where the signal coordinates need more nodes than can be
-        held.
+        The grid of nodes with ln evidence and error; None where it would take more nodes than can be held.
 
     Limits:
         Nuisance coordinates far from Gaussian: the error says so, and the sampling pass corrects it.

@@ -1,7 +1,7 @@
-"""Following a curved ridge: the direction along which an integrand is farthest from its Gaussian, integrated node by node.
+"""Following a curved ridge: the direction along which an integrand is farthest from its Gaussian.
 
-At each node along that direction all other nuisance coordinates are maximised again and integrated by Laplace there, so
-that neither the ridge's curve nor its uneven height is approximated.
+At each node along that direction all other nuisance coordinates are maximised again and integrated by Laplace
+there, so that neither the ridge's curve nor its uneven height is approximated.
 """
 
 from __future__ import annotations
@@ -73,8 +73,8 @@ class Ridge:
 
     Attributes:
         nodes: (node,) evenly spaced positions.
-        ln_heights: (node,) ln of the integrand with the other coordinates integrated, relative to a Gaussian's at
-            its maximum.
+        ln_heights: (node,) ln of the integrand with the other coordinates integrated, relative to the
+            Gaussian's maximum.
         centres: (node, rest) maxima of the other whitened coordinates.
         roots: (node, rest, rest) upper-triangular R with R'R = -Hessian in them.
     """
@@ -92,7 +92,7 @@ class Ridge:
 
     @property
     def error(self) -> float:
-        """Return the error of that sum: the square of its difference to every second node's, plus the ends."""
+        """Return the error of that sum: its difference to every second node's, squared, plus the ends."""
         heights = np.exp(self.ln_heights - self.ln_heights.max())
         coarse = 2.0 * heights[::2].sum() / heights.sum() - 1.0
         return float(coarse**2 + max(heights[0], heights[-1]))

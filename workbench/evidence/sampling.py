@@ -52,8 +52,8 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
     Args:
         grid: the quadrature's nodes.
         seed: where the random shifts come from.
-        draws_a_scramble: draws in each of the 16 independent scrambles, those from the signal coordinates' prior
-            (one for eight) not counted; a power of 2.
+        draws_a_scramble: draws in each of the 16 independent scrambles, those from the signal coordinates'
+            prior (one for eight) not counted; a power of 2.
 
     Returns:
         The weighted sample with ln evidence, standard error and k-hat.

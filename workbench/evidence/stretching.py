@@ -18,8 +18,8 @@ _LN_2PI = float(np.log(2.0 * np.pi))
 class Stretch:
     """A map of a normal number to one with heavier tails, x = c sinh(asinh(z)/(1 - a)).
 
-    The scale c = 1 - 1.4 a keeps the bulk where it was, so that a normal target has nearly equal weights: their
-    relative variance is 0.27 a^2 a coordinate.
+    The scale c = 1 - 1.4 a keeps the bulk where it was, so that a normal target has nearly equal weights:
+    their relative variance is 0.27 a^2 a coordinate.
 
     Attributes:
         a: heaviness; 0 changes nothing.
