@@ -24,7 +24,8 @@ WITH_ERROR = re.compile(rf"({NUMBER}) ± ({NUMBER})")
 
 
 def read(path: Path) -> nbformat.NotebookNode:
-    return nbformat.read(path, as_version=4)  # type: ignore[no-untyped-call]  # it ships no types
+    notebook: nbformat.NotebookNode = nbformat.read(path, as_version=4)  # type: ignore[no-untyped-call]
+    return notebook
 
 
 def printed(notebook: nbformat.NotebookNode) -> str:
@@ -69,9 +70,7 @@ def test_there_are_saved_notebooks() -> None:
 @pytest.mark.filterwarnings("ignore::DeprecationWarning")
 @pytest.mark.filterwarnings("ignore::ResourceWarning")
 @pytest.mark.filterwarnings("ignore::UserWarning")
-def test_a_saved_notebook_runs_again_to_the_same_numbers_within_their_errors(
-    saved: Path, tmp_path: Path
-) -> None:
+def test_a_notebook_runs_again_to_the_same_numbers_within_their_errors(saved: Path, tmp_path: Path) -> None:
     for folder in ("notebooks", "data"):
         shutil.copytree(ROOT / folder, tmp_path / folder, ignore=shutil.ignore_patterns(".ipynb_checkpoints"))
     notebook = read(tmp_path / "notebooks" / saved.name)
