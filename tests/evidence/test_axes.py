@@ -7,7 +7,7 @@ import numpy.typing as npt
 import pytest
 from scipy import special
 
-from tests.analyses import bump
+from tests.evidence.small_analyses import bump
 from workbench.evidence.axes import GAUSS_WEIGHTS, KRONROD_NODES, KRONROD_WEIGHTS, Axis, lay_out, standard
 from workbench.evidence.quadrature import integrate
 from workbench.evidence.search import survey
@@ -76,7 +76,7 @@ def test_a_narrow_line_is_never_missed(mass: float) -> None:
 
 
 def test_the_rules_integrate_polynomials_exactly() -> None:
-    """Three Gauss points are exact to degree 5, seven Kronrod points to degree 11; both on one set of nodes."""
+    """Three Gauss points are exact to degree 5, seven Kronrod points to degree 11, on one set of nodes."""
     for degree, weights in ((5, GAUSS_WEIGHTS), (11, KRONROD_WEIGHTS)):
         for power in range(degree + 1):
             exact = 0.0 if power % 2 else 2.0 / (power + 1.0)

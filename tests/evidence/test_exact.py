@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 from scipy import integrate, special, stats
 
-from tests.analyses import TAU, YIELD, counting, one_bin, several_bins, source, templates
 from tests.evidence.brute_force import panels
+from tests.evidence.small_analyses import TAU, YIELD, counting, one_bin, several_bins, source, templates
 from workbench.evidence.exact import LinearRates, linear_rates, ln_evidence, ln_moment
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis, Parameter

@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 import pytest
 
-from tests.analyses import counting, source
+from tests.evidence.small_analyses import counting, source
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.results import Evidence
 from workbench.evidence.weigh import weigh
