@@ -12,6 +12,7 @@ from workbench.errors import Caution, InputError, Problem
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.odds import compare, posteriors
+from workbench.evidence.one_sided import one_sided_cautions
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
@@ -46,6 +47,7 @@ class Weighed:
     sample: Sample | None = None
 
 
+@np.errstate(all="ignore")  # an impossible point has ln probability -inf
 def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> Weighing:
     """Return evidences, Bayes factors and posterior odds of every hypothesis.
 
@@ -86,7 +88,10 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         posteriors(evidences, priors / priors.sum()),
         comparisons,
         seed,
-        tuple(caution for one in weighed for caution in _cautions(one)),
+        (
+            *(caution for one in weighed for caution in _cautions(one)),
+            *one_sided_cautions(analysis, [one.grid for one in weighed]),
+        ),
     )
 
 
