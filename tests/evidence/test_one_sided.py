@@ -41,8 +41,8 @@ def test_variations_on_one_side_are_weighed_under_their_other_readings() -> None
     assert len(said) == 1
     changes = [float(found.replace("−", "-")) for found in re.findall(r"changes by ([+−]\d+\.\d\d)", said[0])]
     given = ln_bayes_factor(as_given)
-    assert changes[0] == pytest.approx(ln_bayes_factor(with_fake_rate(0.3, None)) - given, abs=0.2)
-    assert changes[1] == pytest.approx(ln_bayes_factor(with_fake_rate(0.1, None)) - given, abs=0.2)
+    assert changes[0] == pytest.approx(ln_bayes_factor(with_fake_rate(0.3, None)) - given, abs=0.1)
+    assert changes[1] == pytest.approx(ln_bayes_factor(with_fake_rate(0.1, None)) - given, abs=0.1)
     assert "the larger size (30 %)" in said[0]
     assert "half of their distance (10 %)" in said[0]
 
