@@ -27,7 +27,7 @@ def names(integrand: Integrand, indices: tuple[int, ...]) -> list[str]:
 
 
 def test_laplace_by_hand() -> None:
-    """-H = [[2, 1], [1, 3]], determinant 5: both give ln 2 pi - ln(5)/2; over the second alone: ln(2 pi/3)/2."""
+    """-H = [[2, 1], [1, 3]], determinant 5: ln 2 pi - ln(5)/2; of the second alone ln(2 pi/3)/2."""
     hessians = -np.array([[[2.0, 1.0], [1.0, 3.0]]])
     both, second = np.array([0, 1]), np.array([1])
     assert laplace(hessians, both) == pytest.approx([np.log(2.0 * np.pi) - 0.5 * np.log(5.0)], rel=1e-13)
@@ -86,7 +86,7 @@ def test_a_background_alone_has_nuisance_coordinates_only() -> None:
 )
 @pytest.mark.parametrize(("n", "b"), [(0, 3.0), (5, 10.0), (60, 10.0), (10_300, 10_000.0)])
 def test_a_column_holds_all_of_the_integrand(n: int, b: float, strength: Prior) -> None:
-    """At its ends the integrand is down to a hundredth, or the prior ends; and enough nodes are near the top."""
+    """At its ends the integrand is down to a hundredth, or the prior ends; enough nodes are near the top."""
     columns = integrand_of(counting(n, b, strength)).columns(np.zeros((1, 0)))
     assert columns.inner.shape == (1, INNER_NODES)
     assert columns.converged.all()

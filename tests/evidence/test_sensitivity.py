@@ -1,4 +1,4 @@
-"""How ln B answers another width of the strength's prior: as if that prior had been declared from the start."""
+"""How ln B answers another width of the strength's prior: as if that prior had been declared."""
 
 from __future__ import annotations
 
