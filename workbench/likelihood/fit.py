@@ -25,6 +25,7 @@ Array = npt.NDArray[np.float64]
 
 _HIGHER = 1e-6
 _CLIMBS = 3
+_STARTS = 12
 
 
 def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
@@ -64,7 +65,7 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
             )
         )
     search = searcher(model)
-    points, values, converged = best_points(search, model.observed[None], tolerance=1e-9)
+    points, values, converged = best_points(search, model.observed[None], tolerance=1e-9, climbs=_STARTS)
     if not np.isfinite(values[0]):
         return unsupported(model, points[0])
     summit, found, is_sure = _climb(search, points[0], model.observed, asymmetric)

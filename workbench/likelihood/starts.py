@@ -14,9 +14,18 @@ from workbench.likelihood.objective import FitObjective, fit_objective
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
+Flags = npt.NDArray[np.bool_]
 
 _GRID = 240
-_KEPT = 3
+# Climbs a row: of a few thousand rows of noise some need the fourth.
+_CLIMBS = 4
+# A candidate promised this much less than the best one is not climbed [nats].
+_BEHIND = 3.0
+# With fewer candidates than this, a strength at its prior's median is tried as well.
+_FEW = 10
+_SMALLEST_SHARE = 0.05
+# The background's fit only shows where to start [nats].
+_ROUGHLY = 0.01
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -40,45 +49,44 @@ class Searcher:
     grid: Array
     events: Array
 
-    def starts(self, counts: Array) -> tuple[Array, Indices]:
+    def starts(self, counts: Array, climbs: int = _CLIMBS) -> tuple[Array, Indices]:
         """Return starting points for each row of counts.
 
         The background is fitted to each row; the gain of every candidate is then judged by the linear
-        response of the residuals, what nuisance parameters can absorb taken out.
+        response of the residuals, what nuisance parameters can absorb taken out. The best candidates that
+        differ from one another are climbed, those that promise far less than the best left out.
 
         Args:
             counts: (batch, bin) counts [events].
+            climbs: starting points a row at the most, among candidates over a signal's shape.
 
         Returns:
             (start, coordinate) points and the (start,) row that each belongs to.
         """
         model = self.objective.model
-        fitted = maximise(
-            self.background,
-            np.repeat(self.centre[None], len(counts), axis=0),
-            counts,
-            scale=self.scale,
-            most=25,
-        )
         rows = np.arange(len(counts))
-        plain = fitted.points.copy()
+        centres = np.repeat(self.centre[None], len(counts), axis=0)
         if model.signal.size == 0:
-            return plain, rows
-        amplitude, gain = self._gains(counts, fitted.points)
-        best = np.argsort(-gain, axis=1)[:, : 4 * _KEPT]
-        chosen = _spread_out(best, self._similar(), _KEPT)
-        points = [plain]
-        owners = [rows]
+            return centres, rows
+        fitted = maximise(
+            self.background, centres, counts, moving=self._nuisance(), tolerance=_ROUGHLY, scale=self.scale
+        ).points
+        amplitude, gain = self._gains(counts, fitted)
+        chosen, is_worth = _spread_out(gain, self._similar(), climbs)
+        owners, slots = np.nonzero(is_worth)
+        pick = chosen[owners, slots]
+        points = fitted[owners]
+        points[:, model.signal] = self.grid[pick][:, model.signal]
         strengths = np.array([c.is_strength for c in model.coordinates])
-        for slot in range(chosen.shape[1]):
-            start = fitted.points.copy()
-            pick = chosen[:, slot]
-            start[:, model.signal] = self.grid[pick][:, model.signal]
-            scaled = self.grid[pick] * np.maximum(amplitude[rows, pick], 0.05)[:, None]
-            start[:, strengths] = scaled[:, strengths]
-            points.append(np.clip(start, self.objective.low, self.objective.high))
-            owners.append(rows)
-        return np.concatenate(points), np.concatenate(owners)
+        scaled = self.grid[pick] * np.maximum(amplitude[owners, pick], _SMALLEST_SHARE)[:, None]
+        points[:, strengths] = scaled[:, strengths]
+        if len(self.grid) < _FEW:
+            points, owners = np.concatenate([fitted, points]), np.concatenate([rows, owners])
+        return np.clip(points, self.objective.low, self.objective.high), owners
+
+    def _nuisance(self) -> Flags:
+        """Return (coordinate,) True for what is no signal parameter."""
+        return ~np.isin(np.arange(self.objective.model.size), self.objective.model.signal)
 
     def _gains(self, counts: Array, points: Array) -> tuple[Array, Array]:
         """Return (row, start) best amplitudes and expected gains of the log likelihood."""
@@ -100,23 +108,26 @@ class Searcher:
         positive = np.maximum(amplitude, 0.0)
         return amplitude, 0.5 * positive**2 * information
 
-    def _similar(self) -> npt.NDArray[np.bool_]:
+    def _similar(self) -> Flags:
         """Return (start, start) True where two candidates are the same signal to the counts."""
         size = np.maximum(np.linalg.norm(self.events, axis=1), 1e-300)
         unit = self.events / size[:, None]
         return np.asarray(unit @ unit.T > 0.7)
 
 
-def _spread_out(best: Indices, similar: npt.NDArray[np.bool_], kept: int) -> Indices:
-    """Return (row, kept) candidates, each unlike the better ones where there are such."""
-    chosen = np.repeat(best[:, :1], kept, axis=1)
-    taken = similar[best[:, 0]]
-    for slot in range(1, kept):
-        fresh = ~np.take_along_axis(taken, best, 1)
-        pick = np.argmax(fresh, axis=1)
-        chosen[:, slot] = best[np.arange(len(best)), pick]
-        taken |= similar[chosen[:, slot]]
-    return chosen
+def _spread_out(gain: Array, similar: Flags, climbs: int) -> tuple[Indices, Flags]:
+    """Return (row, slot) candidates, best first and unlike one another, and which are worth a climb."""
+    rows = np.arange(len(gain))
+    left = gain.copy()
+    chosen = np.zeros((len(gain), climbs), dtype=np.intp)
+    promised = np.zeros(chosen.shape)
+    for slot in range(climbs):
+        chosen[:, slot] = np.argmax(left, axis=1)
+        promised[:, slot] = left[rows, chosen[:, slot]]
+        left[similar[chosen[:, slot]]] = -np.inf
+    is_worth = promised > np.maximum(promised[:, :1] - _BEHIND, 0.0)
+    is_worth[:, 0] = True
+    return chosen, is_worth
 
 
 def searcher(model: Model) -> Searcher:
@@ -163,21 +174,22 @@ def _candidates(model: Model, centre: Array) -> Array:
 
 
 def best_points(
-    search: Searcher, counts: Array, tolerance: float = 1e-7
-) -> tuple[Array, Array, npt.NDArray[np.bool_]]:
+    search: Searcher, counts: Array, tolerance: float = 1e-7, climbs: int = _CLIMBS
+) -> tuple[Array, Array, Flags]:
     """Return the best fit of each row of counts.
 
     Args:
         search: the hypothesis' searcher.
         counts: (batch, bin) counts [events].
         tolerance: expected further gain at which a fit is final [nats].
+        climbs: starting points a row at the most.
 
     Returns:
         (batch, coordinate) best points, (batch,) penalised ln likelihood and (batch,) whether it converged.
     """
-    starts, owners = search.starts(counts)
+    starts, owners = search.starts(counts, climbs)
     found = maximise(search.objective, starts, counts[owners], scale=search.scale, tolerance=tolerance)
     values = np.where(np.isfinite(found.values), found.values, -np.inf)
-    table = values.reshape(-1, len(counts))
-    best = np.argmax(table, axis=0) * len(counts) + np.arange(len(counts))
+    order = np.lexsort((-values, owners))
+    best = order[np.searchsorted(owners[order], np.arange(len(counts)))]
     return found.points[best], values[best], found.converged[best]
