@@ -113,7 +113,7 @@ def _minimised(search: Searcher, start: Array, counts: Array) -> tuple[Array, bo
         cost.value,
         start,
         grad=cost.slope,
-        hessian=cost.hessian,
+        g2=cost.bends,
         name=[f"x{index}" for index in range(start.size)],
     )
     minuit.errordef = Minuit.LIKELIHOOD
@@ -145,7 +145,7 @@ class _Cost:
     def slope(self, x: Array) -> Array:
         return self._derivatives(x)[0]
 
-    def hessian(self, x: Array) -> Array:
+    def bends(self, x: Array) -> Array:
         return self._derivatives(x)[1]
 
     def _derivatives(self, x: Array) -> tuple[Array, Array]:
@@ -153,7 +153,7 @@ class _Cost:
         key = point.tobytes()
         if key not in self.known:
             _, gradient, hessian = self.objective.derivatives(point[None], self.counts)
-            self.known[key] = (-gradient[0], -hessian[0])
+            self.known[key] = (-gradient[0], -np.diag(hessian[0]))
         return self.known[key]
 
 
