@@ -10,6 +10,8 @@ from workbench.likelihood.model import Model
 Array = npt.NDArray[np.float64]
 
 _BLOCK = 100
+# The generator draws no larger counts; an uncertainty of a factor of 1e99 asks for them.
+_MOST_EVENTS = 1e15
 
 
 def blocks(
@@ -65,13 +67,13 @@ def draw_counts(model: Model, values: Array, generator: np.random.Generator) -> 
         generator: where the random numbers come from.
 
     Returns:
-        (draw, bin) counts [events].
+        (draw, bin) counts [events]; expectations beyond 1e15 count as 1e15.
     """
     expected, variance = model.expected(model.natural_seeds(values))
-    expected = np.maximum(expected, 0.0)
+    expected = np.clip(np.nan_to_num(expected), 0.0, _MOST_EVENTS)
     if variance is not None:
         noisy = (variance > 0.0) & (expected > 0.0)
         shape = np.where(noisy, expected**2 / np.where(noisy, variance, 1.0), 1.0)
         factor = generator.gamma(shape) / shape
-        expected = np.where(noisy, expected * factor, expected)
+        expected = np.minimum(np.where(noisy, expected * factor, expected), _MOST_EVENTS)
     return generator.poisson(expected).astype(float)
