@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-import math
 import os
-import re
 import shutil
 import warnings
 from pathlib import Path
 
 import nbformat
 import pytest
+
+from tests.measured import measured, strays
 
 with warnings.catch_warnings():
     warnings.simplefilter("ignore", DeprecationWarning)  # of the libraries that it imports, not of ours
@@ -19,8 +19,6 @@ with warnings.catch_warnings():
 ROOT = Path(__file__).parents[2]
 SAVED = sorted((ROOT / "notebooks").glob("*.ipynb"))
 LARGEST = 400_000  # bytes of a saved notebook with its pictures
-NUMBER = r"[-−]?\d[\d,]*(?:\.\d+)?"
-WITH_ERROR = re.compile(rf"({NUMBER}) ± ({NUMBER})")
 
 
 def read(path: Path) -> nbformat.NotebookNode:
@@ -32,28 +30,6 @@ def printed(notebook: nbformat.NotebookNode) -> str:
     """Return everything that a notebook's cells printed, in order."""
     outputs = [output for cell in notebook.cells for output in cell.get("outputs", [])]
     return "".join(output.text for output in outputs if output.output_type == "stream")
-
-
-def measured(text: str) -> list[tuple[float, float, float]]:
-    """Return (value, error, half of the value's last digit) of each "value ± error" in a text."""
-    found = []
-    for value, error in WITH_ERROR.findall(text):
-        plain = value.replace(",", "").replace("−", "-")
-        decimals = len(plain.partition(".")[2])
-        found.append((float(plain), float(error.replace(",", "")), 0.5 * 10.0**-decimals))
-    return found
-
-
-def strays(saved: str, again: str) -> list[str]:
-    """Return what moved by more than 5 of its errors, or is not there any more."""
-    before, after = measured(saved), measured(again)
-    if len(before) != len(after):
-        return [f"{len(before)} numbers with an error before, {len(after)} now"]
-    return [
-        f"{old} ± {old_error} before, {new} ± {new_error} now"
-        for (old, old_error, rounding), (new, new_error, _) in zip(before, after, strict=True)
-        if abs(new - old) > 5.0 * math.hypot(old_error, new_error) + 2.0 * rounding
-    ]
 
 
 @pytest.fixture(params=SAVED, ids=lambda path: path.stem)
