@@ -78,7 +78,7 @@ def samples(grid: Grid, number: int, draws: int = 64) -> list[Sample]:
 
 @pytest.mark.parametrize("case", CASES.values(), ids=CASES)
 def test_estimates_are_right_and_their_errors_of_the_right_size(case: object) -> None:
-    """Pulls over 100 seeds: no shift, and the mean square that t-like pulls with 15 degrees of freedom have."""
+    """Pulls over 100 seeds: no shift, and the mean square of t-like pulls with 15 degrees of freedom."""
     assert callable(case)
     grid, exact = case()
     pulls = np.array([(one.ln_evidence - exact) / one.error for one in samples(grid, 100)])
@@ -128,8 +128,11 @@ def test_a_proposal_with_a_very_wrong_normalisation_is_not_established(
 
 
 def two_peaks() -> Grid:
-    peaks = sum(40.0 * np.diff(special.ndtr((EDGES - mass) / 0.4)) for mass in (5.0, 15.0))
-    return grid_of(bump(np.round(10.0 + peaks), continuum=400.0))
+    """Return a grid of which each of two masses holds a good part."""
+    peaks = sum(
+        size * np.diff(special.ndtr((EDGES - mass) / 0.4)) for mass, size in ((5.0, 40.0), (15.0, 24.0))
+    )
+    return grid_of(bump(np.round(CONTINUUM + peaks)))
 
 
 def blinded(grid: Grid) -> Grid:
@@ -141,19 +144,24 @@ def blinded(grid: Grid) -> Grid:
     return replace(grid, columns=replace(grid.columns, ln_height=height), ln_evidence=total)
 
 
+def is_doubted(found: Sample, grid: Grid) -> bool:
+    gap = abs(found.ln_evidence - grid.ln_evidence)
+    return bool(
+        found.error > 0.1
+        or found.k_hat > largest_allowed(found.ln_weights.size)
+        or gap > 0.05 + 3.0 * np.hypot(found.error, grid.error)
+    )
+
+
 def test_a_mode_that_the_search_missed_shows_in_the_weights() -> None:
-    """A tenth of the draws are the prior's: a few of them find the other mode and dominate."""
+    """Some draws are the prior's: the few that find the other mode dominate, and the estimate is in doubt."""
     whole = two_peaks()
     blind = blinded(whole)
-    assert whole.ln_evidence - blind.ln_evidence > 0.3
-    for seed in range(10):
-        found = sample(blind, np.random.SeedSequence(seed), 64)
-        doubted = found.error > 0.1 or found.k_hat > largest_allowed(found.ln_weights.size)
-        gap = abs(found.ln_evidence - blind.ln_evidence)
-        assert doubted or gap > 0.05 + 3.0 * np.hypot(found.error, blind.error)
-        honest = sample(whole, np.random.SeedSequence(seed), 64)
-        assert honest.k_hat < largest_allowed(honest.ln_weights.size)
-        assert honest.error < 0.1
+    assert 0.3 < whole.ln_evidence - blind.ln_evidence < 3.0
+    for seed in range(8):
+        child = np.random.SeedSequence(seed)
+        assert is_doubted(sample(blind, child, 512), blind)
+        assert not is_doubted(sample(whole, child, 64), whole)
 
 
 def test_weighted_draws_are_a_posterior_sample() -> None:

@@ -23,6 +23,7 @@ Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 
 INNER_NODES = 15
+LEAST_LN_HEIGHT = -1e300  # of a node without a maximum to integrate around
 _DEEP = 6.0
 _TOO_DEEP = 60.0
 _EDGE = 8.3
@@ -249,7 +250,7 @@ class Integrand:
         outer = list(self.outer)
         taken_out = 0.5 * (found.points[:, outer] ** 2).sum(axis=1) + 0.5 * len(outer) * np.log(2.0 * np.pi)
         height = found.values + found.gains + taken_out + laplace(found.hessians, self.nuisance)
-        height = np.where(np.isfinite(height), height, -1e300)
+        height = np.where(np.isfinite(height), height, LEAST_LN_HEIGHT)
         shape = (count, size)
         return Columns(
             found.points.reshape(*shape, -1)[:, 0, outer],

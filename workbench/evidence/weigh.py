@@ -9,8 +9,10 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.errors import Caution, InputError, Problem
+from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
+from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
 from workbench.evidence.pareto import largest_allowed
@@ -83,6 +85,7 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         for index, one in enumerate(weighed)
         if index > 0
     )
+    grids = [one.grid for one in weighed]
     return Weighing(
         evidences,
         posteriors(evidences, priors / priors.sum()),
@@ -90,7 +93,8 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         seed,
         (
             *(caution for one in weighed for caution in _cautions(one)),
-            *one_sided_cautions(analysis, [one.grid for one in weighed]),
+            *one_sided_cautions(analysis, grids),
+            *empty_bin_cautions([one.model for one in weighed], grids, comparisons),
         ),
     )
 
@@ -184,7 +188,7 @@ def _agreed(model: Model, grid: Grid, drawn: Sample) -> Evidence:
         drawn.error if finite else None,
         not reason,
         reason,
-        estimates if finite else estimates[:1],
+        tuple(one for one in estimates if one.ln_evidence > LEAST_LN_HEIGHT),
     )
 
 
@@ -192,6 +196,8 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
     """Return why an evidence is not established; empty when it is."""
     if not np.isfinite(drawn.ln_evidence):
         return "no draw can produce the observed counts"
+    if grid.ln_evidence <= LEAST_LN_HEIGHT:
+        return "the nuisance parameters have no maximum that Laplace could integrate around"
     allowed = largest_allowed(SCRAMBLES * _FIRST_DRAWS if drawn is None else drawn.ln_weights.size)
     if drawn.error > LARGEST_ERROR:
         return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
