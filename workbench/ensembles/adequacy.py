@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from workbench.ensembles.drawing import blocks, draw_counts, draw_parameters
+from workbench.ensembles.drawing import pseudo_experiments
 from workbench.ensembles.results import Adequacy
 from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis
@@ -18,6 +18,8 @@ Array = npt.NDArray[np.float64]
 THRESHOLD = 0.01
 _FIRST = 200
 _ERRORS_AWAY = 3.0
+_TOLERANCE = 1e-4
+_SAME = 4.0 * _TOLERANCE  # the same counts fitted twice may differ by this much in T, and count as equal
 
 
 def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000) -> Adequacy:
@@ -40,7 +42,7 @@ def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 
         Statistic, p and its standard error.
 
     Raises:
-        InputError: if there is no such hypothesis or a region has no observed counts.
+        InputError: if there is no such hypothesis, a region has no observed counts, or `most` is below 1.
 
     Source:
         Saturated-model test: S. Baker, R.D. Cousins, Nucl. Instrum. Meth. 221 (1984) 437; from memory.
@@ -48,34 +50,54 @@ def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 
         from memory.
     """
     model = compile_model(analysis, hypothesis)
-    if model.observed is None:
+    counted = model.observed_for("adequacy")
+    if most < 1:
         raise InputError(
             Problem(
-                what="adequacy needs observed counts",
-                where=f"hypothesis {hypothesis!r}",
-                found="a region without `observed`",
-                expected="observed counts in every bin",
-                remedy="add an `observed` column",
+                what="adequacy needs pseudo-experiments",
+                where="most",
+                found=str(most),
+                expected="a whole number > 0",
+                remedy=f"allow {_FIRST} or more",
             )
         )
     search = searcher(model)
-    observed, points, _ = statistic(search, model.observed[None])
+    observed, points, _ = statistic(search, counted[None])
     held = _held(model, points[0])
     index = [one.name for one in analysis.hypotheses].index(hypothesis)
     source = np.random.SeedSequence(seed, spawn_key=(1, index))
     drawn = worse = unfinished = 0
     while True:
         batch = min(_FIRST, most - drawn) if drawn == 0 else min(2 * _FIRST, most - drawn)
-        for generator, number in blocks(source, batch, drawn):
-            counts = draw_counts(model, draw_parameters(model, generator, number, held), generator)
+        for counts in pseudo_experiments(model, source, batch, first=drawn, held=held):
             values, _, finished = statistic(search, counts)
-            worse += int((values >= observed[0] - 1e-9).sum())
+            worse += int((values >= observed[0] - _SAME).sum())
             unfinished += int((~finished).sum())
         drawn += batch
-        p = (1.0 + worse) / (1.0 + drawn)
-        error = float(np.sqrt(p * (1.0 - p) / drawn))
+        p, error = share(worse, drawn)
         if drawn >= most or abs(p - THRESHOLD) > _ERRORS_AWAY * error:
             return Adequacy(hypothesis, float(observed[0]), p, error, drawn, unfinished)
+
+
+def share(worse: int, drawn: int) -> tuple[float, float]:
+    """Return p of a simulated ensemble, with an error that is not 0 when all or none are worse.
+
+        p = (1 + worse)/(1 + drawn),  error = sqrt(q (1 - q)/(drawn + 3)) with q = (1 + worse)/(2 + drawn)
+
+    Args:
+        worse: pseudo-experiments at least as extreme as what was observed.
+        drawn: pseudo-experiments.
+
+    Returns:
+        p and its standard error.
+
+    Source:
+        p: A.C. Davison, D.V. Hinkley, Bootstrap Methods and their Application (1997); from memory. The error
+            is the standard deviation of the beta distribution that a uniform prior of the share ends in;
+            definition.
+    """
+    q = (1.0 + worse) / (2.0 + drawn)
+    return (1.0 + worse) / (1.0 + drawn), float(np.sqrt(q * (1.0 - q) / (drawn + 3.0)))
 
 
 def statistic(search: Searcher, counts: Array) -> tuple[Array, Array, npt.NDArray[np.bool_]]:
@@ -88,7 +110,7 @@ def statistic(search: Searcher, counts: Array) -> tuple[Array, Array, npt.NDArra
     Returns:
         T [2 nats], (row, coordinate) points, (row,) convergence.
     """
-    points, values, converged = best_points(search, counts, tolerance=1e-4)
+    points, values, converged = best_points(search, counts, tolerance=_TOLERANCE)
     return 2.0 * (ln_saturated(counts) - values), points, converged
 
 

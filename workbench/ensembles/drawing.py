@@ -2,38 +2,45 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 import numpy.typing as npt
 
+from workbench.likelihood.laws import noisy_bins
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
-_BLOCK = 100
-# The generator draws no larger counts; an uncertainty of a factor of 1e99 asks for them.
-_MOST_EVENTS = 1e15
+BLOCK = 100
+_LARGEST_MEAN = 9e15  # counts stay below what double precision tells from its neighbours
 
 
-def blocks(
-    seed: np.random.SeedSequence, number: int, first: int = 0
-) -> list[tuple[np.random.Generator, int]]:
-    """Return generators for blocks of pseudo-experiments, one child of the seed a block.
+def pseudo_experiments(
+    model: Model, seed: np.random.SeedSequence, number: int, *, first: int = 0, held: Array | None = None
+) -> Iterator[Array]:
+    """Yield the counts of pseudo-experiments, a block at a time.
 
-    The same pseudo-experiment always comes from the same child, whoever draws it and in whatever order.
+    Each block has its own child of the seed and is always drawn whole: a pseudo-experiment is the same
+    whoever draws it, in whatever order, and however many are asked for.
 
     Args:
+        model: a hypothesis.
         seed: the ensemble's seed.
         number: how many pseudo-experiments.
-        first: number of pseudo-experiments drawn before; a multiple of the block's size.
+        first: number of pseudo-experiments drawn before.
+        held: (coordinate,) parameter values to hold; nan where the prior is drawn from; None draws all.
 
-    Returns:
-        A generator and a number of pseudo-experiments for each block.
+    Yields:
+        (row, bin) counts [events]; rows of all blocks together are `number`.
     """
-    found = []
-    for start in range(first, first + number, _BLOCK):
-        child = np.random.SeedSequence(seed.entropy, spawn_key=(*seed.spawn_key, start // _BLOCK))
-        found.append((np.random.default_rng(child), min(_BLOCK, first + number - start)))
-    return found
+    stop = first + number
+    for block in range(first // BLOCK, -(-stop // BLOCK)):
+        child = np.random.SeedSequence(seed.entropy, spawn_key=(*seed.spawn_key, block))
+        generator = np.random.default_rng(child)
+        counts = draw_counts(model, draw_parameters(model, generator, BLOCK, held), generator)
+        start = block * BLOCK
+        yield counts[max(first - start, 0) : min(stop - start, BLOCK)]
 
 
 def draw_parameters(
@@ -67,13 +74,14 @@ def draw_counts(model: Model, values: Array, generator: np.random.Generator) -> 
         generator: where the random numbers come from.
 
     Returns:
-        (draw, bin) counts [events]; expectations beyond 1e15 count as 1e15.
+        (draw, bin) counts [events].
+
+    Limits:
+        Expectations above 9e15 events are drawn at 9e15.
     """
     expected, variance = model.expected(model.natural_seeds(values))
-    expected = np.clip(np.nan_to_num(expected), 0.0, _MOST_EVENTS)
     if variance is not None:
-        noisy = (variance > 0.0) & (expected > 0.0)
+        noisy = noisy_bins(expected, variance)
         shape = np.where(noisy, expected**2 / np.where(noisy, variance, 1.0), 1.0)
-        factor = generator.gamma(shape) / shape
-        expected = np.minimum(np.where(noisy, expected * factor, expected), _MOST_EVENTS)
-    return generator.poisson(expected).astype(float)
+        expected = np.where(noisy, generator.gamma(shape) / shape, 1.0) * expected
+    return generator.poisson(np.minimum(expected, _LARGEST_MEAN)).astype(float)

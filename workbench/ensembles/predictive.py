@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.ensembles.drawing import draw_counts, draw_parameters
+from workbench.ensembles.drawing import pseudo_experiments
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import compile_model
 
@@ -52,8 +52,8 @@ def prior_predictive(
     """
     model = compile_model(analysis, hypothesis)
     index = [one.name for one in analysis.hypotheses].index(hypothesis)
-    generator = np.random.default_rng(np.random.SeedSequence(seed, spawn_key=(2, index)))
-    counts = draw_counts(model, draw_parameters(model, generator, draws), generator)
+    source = np.random.SeedSequence(seed, spawn_key=(2, index))
+    counts = np.concatenate(list(pseudo_experiments(model, source, draws)))
     low, median, high = np.quantile(counts, [0.16, 0.5, 0.84], axis=0)
     total_low, total_median, total_high = np.quantile(counts.sum(axis=1), [0.16, 0.5, 0.84])
     return PriorPredictive(

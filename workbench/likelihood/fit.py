@@ -11,7 +11,6 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.covariance import spread
 from workbench.likelihood.findings import findings, unsupported
@@ -54,21 +53,12 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
         F. James, M. Roos, Comput. Phys. Commun. 10 (1975) 343 for the minimiser; from memory.
     """
     model = compile_model(analysis, hypothesis)
-    if model.observed is None:
-        raise InputError(
-            Problem(
-                what="a fit needs observed counts",
-                where=f"hypothesis {hypothesis!r}",
-                found="a region without `observed`",
-                expected="observed counts in every bin",
-                remedy="add an `observed` column",
-            )
-        )
+    counts = model.observed_for("a fit")
     search = searcher(model)
-    points, values, converged = best_points(search, model.observed[None], tolerance=1e-9, climbs=_STARTS)
+    points, values, converged = best_points(search, counts[None], tolerance=1e-9, climbs=_STARTS)
     if not np.isfinite(values[0]):
         return unsupported(model, points[0])
-    summit, found, is_sure = _climb(search, points[0], model.observed, asymmetric)
+    summit, found, is_sure = _climb(search, points[0], counts, asymmetric)
     return findings(model, summit, _ending(is_sure or bool(converged[0]), summit), found)
 
 

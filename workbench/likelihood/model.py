@@ -8,6 +8,7 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
+from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.assembly import assemble
 from workbench.likelihood.coordinates import Coordinate, coordinates_of
@@ -63,6 +64,30 @@ class Model:
     def names(self) -> tuple[str, ...]:
         """Return the coordinates' names in order."""
         return tuple(coordinate.name for coordinate in self.coordinates)
+
+    def observed_for(self, purpose: str) -> Array:
+        """Return the observed counts, (bin,).
+
+        Args:
+            purpose: what needs them, to say so where there are none.
+
+        Returns:
+            Counts of all regions in order [events].
+
+        Raises:
+            InputError: if a region has no observed counts.
+        """
+        if self.observed is None:
+            raise InputError(
+                Problem(
+                    what=f"{purpose} needs observed counts",
+                    where=f"hypothesis {self.hypothesis!r}",
+                    found="a region without `observed`",
+                    expected="observed counts in every bin",
+                    remedy="add an `observed` column",
+                )
+            )
+        return self.observed
 
     def seeds(self, points: Array) -> Seeds:
         """Return parameter values and derivatives at standard-normal coordinates.

@@ -8,11 +8,14 @@ from typing import Protocol
 import numpy as np
 import numpy.typing as npt
 
+from workbench.hypotheses.quantities import parameters_of
+from workbench.hypotheses.shape_family import AnalyticShape
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
 _CHUNK = 300_000
+_SHORT_OF_AN_END = 1e-6  # in prior standard deviations
 
 
 class Objective(Protocol):
@@ -116,14 +119,35 @@ class FitObjective:
 
 
 def fit_objective(model: Model) -> FitObjective:
-    """Return what a fit of this hypothesis maximises, with every parameter's allowed range."""
-    ranges = [
-        (-np.inf, np.inf) if coordinate.role == "source" else coordinate.prior.support
-        for coordinate in model.coordinates
-    ]
-    low = np.array([low for low, _ in ranges], dtype=float)
-    high = np.array([high for _, high in ranges], dtype=float)
+    """Return what a fit of this hypothesis maximises, with every parameter's allowed range.
+
+    Args:
+        model: a hypothesis.
+
+    Returns:
+        The objective. Its range stops short of ends where a shape ceases to be one, such as a width of 0.
+    """
+    open_ended = _open_ended(model)
+    low, high = np.full(model.size, -np.inf), np.full(model.size, np.inf)
+    for index, coordinate in enumerate(model.coordinates):
+        if coordinate.role != "source":
+            low[index], high[index] = coordinate.prior.support
+        if coordinate.name in open_ended:
+            low[index] += _SHORT_OF_AN_END * coordinate.prior.sd
     return FitObjective(model, low, high)
+
+
+def _open_ended(model: Model) -> set[str]:
+    """Return the parameters that stand for a number of a shape which must be above a bound, not at it."""
+    names: set[str] = set()
+    for process in model.analysis.processes_of(model.hypothesis):
+        for contribution in process.regions.values():
+            shape = contribution.shape
+            if isinstance(shape, AnalyticShape):
+                for field, (_, is_strict) in shape.lower_bounds.items():
+                    if is_strict and field in shape.quantities:
+                        names.update(parameters_of(shape.quantities[field]))
+    return names
 
 
 def rows_at_once(model: Model) -> int:
