@@ -97,11 +97,12 @@ def test_parameters_are_drawn_from_their_priors_or_held() -> None:
     assert (held[:, 1] == 7.0).all()
 
 
-def test_expectations_beyond_any_count_do_not_break_the_generator() -> None:
+@pytest.mark.parametrize("factor", [1e30, 1e99])
+def test_expectations_beyond_any_count_do_not_break_the_generator(factor: float) -> None:
     analysis = Analysis(
         "Wild",
         (region_of([0.0, 1.0]),),
-        (Parameter("k", LogNormal(1.0, 1e30)),),
+        (Parameter("k", LogNormal(1.0, factor)),),
         (background("b", Flat(), 10.0, "k"),),
     )
     model = compile_model(analysis, "background only")

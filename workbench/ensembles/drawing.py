@@ -13,7 +13,7 @@ from workbench.likelihood.model import Model
 Array = npt.NDArray[np.float64]
 
 BLOCK = 100
-_LARGEST_MEAN = 9e15  # counts stay below what double precision tells from its neighbours
+_MOST_EVENTS = 1e15  # the generator draws no larger counts; an uncertainty of a factor of 1e99 asks for them
 
 
 def pseudo_experiments(
@@ -74,14 +74,12 @@ def draw_counts(model: Model, values: Array, generator: np.random.Generator) -> 
         generator: where the random numbers come from.
 
     Returns:
-        (draw, bin) counts [events].
-
-    Limits:
-        Expectations above 9e15 events are drawn at 9e15.
+        (draw, bin) counts [events]; expectations beyond 1e15 count as 1e15.
     """
     expected, variance = model.expected(model.natural_seeds(values))
+    expected = np.clip(np.nan_to_num(expected), 0.0, _MOST_EVENTS)
     if variance is not None:
         noisy = noisy_bins(expected, variance)
         shape = np.where(noisy, expected**2 / np.where(noisy, variance, 1.0), 1.0)
         expected = np.where(noisy, generator.gamma(shape) / shape, 1.0) * expected
-    return generator.poisson(np.minimum(expected, _LARGEST_MEAN)).astype(float)
+    return generator.poisson(np.minimum(expected, _MOST_EVENTS)).astype(float)
