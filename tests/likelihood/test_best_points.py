@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import subprocess
+import sys
 from pathlib import Path
 
 import numpy as np
@@ -11,12 +13,14 @@ import pytest
 from workbench.ensembles.drawing import draw_counts, draw_parameters
 from workbench.hypotheses.reading import read_analysis
 from workbench.likelihood import starts
+from workbench.likelihood.fit import fit
 from workbench.likelihood.model import Model, compile_model
 from workbench.likelihood.starts import best_points, searcher
 
 Array = npt.NDArray[np.float64]
 
-SKERRY = Path(__file__).parents[2] / "data" / "skerry" / "skerry.toml"
+ROOT = Path(__file__).parents[2]
+SKERRY = ROOT / "data" / "skerry" / "skerry.toml"
 ROWS = 400
 SAME = 1e-3  # in T = -2 ln p
 
@@ -76,3 +80,26 @@ def test_every_row_gets_its_own_best_point(resonance: Model, drawn: Array) -> No
     points, values, converged = best_points(search, drawn)
     assert converged.all()
     np.testing.assert_allclose(search.objective.value(points, drawn), values, atol=1e-9)
+
+
+def test_a_fit_without_asymmetric_errors_loads_no_iminuit() -> None:
+    """The command `weigh` loaded it on every start and ran it to find what was known already."""
+    code = (
+        "import sys\n"
+        "from workbench.hypotheses.reading import read_analysis\n"
+        "from workbench.likelihood.fit import fit\n"
+        f"found = fit(read_analysis({str(SKERRY)!r}), 'resonance', asymmetric=False)\n"
+        "print(found.ending.name, 'iminuit' in sys.modules)\n"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True, cwd=ROOT)
+    assert done.stdout == "CONVERGED False\n"
+
+
+def test_a_fit_with_and_without_asymmetric_errors_ends_at_the_same_point() -> None:
+    analysis = read_analysis(SKERRY)
+    whole, quick = fit(analysis, "resonance"), fit(analysis, "resonance", asymmetric=False)
+    assert whole.ending is quick.ending
+    for one, other in zip(whole.fitted, quick.fitted, strict=True):
+        assert one.error is not None
+        assert other.error == pytest.approx(one.error, rel=1e-4)
+        assert other.value == pytest.approx(one.value, abs=1e-4 * one.error)

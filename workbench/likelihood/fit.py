@@ -2,6 +2,7 @@
 
 The only file that imports iminuit. Batched Newton steps from every place where the counts ask for something
 find the best point; iminuit then minimises from there with exact derivatives and says whether it converged.
+Where no asymmetric errors are asked for, iminuit is loaded only if the Newton steps did not converge.
 """
 
 from __future__ import annotations
@@ -58,8 +59,17 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
     points, values, converged = best_points(search, counts[None], tolerance=1e-9, climbs=_STARTS)
     if not np.isfinite(values[0]):
         return unsupported(model, points[0])
+    if converged[0] and not asymmetric:
+        summit = _summit(search, points[0], counts)
+        return findings(model, summit, _ending(True, summit), {})
     summit, found, is_sure = _climb(search, points[0], counts, asymmetric)
     return findings(model, summit, _ending(is_sure or bool(converged[0]), summit), found)
+
+
+def _summit(search: Searcher, best: Array, counts: Array) -> Summit:
+    value = float(search.objective.value(best[None], counts)[0])
+    width = spread(search.objective, best, counts, search.scale)
+    return Summit(search.objective, counts, best, value, search.scale, width)
 
 
 def _climb(
@@ -72,10 +82,7 @@ def _climb(
     objective = search.objective
     for _ in range(_CLIMBS):
         best, is_sure = _minimised(search, start, counts)
-        value = float(objective.value(best[None], counts)[0])
-        summit = Summit(
-            objective, counts, best, value, search.scale, spread(objective, best, counts, search.scale)
-        )
+        summit = _summit(search, best, counts)
         if not asymmetric:
             return summit, {}, is_sure
         roles = [coordinate.role for coordinate in objective.model.coordinates]
@@ -85,7 +92,7 @@ def _climb(
             if role != "source" and not (summit.spread.flat[index] and not summit.spread.at_limit[index])
         ]
         found, highest = sides(summit, np.array(wanted, dtype=np.intp))
-        if float(objective.value(highest[None], counts)[0]) <= value + _HIGHER:
+        if float(objective.value(highest[None], counts)[0]) <= summit.value + _HIGHER:
             break
         start = highest
     return summit, found, is_sure
