@@ -44,6 +44,9 @@ GAUSS_WEIGHTS = np.array([0.0, 5.0 / 9.0, 0.0, 8.0 / 9.0, 0.0, 5.0 / 9.0, 0.0])
 
 _PANEL_ANGLE = 2.4
 _FINEST = 0.35
+_FIRST_GRID = 400
+_LARGEST_GRID = 20_000
+_SHORTEST = 1e-4
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -102,19 +105,15 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
     Returns:
         The axis.
     """
-    others = [other for other in axes if other != axis]
-    grid = np.linspace(0.0, 1.0, 401)
-    turned = np.zeros(grid.size - 1)
-    for level in (0.0,) if not others else (-1.5, 0.0, 1.5):
-        turned = np.maximum(turned, _angles(model, landscape, axis, grid, level))
-    while turned.max() > _FINEST and grid.size < 20_000:
-        wide = np.flatnonzero(turned > _FINEST)
-        grid = np.sort(np.concatenate([grid, 0.5 * (grid[wide] + grid[wide + 1])]))
-        turned = np.zeros(grid.size - 1)
-        for level in (0.0,) if not others else (-1.5, 0.0, 1.5):
-            turned = np.maximum(turned, _angles(model, landscape, axis, grid, level))
-        if turned.size > 4 * 401 and (np.diff(grid)[turned > _FINEST] < 1e-4).all():
+    levels = (0.0,) if len(axes) == 1 else (-1.5, 0.0, 1.5)
+    grid = np.linspace(0.0, 1.0, _FIRST_GRID + 1)
+    turned = _turned(model, landscape, axis, grid, levels)
+    while turned.max() > _FINEST and grid.size < _LARGEST_GRID:
+        wide = np.flatnonzero((turned > _FINEST) & (np.diff(grid) > _SHORTEST))
+        if wide.size == 0:
             break
+        grid = np.sort(np.concatenate([grid, 0.5 * (grid[wide] + grid[wide + 1])]))
+        turned = _turned(model, landscape, axis, grid, levels)
     length = np.concatenate([[0.0], np.cumsum(turned)])
     panels = max(2, int(np.ceil(length[-1] / _PANEL_ANGLE)))
     if length[-1] <= 0.0:
@@ -122,6 +121,11 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
     inner = np.interp(np.linspace(0.0, length[-1], panels + 1), length, grid)
     inner[0], inner[-1] = 0.0, 1.0
     return Axis(np.unique(inner))
+
+
+def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: tuple[float, ...]) -> Array:
+    """Return the angle across each grid interval, the largest over levels of the other coordinates."""
+    return np.max([_angles(model, landscape, axis, grid, level) for level in levels], axis=0)
 
 
 def _angles(model: Model, landscape: Landscape, axis: int, grid: Array, level: float) -> Array:
