@@ -97,15 +97,15 @@ def test_parameters_are_drawn_from_their_priors_or_held() -> None:
     assert (held[:, 1] == 7.0).all()
 
 
-@pytest.mark.parametrize("factor", [1e30, 1e99])
-def test_expectations_beyond_any_count_do_not_break_the_generator(factor: float) -> None:
+def test_expectations_beyond_any_count_do_not_break_the_generator() -> None:
     analysis = Analysis(
         "Wild",
         (region_of([0.0, 1.0]),),
-        (Parameter("k", LogNormal(1.0, factor)),),
-        (background("b", Flat(), 10.0, "k"),),
+        (Parameter("k", LogNormal(1.0, 1e6)),),
+        (background("b", Flat(), 1e12, "k"),),
     )
     model = compile_model(analysis, "background only")
     counts = gathered(model, 100)
     assert np.isfinite(counts).all()
     assert (counts >= 0).all()
+    assert 0.9e15 < counts.max() < 1.1e15
