@@ -125,7 +125,8 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
 
 def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: tuple[float, ...]) -> Array:
     """Return the angle across each grid interval, the largest over levels of the other coordinates."""
-    return np.max([_angles(model, landscape, axis, grid, level) for level in levels], axis=0)
+    found = [_angles(model, landscape, axis, grid, level) for level in levels]
+    return np.asarray(np.max(found, axis=0))
 
 
 def _angles(model: Model, landscape: Landscape, axis: int, grid: Array, level: float) -> Array:
