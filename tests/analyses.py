@@ -40,6 +40,7 @@ from workbench.hypotheses.shapes import (
     Voigt,
 )
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
+from workbench.likelihood.model import compile_model
 
 Array = npt.NDArray[np.float64]
 WIDE = Uniform(0.0, 100.0)
@@ -114,6 +115,14 @@ def bump_hunt(observed: Array | None = None, bins: int = 40, *, reach: float = 1
         ),
         (Uncertainty("continuum size", (Effect("continuum", 0.1),)),),
     )
+
+
+def seen_bump(strength: float, mass: float) -> Analysis:
+    """Return the bump hunt with counts drawn with a peak of this strength at this mass."""
+    analysis = bump_hunt()
+    model = compile_model(analysis, "signal plus background")
+    expected = model.expected(model.natural_seeds(np.array([[strength, mass, 18.0, 0.0]])))[0][0]
+    return with_observed(analysis, np.random.default_rng(52).poisson(expected).astype(float))
 
 
 def everything(*, template_errors: bool = True) -> Analysis:

@@ -13,13 +13,12 @@ from statsmodels.genmod.generalized_linear_model import GLM
 
 from tests.analyses import (
     background,
-    bump_hunt,
     counting,
     everything,
     one_hypothesis,
     region_of,
+    seen_bump,
     signal,
-    with_observed,
 )
 from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.hypotheses.priors import Gamma, LogUniform, Uniform
@@ -125,15 +124,8 @@ def profile(analysis: Analysis, hypothesis: str, index: int, at: float, start: A
     return -float(found.fun)
 
 
-def bump(strength: float, mass: float) -> Analysis:
-    analysis = bump_hunt()
-    model = compile_model(analysis, BOTH)
-    expected = model.expected(model.natural_seeds(np.array([[strength, mass, 18.0, 0.0]])))[0][0]
-    return with_observed(analysis, np.random.default_rng(52).poisson(expected).astype(float))
-
-
 def test_asymmetric_errors_are_where_the_profile_has_fallen_by_a_half() -> None:
-    analysis = bump(3.0, 50.0)
+    analysis = seen_bump(3.0, 50.0)
     found = fit(analysis, BOTH)
     best = np.array([one.value for one in found.fitted])
     for index, one in enumerate(found.fitted):
@@ -172,7 +164,7 @@ def test_asymmetric_errors_of_all_parameters_are_searched_for_at_once(
 
     monkeypatch.setattr(Model, "derivatives", counted)
     monkeypatch.setattr(Model, "ln_likelihood", counted_plain)
-    analysis = bump(3.0, 50.0)
+    analysis = seen_bump(3.0, 50.0)
     fit(analysis, BOTH, asymmetric=False)
     without = len(calls)
     calls.clear()

@@ -12,11 +12,10 @@ from scipy import optimize
 
 from tests.analyses import (
     background,
-    bump_hunt,
     counting,
     region_of,
+    seen_bump,
     signal,
-    with_observed,
 )
 from workbench.errors import InputError
 from workbench.hypotheses.analysis import Analysis, Parameter
@@ -24,7 +23,6 @@ from workbench.hypotheses.priors import LogNormal, Normal, Prior, Uniform
 from workbench.hypotheses.shapes import Flat, Gaussian, Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.likelihood.fit import fit
-from workbench.likelihood.model import compile_model
 from workbench.likelihood.results import Ending, Fit, Fitted
 
 Array = npt.NDArray[np.float64]
@@ -33,13 +31,6 @@ BOTH = "signal plus background"
 
 def of(found: Fit, name: str) -> Fitted:
     return next(one for one in found.fitted if one.name == name)
-
-
-def bump(strength: float, mass: float) -> Analysis:
-    analysis = bump_hunt()
-    model = compile_model(analysis, BOTH)
-    expected = model.expected(model.natural_seeds(np.array([[strength, mass, 18.0, 0.0]])))[0][0]
-    return with_observed(analysis, np.random.default_rng(52).poisson(expected).astype(float))
 
 
 def test_a_strength_at_its_boundary_has_a_one_sided_error_and_says_so() -> None:
@@ -190,7 +181,7 @@ def test_a_fit_without_observed_counts_is_refused() -> None:
 
 def test_a_peak_at_the_end_of_its_range_is_at_its_limit() -> None:
     """The bump stands at 75, the prior of the mass ends at 70."""
-    analysis = bump(6.0, 72.0)
+    analysis = seen_bump(6.0, 72.0)
     mass, rest = Parameter("mass", Uniform(22.0, 71.0)), analysis.parameters
     found = fit(replace(analysis, parameters=(rest[0], mass, rest[2])), BOTH)
     assert of(found, "mass").value == 71.0
