@@ -33,6 +33,15 @@ def test_a_place_held_beforehand_is_cautioned_about() -> None:
     assert "taken as known beforehand" in texts["look-elsewhere"]
 
 
+def test_a_strength_is_no_searched_range_even_where_nothing_is_established() -> None:
+    """Without odds there is no sensitivity either, and the strength was said to be the range searched."""
+    bare = tuple(replace(comparison, sensitivity=()) for comparison in hand.weighing().comparisons)
+    texts = {item.code: item.text for item in usual_cautions(hand.analysis(), bare)}
+    assert "prior of mass" in texts["look-elsewhere"]
+    assert "strength" not in texts["look-elsewhere"]
+    assert "strength" in texts["strength-prior"]
+
+
 def test_effects_are_said_with_their_sign() -> None:
     assert effect_words(Effect("a", 0.1)) == "+10 %"
     assert effect_words(Effect("a", 0.03, -0.04, ("peak",))) == "+3 % / −4 % in peak"

@@ -9,6 +9,7 @@ from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
 from workbench.evidence.results import Comparison
 from workbench.hypotheses.analysis import Analysis, Parameter
+from workbench.likelihood.coordinates import coordinates_of
 from workbench.records.numbers import with_error
 
 FAILS_BELOW = 0.01
@@ -60,7 +61,12 @@ def usual_cautions(analysis: Analysis, comparisons: Sequence[Comparison]) -> tup
         analysis: the analysis.
         comparisons: its comparisons.
     """
-    strengths = {item.parameter for comparison in comparisons for item in comparison.sensitivity}
+    strengths = {
+        coordinate.name
+        for comparison in comparisons
+        for coordinate in coordinates_of(analysis, comparison.hypothesis)
+        if coordinate.is_strength
+    }
     cautions = [
         Caution(
             "conditional",
