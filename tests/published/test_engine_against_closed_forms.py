@@ -176,14 +176,18 @@ def test_the_numerical_path_would_notice_another_prior() -> None:
 
 
 def test_errors_of_the_numerical_path_are_of_the_right_size() -> None:
-    """Pulls over several cases and seeds: their mean square is 1 within what so many draws allow."""
+    """Pulls over several cases and seeds: their mean square is 1, less where the error stands at its floor.
+
+    In one or two dimensions the lattices are far better than independent draws, and the error is kept at 0.3 of
+    what those would have: on purpose too large there, never too small.
+    """
     pulls = []
     for case in (known_background(17, 3.8, 2.0), gamma_background(17), on_off(8, 14), on_off(30, 40)):
         for seed in range(10):
             found, error = numerical(case.analysis(), 1, seed)
             pulls.append((found - case.exact()[1]) / error)
     # 40 pulls of a t-like law with 15 degrees of freedom: mean square 15/13, sd about 0.3.
-    assert 0.4 < float(np.mean(np.square(pulls))) < 2.4
+    assert 0.05 < float(np.mean(np.square(pulls))) < 2.4
 
 
 def test_no_counts_have_their_ceiling_whatever_the_engine_does() -> None:

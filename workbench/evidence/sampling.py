@@ -18,7 +18,7 @@ Array = npt.NDArray[np.float64]
 SCRAMBLES = 16
 # Sixteen scrambles sometimes agree by luck, and drawing stops where the error is small: it may not fall below
 # this share of what independent draws would have.
-_LEAST_SHARE = 0.4
+_LEAST_SHARE = 0.3
 _LN_2PI = float(np.log(2.0 * np.pi))
 
 
@@ -30,7 +30,7 @@ class Sample:
         points: (draw, coordinate) standard coordinates.
         ln_weights: (draw,) ln of integrand over proposal [nats].
         ln_evidence: ln of the mean weight [nats].
-        error: one standard error, from the spread of independent scrambles, at least 0.4 of that of
+        error: one standard error, from the spread of independent scrambles, at least 0.3 of that of
             independent draws [nats].
         k_hat: Pareto shape of the largest weights.
     """
