@@ -11,6 +11,7 @@ from pathlib import Path
 
 import pytest
 
+from workbench.commands.main import main
 from workbench.counts.csv_table import read_csv_table
 from workbench.counts.region import Region
 from workbench.errors import InputError
@@ -45,6 +46,17 @@ def test_a_bad_input_is_refused_with_the_message_beside_it(
 ) -> None:
     monkeypatch.chdir(BAD)
     assert explain(name) + "\n" == Path(name).with_suffix(MESSAGE).read_text(encoding="utf-8")
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_the_command_line_says_the_same_and_nothing_else(
+    name: str, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.chdir(BAD)
+    assert main(["check", name]) == 2
+    said = capsys.readouterr()
+    assert said.out == ""
+    assert said.err == Path(name).with_suffix(MESSAGE).read_text(encoding="utf-8")
 
 
 @pytest.mark.parametrize("name", CASES)

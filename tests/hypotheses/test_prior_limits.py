@@ -32,7 +32,7 @@ EXTREMES: list[ContinuousPrior] = [
     Beta(1e5, 2.0),
     Beta(0.1, 30.0),
     LogNormal(1.0, 1e3),
-    LogUniform(1e-300, 1e300),
+    LogUniform(1e-100, 1e100),
 ]
 
 
@@ -69,6 +69,10 @@ def test_extreme_priors_make_no_nan_and_no_warning(prior: ContinuousPrior) -> No
     "make",
     [
         lambda: Uniform(1.0, 1.0),
+        lambda: Uniform(0.0, 1e101),
+        lambda: Fixed(-1e-101),
+        lambda: Gamma(1e-300, 1.0),
+        lambda: LogNormal(1.0, 1e7),
         lambda: Uniform(0.0, np.inf),
         lambda: Normal(0.0, 0.0),
         lambda: Normal(0.0, 1.0, low=2.0, high=1.0),

@@ -9,6 +9,7 @@ from collections.abc import Callable, Sequence
 from typing import IO, NoReturn, TextIO, cast
 
 from workbench.commands.terminal import print_text
+from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.errors import InputError, Problem, nearest
 
 
@@ -110,13 +111,13 @@ def relative_size(option: str) -> Callable[[str], float]:
             number = float(text)
         except ValueError:
             number = math.nan
-        if not (math.isfinite(number) and number >= 0.0):
+        if not (is_workable(number) and 0.0 <= number <= LARGEST_FACTOR):
             raise InputError(
                 Problem(
                     f"{option} is not a relative size",
                     option,
                     repr(text),
-                    "0 or more; 0.10 is ten per cent",
+                    "0, or 1e-100 to 1e6; 0.10 is ten per cent",
                     f"{option} 0.10",
                 )
             )

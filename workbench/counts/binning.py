@@ -8,12 +8,12 @@ from typing import Self
 import numpy as np
 import numpy.typing as npt
 
+from workbench.counts.magnitudes import LARGEST
 from workbench.counts.places import Places, number_text
 from workbench.errors import InputError, Problem
 
 Array = npt.NDArray[np.float64]
 
-LARGEST = 1e100  # in size; beyond it the squares and sums of later steps would overflow
 FINITE = "finite numbers, at most 1e100 in size"
 
 

@@ -13,8 +13,9 @@ from typing import NamedTuple
 import numpy as np
 import numpy.typing as npt
 
-from workbench.counts.binning import FINITE, LARGEST, Binning, order_problems
+from workbench.counts.binning import FINITE, Binning, order_problems
 from workbench.counts.files import digest_of, read_bytes, text_of
+from workbench.counts.magnitudes import LARGEST
 from workbench.counts.places import Places, as_written, listed
 from workbench.counts.table import BIN_COLUMNS, ERROR_ENDING, Table, name_problems, value_problems
 from workbench.errors import InputError, Problem

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from workbench.counts.magnitudes import WORKABLE, is_workable
 from workbench.counts.table import Table, negative_template_problem
 from workbench.errors import Caution, InputError, Problem, nearest
 
@@ -98,6 +99,16 @@ def _choice_problems(region: Region) -> list[Problem]:
                 f"{where}, empty_bin_events",
                 str(events),
                 "a number > 0",
+                "give a small number of events such as 0.1, or leave it out",
+            )
+        )
+    elif events is not None and not is_workable(events):
+        problems.append(
+            Problem(
+                "Events for empty bins too many or too few to be worked with",
+                f"{where}, empty_bin_events",
+                str(events),
+                WORKABLE,
                 "give a small number of events such as 0.1, or leave it out",
             )
         )

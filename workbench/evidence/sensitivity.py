@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from workbench.errors import InputError
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.quadrature import Grid, integrate, integrate_again
@@ -45,8 +46,11 @@ def sensitivities(
 
 
 def _scaled(model: Model, index: int, factor: float) -> Model | None:
-    """Return the model with one prior's width scaled; None where its family has none."""
-    prior = model.coordinates[index].prior.scaled(factor)
+    """Return the model with one prior's width scaled; None where there is no such prior of its family."""
+    try:
+        prior = model.coordinates[index].prior.scaled(factor)
+    except InputError:  # too wide, too narrow or too far to be worked with
+        return None
     if prior is None:
         return None
     coordinates = list(model.coordinates)

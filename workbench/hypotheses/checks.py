@@ -5,11 +5,12 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping
 
+from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.hypotheses.checks_processes import process_faults
-from workbench.hypotheses.checks_uncertainties import uncertainty_faults
+from workbench.hypotheses.checks_uncertainties import overlarge_change, uncertainty_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
-from workbench.hypotheses.faults import Fault, quoted, shown
+from workbench.hypotheses.faults import Fault, KeyPath, number_fault, quoted, shown
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.unknown_names import nearest_name, unknown_fault
 
@@ -101,6 +102,18 @@ def _exposure_faults(exposure: Exposure | None) -> Iterator[Fault]:
             "a relative size >= 0: 0.02 is two per cent",
             "write the size without a sign",
         )
+    for key, number in (("collected", exposure.collected), ("uncertainty", size)):
+        yield from _too_far(("exposure", key), number)
+    if size is not None and is_workable(size) and size > LARGEST_FACTOR:
+        yield overlarge_change(("exposure", "uncertainty"), size)
+
+
+def _too_far(path: KeyPath, number: float | None) -> Iterator[Fault]:
+    """Yield the fault of a finite number that is too large or too small to be worked with."""
+    if number is not None and abs(number) < math.inf:
+        fault = number_fault(path, number)
+        if fault is not None:
+            yield fault
 
 
 def _hypotheses_faults(declared: Declared) -> Iterator[Fault]:
@@ -118,6 +131,7 @@ def _hypothesis_faults(name: str, hypothesis: Hypothesis, declared: Declared) ->
             "a number > 0, relative to the other hypotheses",
             "write a number above 0, or leave out a hypothesis that is ruled out",
         )
+    yield from _too_far(("hypotheses", name, "prior"), hypothesis.prior)
     if not hypothesis.processes:
         yield Fault(
             ("hypotheses", name, "processes"),
@@ -170,3 +184,4 @@ def _fix_faults(name: str, hypothesis: Hypothesis, declared: Declared) -> Iterat
                 "a finite number",
                 "write the value that it is held at",
             )
+        yield from _too_far(path, number)

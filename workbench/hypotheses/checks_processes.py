@@ -10,7 +10,16 @@ from workbench.counts.region import Region
 from workbench.errors import nearest
 from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
-from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shortened, shown
+from workbench.hypotheses.faults import (
+    Fault,
+    KeyPath,
+    dotted,
+    field_path,
+    number_fault,
+    quoted,
+    shortened,
+    shown,
+)
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, product_range, reaches_of
@@ -148,18 +157,14 @@ def _atom(
             yield unknown_fault((*path, "parameter"), "parameter", one.parameter, declared.parameters)
         yield from at_faults(path, one.at, len(one.values), "values")
         yield from interpolation_faults(path, one.parameter, one.at, reaches)
-        if not all(math.isfinite(value) for value in one.values):
-            yield Fault(
-                (*path, "values"),
-                "Values that are not finite",
-                shown(one.values),
-                "finite numbers",
-                "write finite numbers",
-            )
-    elif not math.isfinite(one):
-        yield Fault(
-            path, "A number that is not finite", shown(one), "a finite number", "write a finite number"
-        )
+        yield from _size_faults((*path, "values"), one.values)
+    else:
+        yield from _size_faults(path, (one,))
+
+
+def _size_faults(path: KeyPath, numbers: tuple[float, ...]) -> Iterator[Fault]:
+    """Yield the fault of the first number that is not finite, too large or too small."""
+    yield from [fault for one in numbers if (fault := number_fault(path, one)) is not None][:1]
 
 
 def at_faults(path: KeyPath, at: tuple[float, ...], number: int, what: str) -> Iterator[Fault]:
@@ -180,7 +185,8 @@ def at_faults(path: KeyPath, at: tuple[float, ...], number: int, what: str) -> I
             "at least two",
             "add a point, or write the number alone",
         )
-    if not all(math.isfinite(one) for one in at) or any(a >= b for a, b in itertools.pairwise(at)):
+    yield from _size_faults((*path, "at"), at)
+    if any(math.isnan(one) for one in at) or any(a >= b for a, b in itertools.pairwise(at)):
         yield Fault(
             (*path, "at"),
             "Points of an interpolation that do not ascend",

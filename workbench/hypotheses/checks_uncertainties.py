@@ -5,9 +5,10 @@ from __future__ import annotations
 import math
 from collections.abc import Collection, Iterator
 
+from workbench.counts.magnitudes import LARGEST_FACTOR
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.effects import regions_acted_on
-from workbench.hypotheses.faults import Fault, KeyPath, quoted, shown
+from workbench.hypotheses.faults import Fault, KeyPath, number_fault, quoted, shown
 from workbench.hypotheses.processes import Process
 from workbench.hypotheses.shapes import Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
@@ -119,8 +120,8 @@ def _sizes(
     else:
         sides = {"up": effect.up} if effect.down is None else {"up": effect.up, "down": effect.down}
         for side, size in sides.items():
-            if not (math.isfinite(size) and size > -1):
-                where = single if effect.down is None else (*single, side)
+            where = single if effect.down is None else (*single, side)
+            if not (-1 < size < math.inf):
                 yield Fault(
                     where,
                     "An effect that takes away everything or more",
@@ -128,6 +129,23 @@ def _sizes(
                     "a relative change > -1: 0.10 is ten per cent",
                     "write a number above -1",
                 )
+                continue
+            fault = number_fault(where, size)
+            if fault is not None:
+                yield fault
+            elif size > LARGEST_FACTOR:
+                yield overlarge_change(where, size)
+
+
+def overlarge_change(path: KeyPath, size: float) -> Fault:
+    """Return the fault of a relative change of more than a factor of a million."""
+    return Fault(
+        path,
+        "An effect of more than a factor of a million",
+        shown(size),
+        f"a relative change of at most {LARGEST_FACTOR:,.0f}: 0.10 is ten per cent",
+        "write the change relative to the nominal events",
+    )
 
 
 def _variation(

@@ -5,10 +5,12 @@ A fault knows the key path only; the reader of a file adds the file and the line
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
+from workbench.counts.magnitudes import WORKABLE, is_workable
 from workbench.errors import Problem
 
 KeyPath = tuple[str | int, ...]
@@ -31,6 +33,18 @@ class Fault:
     def problem(self, place: Place) -> Problem:
         """Return the problem with its place in words."""
         return Problem(self.what, place(self.path), self.found, self.expected, self.remedy)
+
+
+def number_fault(path: KeyPath, number: float) -> Fault | None:
+    """Return the fault of a number that is not finite, too large or too small; None where it is neither."""
+    if is_workable(number):
+        return None
+    if not abs(number) < math.inf:
+        what = "A number that is not finite"
+        return Fault(path, what, shown(number), "a finite number", "write a finite number")
+    what = f"A number too {'large' if abs(number) > 1 else 'small'} to be worked with"
+    remedy = "write it in other units" if abs(number) > 1 else "write 0, or use other units"
+    return Fault(path, what, shown(number), WORKABLE, remedy)
 
 
 def dotted(path: KeyPath) -> str:

@@ -13,6 +13,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.counts.magnitudes import WORKABLE, is_workable
 from workbench.errors import InputError, Problem
 from workbench.hypotheses.jets import Derivatives
 
@@ -231,17 +232,16 @@ def refuse(family: str, *faults: tuple[bool, str, object, str, str]) -> None:
 
 
 def numbers_faults(**numbers: float) -> list[tuple[bool, str, object, str, str]]:
-    """Return the faults of numbers that are not finite."""
-    return [
-        (
-            not np.isfinite(value),
-            f"The prior's {name} is not finite",
-            value,
-            "a finite number",
-            f"give {name}",
-        )
-        for name, value in numbers.items()
-    ]
+    """Return the faults of numbers that are not finite, or too large or too small to be worked with."""
+    faults: list[tuple[bool, str, object, str, str]] = []
+    for name, value in numbers.items():
+        is_finite = bool(abs(value) < np.inf)
+        what = f"The prior's {name} is not finite"
+        faults.append((not is_finite, what, value, "a finite number", f"give {name}"))
+        what = f"The prior's {name} is too large or too small to be worked with"
+        remedy = f"write {name} nearer to what is expected, or use other units"
+        faults.append((is_finite and not is_workable(value), what, value, WORKABLE, remedy))
+    return faults
 
 
 def positive_fault(name: str, value: float) -> tuple[bool, str, object, str, str]:

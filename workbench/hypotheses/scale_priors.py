@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.hypotheses.jets import Derivatives
 from workbench.hypotheses.prior_family import (
     LN_SQRT_TWO_PI,
@@ -178,6 +179,13 @@ class LogNormal(PositivePrior):
                 self.factor,
                 "a number above 1: one standard deviation multiplies by it",
                 "write 1.2 for twenty per cent",
+            ),
+            (
+                is_workable(self.factor) and self.factor > LARGEST_FACTOR,
+                "The prior's factor is above a million",
+                self.factor,
+                f"at most {LARGEST_FACTOR:,.0f}: one standard deviation multiplies by it",
+                "narrow the prior, or use loguniform with a range",
             ),
         )
 
