@@ -227,6 +227,24 @@ def test_two_sided_uncertainties_are_their_integral(effect: tuple[float, float])
     assert abs(value(weigh(plain).evidences[0])[0] - exact) > 10.0 * error
 
 
+@pytest.mark.parametrize("effect", [(0.2, -0.1), (0.3, -0.05), (0.3, -0.1), (0.5, -0.2)], ids=str)
+@pytest.mark.parametrize("scale", [1.0, 10.0, 100.0])
+def test_sizes_that_differ_up_and_down_are_established(effect: tuple[float, float], scale: float) -> None:
+    """The knee at 0 put Laplace up to 0.4 off, and an evidence with one such source was not established."""
+    columns = {"background": [10.0 * scale, 20.0 * scale], "signal": [3.0 * scale**0.5, 2.0 * scale**0.5]}
+    region = several_bins("r", [np.round(11.0 * scale), np.round(22.0 * scale)], columns)
+    analysis = templates(region, Exponential(1.0), (source("size", background=effect),))
+    for evidence in weigh(analysis).evidences:
+        model = compile_model(analysis, evidence.hypothesis)
+        rules = {
+            "size": standard_normal(60),
+            "strength": under(Exponential(1.0), *np.linspace(0.0, 8.0, 33), 30.0),
+        }
+        found, error = value(evidence)
+        # A knee leaves the weights a tail, and with it pulls that are wider than normal.
+        assert abs(found - ln_evidence(model, rules)) < 5.0 * error + 0.01
+
+
 def test_variations_on_one_side_are_asked_about() -> None:
     region = several_bins("r", [14.0, 22.0], {"background": [10.0, 20.0], "signal": [3.0, 2.0]})
     one_sided = templates(region, Exponential(1.0), (source("size", background=(0.3, 0.1)),))

@@ -51,8 +51,8 @@ class Bending:
 
     @property
     def bent_most(self) -> int:
-        """Return the direction whose ridge curves or leans most."""
-        return int(np.argmax(self._bends))
+        """Return the direction whose ridge curves, leans or is pointed most."""
+        return int(np.argmax(self._bends + np.abs(np.diag(self.fourth))))
 
     @property
     def is_beyond_third_order(self) -> bool:

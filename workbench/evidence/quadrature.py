@@ -59,7 +59,9 @@ class Grid:
 
 
 @np.errstate(all="ignore")  # an impossible point has ln probability -inf, and a step to it is shortened
-def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE) -> Grid | None:
+def integrate(
+    model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE, *, along_ridge: bool = False
+) -> Grid | None:
     """Return the quadrature of a hypothesis' evidence with its nodes.
 
     Peaks are located first: panels follow the angle between neighbouring signals, so that no resolution
@@ -70,6 +72,7 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
         model: a hypothesis.
         counts: (bin,) observed counts [events].
         near: standard coordinates by name to start from, such as another hypothesis' mode.
+        along_ridge: True follows the most bent nuisance direction node by node whatever it is like.
 
     Returns:
         The grid of nodes with ln evidence and error; None where it would take more nodes than can be held.
@@ -90,7 +93,7 @@ def integrate(model: Model, counts: Array, near: Mapping[str, float] = _NOWHERE)
             break
         columns = _extended(integrand, axes, columns, finer)
         axes = finer
-    return _summed(integrand, axes, columns, _bending(integrand, columns))
+    return _summed(integrand, axes, columns, _bending(integrand, columns, along_ridge))
 
 
 @np.errstate(all="ignore")
@@ -195,7 +198,7 @@ def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend
     )
 
 
-def _bending(integrand: Integrand, columns: Columns) -> Bending | None:
+def _bending(integrand: Integrand, columns: Columns, along_ridge: bool) -> Bending | None:
     """Return how the nuisance coordinates depart from a Gaussian at the best node; None without any."""
     nuisance = integrand.nuisance
     if nuisance.size == 0:
@@ -214,7 +217,7 @@ def _bending(integrand: Integrand, columns: Columns) -> Bending | None:
     if np.linalg.eigvalsh(-hessian).min() <= 0.0:
         return None
     bend = bending(hessians_at, hessian)
-    if not bend.is_beyond_third_order:
+    if not (along_ridge or bend.is_beyond_third_order):
         return bend
     bend = bend.led_by(bend.bent_most)
     turned = Turned(objective, centre, nuisance, bend.outward)
