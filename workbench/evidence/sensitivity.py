@@ -9,6 +9,7 @@ from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.quadrature import Grid, integrate, integrate_again
 from workbench.evidence.results import Evidence, ScaledPrior
+from workbench.evidence.reweighting import ln_change
 from workbench.likelihood.model import Model
 
 
@@ -17,7 +18,8 @@ def sensitivities(
 ) -> tuple[ScaledPrior, ...]:
     """Return ln B with the prior of each strength half and twice as wide.
 
-    The evidence is integrated again under the other prior; its change is added to the reported ln B.
+    The quadrature's nodes are summed under the other prior, or made again where they do not reach far enough;
+    the change is added to the reported ln B.
 
     Args:
         model: the compiled hypothesis.
@@ -66,6 +68,7 @@ def _ln_evidence(model: Model | None, grid: Grid | None, index: int) -> float | 
         rates = linear_rates(model)
         return None if rates is None else exact_ln_evidence(rates, model.observed)
     if index == grid.integrand.inner:
-        return integrate_again(model, grid).ln_evidence
+        change = ln_change(grid, model.coordinates[index].prior)
+        return integrate_again(model, grid).ln_evidence if change is None else grid.ln_evidence + change
     again = integrate(model, model.observed, grid.mode)
     return None if again is None else again.ln_evidence
