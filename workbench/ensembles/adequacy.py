@@ -22,6 +22,7 @@ _TOLERANCE = 1e-4
 _SAME = 4.0 * _TOLERANCE  # the same counts fitted twice may differ by this much in T, and count as equal
 
 
+@np.errstate(all="ignore")  # an impossible point has ln probability -inf, and a step to it is shortened
 def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000) -> Adequacy:
     """Return how often pseudo-experiments from a hypothesis fit it worse than the observed counts do.
 

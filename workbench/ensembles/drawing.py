@@ -14,6 +14,7 @@ Array = npt.NDArray[np.float64]
 
 BLOCK = 100
 _MOST_EVENTS = 1e15  # the generator draws no larger counts; an uncertainty of a factor of 1e99 asks for them
+_SMALLEST_SHAPE = 1e-300
 
 
 def pseudo_experiments(
@@ -81,5 +82,6 @@ def draw_counts(model: Model, values: Array, generator: np.random.Generator) -> 
     if variance is not None:
         noisy = noisy_bins(expected, variance)
         shape = np.where(noisy, expected**2 / np.where(noisy, variance, 1.0), 1.0)
+        shape = np.clip(np.nan_to_num(shape), _SMALLEST_SHAPE, 1.0 / _SMALLEST_SHAPE)
         expected = np.where(noisy, generator.gamma(shape) / shape, 1.0) * expected
-    return generator.poisson(np.minimum(expected, _MOST_EVENTS)).astype(float)
+    return generator.poisson(np.clip(np.nan_to_num(expected), 0.0, _MOST_EVENTS)).astype(float)

@@ -33,6 +33,7 @@ class PriorPredictive:
     total_high: float
 
 
+@np.errstate(all="ignore")  # expectations beyond what can be drawn are drawn at the largest mean
 def prior_predictive(
     analysis: Analysis, hypothesis: str, *, seed: int = 1, draws: int = 400
 ) -> PriorPredictive:

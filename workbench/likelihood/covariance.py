@@ -15,6 +15,7 @@ Flags = npt.NDArray[np.bool_]
 LIMIT_SHARE = 1e-4
 _FLAT = 1e-6
 _IN_A_FLAT_DIRECTION = 0.01
+_LARGEST = 1e150  # beyond it, and with nan, there is no inverse
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -75,13 +76,15 @@ def spread(objective: FitObjective, best: Array, counts: Array, scale: Array) ->
     pressed = (near_low & (gradient < 0.0)) | (near_high & (gradient > 0.0))
     covariance, flat = np.zeros_like(curvature), np.zeros(best.size, dtype=bool)
     free = np.flatnonzero(~pressed)
-    if free.size:
-        unit = scale[free]
-        values, vectors = np.linalg.eigh(curvature[np.ix_(free, free)] * np.outer(unit, unit))
+    unit = scale[free]
+    scaled = curvature[np.ix_(free, free)] * np.outer(unit, unit)
+    if free.size and (np.abs(scaled) <= _LARGEST).all():
+        values, vectors = np.linalg.eigh(scaled)
         weak = values < _FLAT * max(1.0, float(np.abs(values).max()) * _FLAT)
         flat[free] = (vectors[:, weak] ** 2).sum(axis=1) > _IN_A_FLAT_DIRECTION
         firm = np.flatnonzero(~flat[free])
         inverse = (vectors[:, ~weak] / values[~weak]) @ vectors[:, ~weak].T
         sure = free[firm]
-        covariance[np.ix_(sure, sure)] = inverse[np.ix_(firm, firm)] * np.outer(unit[firm], unit[firm])
+        found = inverse[np.ix_(firm, firm)] * np.outer(unit[firm], unit[firm])
+        covariance[np.ix_(sure, sure)] = found if np.isfinite(found).all() else 0.0
     return Spread(covariance, near_low | near_high, pressed, flat)

@@ -28,6 +28,7 @@ _CLIMBS = 3
 _STARTS = 12
 
 
+@np.errstate(all="ignore")  # an impossible point has ln probability -inf, and a step to it is shortened
 def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
     """Return the maximum likelihood fit of a hypothesis to the observed counts.
 
@@ -59,11 +60,19 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
     points, values, converged = best_points(search, counts[None], tolerance=1e-9, climbs=_STARTS)
     if not np.isfinite(values[0]):
         return unsupported(model, points[0])
+    if not _is_smooth(search, points[0], counts):
+        return findings(model, _summit(search, points[0], counts), Ending.NOT_CONVERGED, {})
     if converged[0] and not asymmetric:
         summit = _summit(search, points[0], counts)
         return findings(model, summit, _ending(True, summit), {})
     summit, found, is_sure = _climb(search, points[0], counts, asymmetric)
     return findings(model, summit, _ending(is_sure or bool(converged[0]), summit), found)
+
+
+def _is_smooth(search: Searcher, point: Array, counts: Array) -> bool:
+    """Tell whether the point, and the derivatives there, are numbers that a minimiser can start from."""
+    _, gradient, hessian = search.objective.derivatives(point[None], counts)
+    return bool(np.isfinite(point).all() and np.isfinite(gradient).all() and np.isfinite(hessian).all())
 
 
 def _summit(search: Searcher, best: Array, counts: Array) -> Summit:

@@ -14,6 +14,7 @@ Flags = npt.NDArray[np.bool_]
 Indices = npt.NDArray[np.intp]
 
 _LONGEST_STEP = 4.0
+_LARGEST = 1e150  # beyond it the eigenvalues' iteration fails
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -149,6 +150,8 @@ def _steps(box: _Box, points: Array, gradients: Array, hessians: Array) -> tuple
         diagonal = np.arange(free.size)
         curvature[:, diagonal, diagonal] += np.where(pressed, 1.0 / unit**2, 0.0)
     step = solve_definite(curvature, gradient, unit)
+    is_lost = ~np.isfinite(step).all(axis=1)
+    step[is_lost] = 0.0
     longest = np.abs(step / unit).max(axis=1)
     step *= np.minimum(1.0, _LONGEST_STEP / np.maximum(longest, 1e-300))[:, None]
     steps[:, free] = step
@@ -156,7 +159,7 @@ def _steps(box: _Box, points: Array, gradients: Array, hessians: Array) -> tuple
     gain = np.maximum(
         0.5 * np.einsum("na,na->n", gradient, step), 0.5 * np.einsum("na,na->n", gradient, reach)
     )
-    return steps, np.where(np.isfinite(gain), gain, np.inf)
+    return steps, np.where(np.isfinite(gain) & ~is_lost, gain, np.inf)
 
 
 def solve_definite(matrices: Array, vectors: Array, unit: Array) -> Array:
@@ -168,7 +171,7 @@ def solve_definite(matrices: Array, vectors: Array, unit: Array) -> Array:
         unit: (coordinate,) a length for each coordinate, which sets what a small eigenvalue is.
 
     Returns:
-        (batch, coordinate) solutions.
+        (batch, coordinate) solutions; nan for a matrix with nan.
     """
     scaled = matrices * unit[:, None] * unit[None, :]
     right = vectors * unit
@@ -176,7 +179,10 @@ def solve_definite(matrices: Array, vectors: Array, unit: Array) -> Array:
         np.linalg.cholesky(scaled)
         return np.linalg.solve(scaled, right[..., None])[..., 0] * unit
     except np.linalg.LinAlgError:
-        values, axes = np.linalg.eigh(scaled)
+        usable = np.asarray(np.isfinite(scaled).all(axis=(1, 2)))
+        bounded = np.where(usable[:, None, None], scaled, np.eye(len(unit)))
+        values, axes = np.linalg.eigh(np.clip(bounded, -_LARGEST, _LARGEST))
+        right = np.where(usable[:, None], right, np.nan)
         floor = 1e-10 * np.maximum(np.abs(values).max(axis=1, keepdims=True), 1e-6)
         values = np.maximum(np.abs(values), floor)
         inner = np.einsum("nab,na->nb", axes, right) / values

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 
 import numpy as np
@@ -102,7 +103,8 @@ class Searcher:
         weighted = response / typical[:, None]
         stiffness = response.T @ weighted + np.eye(nuisance.size)
         projected = self.events / typical
-        projected = projected - (projected @ response) @ np.linalg.solve(stiffness, weighted.T)
+        with suppress(np.linalg.LinAlgError):  # where double precision fails, nothing is taken to be absorbed
+            projected = projected - (projected @ response) @ np.linalg.solve(stiffness, weighted.T)
         information = np.maximum(np.einsum("si,si->s", projected, self.events), 1e-300)
         amplitude = ((counts - expected) @ projected.T) / information
         positive = np.maximum(amplitude, 0.0)
@@ -142,7 +144,7 @@ def searcher(model: Model) -> Searcher:
     background = model.restricted("background", spare=True)
     only = model.restricted("signal", spare=False)
     centre = np.array([_centre(c) for c in model.coordinates], dtype=float)
-    scale = np.array([1.0 if c.role == "source" else c.prior.sd for c in model.coordinates], dtype=float)
+    scale = np.array([_length(c) for c in model.coordinates], dtype=float)
     grid = _candidates(model, centre)
     events = only.expected(only.natural_seeds(grid))[0] if model.signal.size else np.zeros((0, model.bins))
     return Searcher(fit_objective(model), fit_objective(background), centre, scale, grid, events)
@@ -150,6 +152,12 @@ def searcher(model: Model) -> Searcher:
 
 def _centre(coordinate: Coordinate) -> float:
     return 0.0 if coordinate.role == "source" else float(coordinate.prior.median)
+
+
+def _length(coordinate: Coordinate) -> float:
+    """Return the prior's sd, or where double precision gives none above 0 a length of the median's size."""
+    sd = 1.0 if coordinate.role == "source" else float(coordinate.prior.sd)
+    return sd if 0.0 < sd < np.inf else abs(_centre(coordinate)) or 1.0
 
 
 def _candidates(model: Model, centre: Array) -> Array:
