@@ -106,4 +106,7 @@ def _changes(analysis: Analysis, grids: Sequence[Grid]) -> str:
 
 def _sampled(grid: Grid) -> float:
     """Return ln evidence by sampling, the same random numbers for every reading."""
-    return sample(grid, np.random.SeedSequence(0), _DRAWS).ln_evidence
+    try:
+        return sample(grid, np.random.SeedSequence(0), _DRAWS).ln_evidence
+    except np.linalg.LinAlgError:  # numbers too far apart for double precision
+        return np.nan

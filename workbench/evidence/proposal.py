@@ -9,6 +9,7 @@ its tails a little heavier than normal.
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import product
@@ -263,7 +264,8 @@ def propose(grid: Grid) -> Proposal:
     responses = np.zeros((len(points), signal.size, nuisance.size))
     if nuisance.size and signal.size:
         cross = hessians[:, nuisance[:, None], signal[None, :]]
-        responses = np.swapaxes(np.linalg.solve(block, cross), 1, 2)
+        with suppress(np.linalg.LinAlgError):  # draws are as good without, only their weights less even
+            responses = np.swapaxes(np.linalg.solve(block, cross), 1, 2)
     places = points[:, signal]
     for slot, index in enumerate(integrand.outer):
         x, slope, _ = model.coordinates[index].prior.from_standard(places[:, slot])

@@ -75,11 +75,19 @@ def integrate(
         along_ridge: True follows the most bent nuisance direction node by node whatever it is like.
 
     Returns:
-        The grid of nodes with ln evidence and error; None where it would take more nodes than can be held.
+        The grid of nodes with ln evidence and error; None where it would take more nodes than can be held, or
+        where the numbers are too far apart for double precision.
 
     Limits:
         Nuisance coordinates far from Gaussian: the error says so, and the sampling pass corrects it.
     """
+    try:
+        return _integrated(model, counts, near, along_ridge)
+    except np.linalg.LinAlgError:
+        return None
+
+
+def _integrated(model: Model, counts: Array, near: Mapping[str, float], along_ridge: bool) -> Grid | None:
     landscape = survey(model, counts, near)
     integrand = Integrand(model, counts, landscape)
     outer = integrand.outer

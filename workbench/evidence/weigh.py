@@ -157,9 +157,16 @@ def weigh_hypothesis(
         return Weighed(model, _exactly(model, exact))
     grid = integrate(model, counts, near)
     if grid is None:
-        reason = "its signal coordinates need more nodes than can be held; fix some, or narrow their priors"
-        return Weighed(model, Evidence(model.hypothesis, None, None, False, reason, ()))
-    return _estimated(model, grid, seed, near)
+        return _unmanageable(model, "its signal coordinates need more nodes than can be held")
+    try:
+        return _estimated(model, grid, seed, near)
+    except np.linalg.LinAlgError:
+        return _unmanageable(model, "no draws can be made from what the quadrature found")
+
+
+def _unmanageable(model: Model, what: str) -> Weighed:
+    reason = f"{what}, or its numbers are too far apart; fix some parameters, or narrow their priors"
+    return Weighed(model, Evidence(model.hypothesis, None, None, False, reason, ()))
 
 
 def _estimated(model: Model, grid: Grid, seed: np.random.SeedSequence, near: Mapping[str, float]) -> Weighed:
