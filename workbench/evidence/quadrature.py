@@ -9,12 +9,11 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.evidence.axes import Axis, lay_out, standard
-from workbench.evidence.bending import Bending, bending
+from workbench.evidence.bending import Bending
+from workbench.evidence.departure import Departure, departure
 from workbench.evidence.nodes import Columns, Integrand
-from workbench.evidence.ridge import Turned, follow
 from workbench.evidence.search import survey
 from workbench.likelihood.model import Model
-from workbench.likelihood.objective import StandardObjective
 
 Array = npt.NDArray[np.float64]
 
@@ -33,7 +32,7 @@ class Grid:
         columns: nodes in the order of the axes' product, the last axis running fastest.
         ln_evidence: ln of the integral [nats].
         error: estimated error of the quadrature and of Laplace [nats].
-        bending: departure from the Gaussian at the best node, whose ln correction ln_evidence includes.
+        departure: departure from the Gaussian, whose ln correction ln_evidence includes.
     """
 
     integrand: Integrand
@@ -41,7 +40,12 @@ class Grid:
     columns: Columns
     ln_evidence: float
     error: float
-    bending: Bending | None
+    departure: Departure
+
+    @property
+    def bending(self) -> Bending | None:
+        """Return the departure from the Gaussian at the best node; None without any."""
+        return self.departure.bending
 
     @property
     def mode(self) -> dict[str, float]:
@@ -101,7 +105,7 @@ def _integrated(model: Model, counts: Array, near: Mapping[str, float], along_ri
             break
         columns = _extended(integrand, axes, columns, finer)
         axes = finer
-    return _summed(integrand, axes, columns, _bending(integrand, columns, along_ridge))
+    return _summed(integrand, axes, columns, departure(integrand, columns, along_ridge))
 
 
 @np.errstate(all="ignore")
@@ -110,14 +114,14 @@ def integrate_again(model: Model, grid: Grid) -> Grid:
 
     Args:
         model: the hypothesis of the grid, the prior of a strength changed.
-        grid: its quadrature, whose bending is kept, so that it cancels in the change.
+        grid: its quadrature, whose departure is kept, so that it cancels in the change.
 
     Returns:
         The grid with new columns.
     """
     integrand = replace(grid.integrand, model=model)
     columns = integrand.columns(_product([axis.nodes for axis in grid.axes]))
-    return _summed(integrand, grid.axes, columns, grid.bending)
+    return _summed(integrand, grid.axes, columns, grid.departure)
 
 
 def _product(nodes: list[Array]) -> Array:
@@ -186,7 +190,7 @@ def _extended(
     return columns.joined(integrand.columns(wanted[new])).take(order)
 
 
-def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend: Bending | None) -> Grid:
+def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, departed: Departure) -> Grid:
     top, field = _field(axes, columns)
     total = float(_contract(field, [axis.weights for axis in axes]))
     share = field / field.sum()
@@ -195,38 +199,11 @@ def _summed(integrand: Integrand, axes: tuple[Axis, ...], columns: Columns, bend
         for e in (_panel_errors(axes, field, which) / total for which in range(len(axes)))
     )
     inner_error = float((share.ravel() * columns.inner_error()).sum())
-    order, doubt = (0.0, 0.0) if bend is None else (bend.ln_correction, bend.doubt)
     return Grid(
         integrand,
         axes,
         columns,
-        top + float(np.log(total)) + order,
-        float(np.sqrt(outer_error**2 + inner_error**2 + doubt**2)),
-        bend,
+        top + float(np.log(total)) + departed.ln_correction,
+        float(np.sqrt(outer_error**2 + inner_error**2 + departed.doubt**2)),
+        departed,
     )
-
-
-def _bending(integrand: Integrand, columns: Columns, along_ridge: bool) -> Bending | None:
-    """Return how the nuisance coordinates depart from a Gaussian at the best node; None without any."""
-    nuisance = integrand.nuisance
-    if nuisance.size == 0:
-        return None
-    best = np.unravel_index(int(np.argmax(columns.ln_height)), columns.ln_height.shape)
-    centre = columns.points[best]
-    block = np.ix_(nuisance, nuisance)
-    objective = StandardObjective(integrand.model)
-
-    def hessians_at(offsets: Array) -> Array:
-        points = np.repeat(centre[None], len(offsets), axis=0)
-        points[:, nuisance] += offsets
-        return objective.derivatives(points, integrand.counts)[2][:, block[0], block[1]]
-
-    hessian = columns.hessians[best][block]
-    if np.linalg.eigvalsh(-hessian).min() <= 0.0:
-        return None
-    bend = bending(hessians_at, hessian)
-    if not (along_ridge or bend.is_beyond_third_order):
-        return bend
-    bend = bend.led_by(bend.bent_most)
-    turned = Turned(objective, centre, nuisance, bend.outward)
-    return replace(bend, ridge=follow(turned, integrand.counts, bend.third[1:, 0, 0]))

@@ -16,6 +16,8 @@ Array = npt.NDArray[np.float64]
 
 # The landscape only offers starting points.
 _ROUGHLY = 0.05
+# A source that moves yields the same way whatever its sign has a saddle at 0, where no step would leave it.
+_ASIDE = 0.05
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -66,13 +68,13 @@ def survey(model: Model, counts: Array, near: Mapping[str, float]) -> Landscape:
     Args:
         model: a hypothesis.
         counts: (bin,) observed counts [events].
-        near: standard coordinates by name to start from; 0 for those not named.
+        near: standard coordinates by name to start from; a little beside 0 for those not named.
 
     Returns:
         The landscape that starting points and node positions are read from; without signal coordinates just
         where it starts.
     """
-    start = np.array([0.0 if c.role == "signal" else near.get(c.name, 0.0) for c in model.coordinates])
+    start = np.array([0.0 if c.role == "signal" else near.get(c.name, _ASIDE) for c in model.coordinates])
     if model.signal.size == 0:
         nothing = np.zeros(0)
         return Landscape(start, nothing, nothing, nothing, nothing, nothing)
