@@ -145,6 +145,18 @@ def test_two_sided_uncertainties_are_their_integral(effect: tuple[float, float])
     assert abs(value(weigh(plain).evidences[0])[0] - exact) > 10.0 * error
 
 
+@pytest.mark.parametrize("effect", [(0.3, 0.1), (0.1, 0.2), (0.1, 0.1), (0.5, -0.05)], ids=str)
+def test_a_signal_beside_a_source_with_two_modes_or_a_knee_is_established(
+    effect: tuple[float, float],
+) -> None:
+    """Both ways up, the source has a saddle at 0 for small strengths and one maximum for large ones."""
+    region = several_bins("r", [14.0, 22.0], {"background": [10.0, 20.0], "signal": [3.0, 2.0]})
+    analysis = templates(region, Exponential(1.0), (source("size", background=effect),))
+    rules = {"strength": under(Exponential(1.0), 0.0, 40.0, nodes=80), "size": standard_normal(60)}
+    found, error = value(weigh(analysis).evidences[1])
+    assert abs(found - ln_evidence(compile_model(analysis, SIGNAL), rules)) < 5.0 * error
+
+
 @pytest.mark.parametrize("effect", [(0.2, -0.1), (0.3, -0.05), (0.3, -0.1), (0.5, -0.2)], ids=str)
 @pytest.mark.parametrize("scale", [1.0, 10.0, 100.0])
 def test_sizes_that_differ_up_and_down_are_established(effect: tuple[float, float], scale: float) -> None:
