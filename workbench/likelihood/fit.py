@@ -25,6 +25,7 @@ Array = npt.NDArray[np.float64]
 
 _HIGHER = 1e-6
 _CLIMBS = 3
+_MOST_CALLS = 1000  # with exact derivatives, and from where Newton's steps ended, a few dozen are enough
 _STARTS = 12
 
 
@@ -129,7 +130,7 @@ def _minimised(search: Searcher, start: Array, counts: Array) -> tuple[Array, bo
         (None if np.isinf(low) else low, None if np.isinf(high) else high)
         for low, high in zip(objective.low, objective.high, strict=True)
     ]
-    minuit.migrad()
+    minuit.migrad(ncall=_MOST_CALLS, iterate=1)
     reached = np.array(minuit.values, dtype=float)
     is_better = cost.value(reached) < cost.value(start) - 1e-9
     return (reached if is_better else start), bool(minuit.valid)

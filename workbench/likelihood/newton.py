@@ -72,7 +72,7 @@ def maximise(
     shrink = np.ones(len(points))
     steps, gain = _steps(box, points, gradients, hessians)
     converged = (gain <= tolerance) & np.isfinite(values)
-    active = np.flatnonzero(gain > tolerance)
+    active = np.flatnonzero((gain > tolerance) & steps.any(axis=1))
     for _ in range(most):
         if active.size == 0:
             break
@@ -92,7 +92,7 @@ def maximise(
                 box.of(moved), points[moved], gradients[moved], hessians[moved]
             )
         converged[moved] = (gain[moved] <= tolerance) & np.isfinite(values[moved])
-        active = active[~converged[active] & (shrink[active] > 1e-9)]
+        active = active[~converged[active] & (shrink[active] > 1e-9) & steps[active].any(axis=1)]
     return Maxima(points, values, np.where(converged, gain, 0.0), gradients, hessians, converged)
 
 
