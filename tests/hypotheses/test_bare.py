@@ -105,3 +105,35 @@ def test_a_prior_on_the_command_line_is_read_or_refused(text: str, where: str, w
     with pytest.raises(wb.InputError) as refusal:
         parse_prior(text)
     assert [(problem.where, problem.what) for problem in refusal.value.problems] == [(where, what)]
+
+
+def test_a_prior_without_its_outer_braces_is_shown_with_them() -> None:
+    """Only "unreadable value" was said where the outer braces had been forgotten."""
+    with pytest.raises(wb.InputError) as refusal:
+        parse_prior("uniform = { low = 0, high = 5 }")
+    assert str(refusal.value) == (
+        "A prior without its outer braces\n"
+        "  where     --strength\n"
+        '  found     "uniform = { low = 0, high = 5 }": no { before it and no } after it\n'
+        "  expected  { FAMILY = { ... } }, braces included\n"
+        "  try       write '{ uniform = { low = 0, high = 5 } }', the quotes for the shell"
+    )
+
+
+@pytest.mark.parametrize(
+    ("text", "missing"),
+    [
+        ("uniform(0, 5)", "no { at its start"),
+        ("{ uniform = { low = 0, high = 5 }", "unclosed inline table"),
+        ("{ uniform { low = 0 } }", "expected = after a key in a key/value pair"),
+    ],
+)
+def test_a_prior_that_cannot_be_read_says_what_is_missing_and_shows_one_that_can(
+    text: str, missing: str
+) -> None:
+    with pytest.raises(wb.InputError) as refusal:
+        parse_prior(text)
+    (problem,) = refusal.value.problems
+    assert problem.found == f'"{text}": {missing}'
+    shown = problem.remedy.split("'")[1]
+    assert parse_prior(shown) == wb.Uniform(0.0, 5.0)

@@ -10,11 +10,12 @@ from typing import Any
 import numpy as np
 
 from workbench.errors import InputError, nearest
-from workbench.hypotheses.faults import Fault, quoted, shown, toml_fault_text
+from workbench.hypotheses.faults import Fault, printable, quoted, shown, toml_fault_text
 from workbench.hypotheses.keys import Findings, Section
 from workbench.hypotheses.priors import FAMILIES, Prior
 
 PRIOR = "{ FAMILY = { ... } }"
+EXAMPLE = "{ uniform = { low = 0, high = 5 } }"
 IMPROPER = "a finite number: a prior without end cannot be normalised, and the evidence would be 0"
 
 
@@ -109,14 +110,7 @@ def parse_prior(text: str, shown_as: str = "--strength") -> Prior:
     try:
         content = tomllib.loads("prior = " + text)
     except (ValueError, RecursionError) as error:
-        fault = Fault(
-            ("prior",),
-            "A prior that cannot be read",
-            shown(text),
-            f"TOML: {PRIOR}",
-            f"quote the whole value for the shell; {_reason(error)}",
-        )
-        raise InputError(fault.problem(findings.place)) from error
+        raise InputError(_unreadable(text, error).problem(findings.place)) from error
     if len(content) > 1:
         fault = Fault(
             ("prior",), "More than one value where a prior belongs", shown(text), PRIOR, "give one prior"
@@ -128,7 +122,28 @@ def parse_prior(text: str, shown_as: str = "--strength") -> Prior:
     return prior
 
 
+def _unreadable(text: str, error: Exception) -> Fault:
+    """Return what keeps a text from being an inline TOML table, and a text that is one."""
+    what, missing, whole = "A prior that cannot be read", _reason(error), EXAMPLE
+    if _is_inside_of_a_table(text):
+        what, missing = "A prior without its outer braces", "no { before it and no } after it"
+        whole = f"{{ {printable(text.strip())} }}"
+    elif not text.strip().startswith("{"):
+        missing = "no { at its start"
+    remedy = f"write '{whole}', the quotes for the shell"
+    return Fault(("prior",), what, f"{shown(text)}: {missing}", f"{PRIOR}, braces included", remedy)
+
+
+def _is_inside_of_a_table(text: str) -> bool:
+    """Tell whether outer braces are all that is missing."""
+    try:
+        inner = tomllib.loads(f"prior = {{ {text} }}")["prior"]
+    except (ValueError, RecursionError):
+        return False
+    return isinstance(inner, dict) and len(inner) == 1 and isinstance(next(iter(inner.values())), dict)
+
+
 def _reason(error: Exception) -> str:
     if isinstance(error, RecursionError):
-        return "its brackets are nested too deeply"
-    return toml_fault_text(str(error).partition(" (at ")[0]).lower()
+        return "brackets nested too deeply"
+    return toml_fault_text(str(error).partition(" (at ")[0]).lower().replace("'='", "=")
