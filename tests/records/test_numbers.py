@@ -20,6 +20,7 @@ from workbench.records.numbers import (
     with_error,
     with_errors,
     with_sides,
+    with_two_digits,
 )
 
 
@@ -140,3 +141,12 @@ def test_odds_read_back_are_the_odds(ln_odds: float, ln_error: float | None) -> 
     plain = mantissa.removesuffix(" × ").split(" ±")[0]
     read = math.log(float(plain or "1")) + math.log(10.0) * float(power or 0.0)
     assert sign * read == pytest.approx(ln_odds, abs=max(0.06, ln_error or 0.0))
+
+
+def test_numbers_beyond_double_precision_are_shown_by_their_power_of_ten() -> None:
+    """ln evidences of 10^157 once filled three lines with digits that mean nothing."""
+    assert fixed(-1.2345678e157, 3) == "−1.23457 × 10^157"
+    assert fixed(9007199254740992.0, 0) == "9,007,199,254,740,992"
+    assert with_two_digits(3e-20, 1e-20) == "(3.0 ± 1.0) × 10^−20"
+    assert with_sides(3e-20, -1e-20, None) == "3.00 × 10^−20 no error above −1.00 × 10^−20"
+    assert odds(-1e160) == "1 : 10^(4.34 × 10^159)"

@@ -11,6 +11,8 @@ from collections.abc import Sequence
 _LN_10 = math.log(10.0)
 _PLAIN_BELOW = math.log(1e6)  # longer numbers are read wrongly, so they are shown by their power of ten
 _PLAIN_ABOVE = math.log(1e-4)
+_MEANINGLESS = 1e16
+_LEAST_PLAIN = 1e-8
 
 
 def decimals_for(error: float) -> int:
@@ -31,9 +33,14 @@ def decimals_for(error: float) -> int:
 
 
 def fixed(value: float, decimals: int) -> str:
-    """Return a number with so many decimals, thousands grouped; negative decimals round to tens and up."""
+    """Return a number with so many decimals, thousands grouped; negative decimals round to tens and up.
+
+    From 10^16 on double precision has no digit left for a unit: then six digits and the power of ten.
+    """
     if not math.isfinite(value):
         return "no number"
+    if abs(value) >= _MEANINGLESS:
+        return significant(value, 6)
     rounded = round(value, decimals)
     text = f"{rounded:,.{max(decimals, 0)}f}"
     if text.strip("-0.,") == "":
@@ -112,14 +119,22 @@ def with_sides(value: float, low: float | None, high: float | None) -> str:
         low: its error downwards, negative; None where there is none.
         high: its error upwards; None where there is none.
     """
+    size = max(abs(value), abs(low or 0.0), abs(high or 0.0))
     decimals = _two_digits([low, high])
-    up = f"+{fixed(high, decimals)}" if high is not None else "no error above"
-    down = f"−{fixed(abs(low), decimals)}" if low is not None else "no error below"
-    return f"{fixed(value, decimals)} {up} {down}"
+    is_plain = size == 0.0 or _LEAST_PLAIN <= size < _MEANINGLESS
+    texts = [
+        fixed(one, decimals) if is_plain else significant(one)
+        for one in (value, high or 0.0, abs(low or 0.0))
+    ]
+    up = f"+{texts[1]}" if high is not None else "no error above"
+    down = f"−{texts[2]}" if low is not None else "no error below"
+    return f"{texts[0]} {up} {down}"
 
 
 def with_two_digits(value: float, error: float) -> str:
     """Return "value ± error" with two digits of the error, for parameters listed below each other."""
+    if not _LEAST_PLAIN <= max(abs(value), error) < _MEANINGLESS:
+        return with_error(value, error)
     decimals = _two_digits([error])
     return f"{fixed(value, decimals)} ± {fixed(error, decimals)}"
 
@@ -200,4 +215,6 @@ def probability(value: float, rest: float, error: float | None = None) -> str:
 
 
 def _power(exponent: int) -> str:
-    return str(exponent).replace("-", "−")
+    if abs(exponent) < _MEANINGLESS:
+        return str(exponent).replace("-", "−")
+    return f"({significant(float(exponent))})"
