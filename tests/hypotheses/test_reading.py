@@ -343,6 +343,20 @@ def test_template_bins_below_zero_are_set_to_zero_only_where_asked(tmp_path: Pat
     assert codes(analysis) == ["negative-template-zeroed"]
 
 
+def test_template_bins_below_zero_are_told_of_beside_other_faults_unless_they_are_set_to_zero(
+    tmp_path: Path,
+) -> None:
+    """The table's own faults hid what the region refuses, which came up only once they were mended."""
+    (tmp_path / "t.csv").write_text(TABLE.replace("60,80,3,0,", "60,80,3.5,-1,"))
+    text = LINE.replace(
+        "edges = [20, 40, 60, 80]\nobserved = [12, 7, 3]", 'table = "t.csv"\ntemplate_errors = true'
+    )
+    whats = ["Observed counts that are not whole numbers", "Template bins below zero"]
+    assert [what for what, _ in problems(text, tmp_path)] == whats
+    zeroed = text.replace("template_errors", 'negative_templates = "zero"\ntemplate_errors')
+    assert [what for what, _ in problems(zeroed, tmp_path)] == whats[:1]
+
+
 def test_lines_are_found_in_every_layout_that_toml_allows() -> None:
     text = """# [not.a.header]
 title = "a = 1 # no comment"

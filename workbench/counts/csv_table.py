@@ -17,7 +17,14 @@ from workbench.counts.binning import FINITE, Binning, order_problems
 from workbench.counts.files import digest_of, read_bytes, text_of
 from workbench.counts.magnitudes import LARGEST
 from workbench.counts.places import Places, as_written, listed
-from workbench.counts.table import BIN_COLUMNS, ERROR_ENDING, Table, name_problems, value_problems
+from workbench.counts.table import (
+    BIN_COLUMNS,
+    ERROR_ENDING,
+    Table,
+    name_problems,
+    negative_template_problems,
+    value_problems,
+)
 from workbench.errors import InputError, Problem
 
 Array = npt.NDArray[np.float64]
@@ -33,7 +40,7 @@ class _Line:
     cells: tuple[str, ...]
 
 
-def read_csv_table(path: Path, shown: str | None = None) -> Table:
+def read_csv_table(path: Path, shown: str | None = None, *, negative_templates: str = "refuse") -> Table:
     """Return the histogram that a CSV or TSV file holds.
 
     The first line names the columns: `low`, `high`, `observed` (left out when planning), then one column a
@@ -44,6 +51,8 @@ def read_csv_table(path: Path, shown: str | None = None) -> Table:
     Args:
         path: the file.
         shown: its name as the user gave it, for messages and records; the path itself if left out.
+        negative_templates: the choice of the region that the table is for. It refuses template bins below
+            zero itself; where the table is refused already, they are told of together with the rest.
 
     Returns:
         The table, with the line of every bin and the digest of the file's bytes.
@@ -66,10 +75,10 @@ def read_csv_table(path: Path, shown: str | None = None) -> Table:
     rows = [row for row in rows if len(row.cells) == len(names)]
     cells = {name: [row.cells[index] for row in rows] for index, name in enumerate(names)}
     places = Places(shown, tuple(row.number for row in rows), cells, header.number)
-    return _table(places, digest_of(data), problems)
+    return _table(places, digest_of(data), problems, may_be_negative=negative_templates == "zero")
 
 
-def _table(places: Places, digest: str, problems: list[Problem]) -> Table:
+def _table(places: Places, digest: str, problems: list[Problem], *, may_be_negative: bool) -> Table:
     """Return the table from its cells, or raise what is wrong with them beside the problems known so far."""
     parsed = {name: _numbers(name, places) for name in places.cells}
     numbers = {name: values for name, (values, _) in parsed.items()}
@@ -85,7 +94,7 @@ def _table(places: Places, digest: str, problems: list[Problem]) -> Table:
     problems += order_problems(numbers["low"], numbers["high"], places)
     problems += value_problems(observed, errors, places)
     if problems:
-        raise InputError(*problems)
+        raise InputError(*problems, *([] if may_be_negative else negative_template_problems(columns, places)))
     binning = Binning(numbers["low"], numbers["high"])
     return Table(binning, observed, columns, errors, places.source, digest, places.lines)
 

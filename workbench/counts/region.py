@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from workbench.counts.magnitudes import WORKABLE, is_workable
-from workbench.counts.table import Table, negative_template_problem
+from workbench.counts.table import Table, negative_template_problems
 from workbench.errors import Caution, InputError, Problem, nearest
 
 NEGATIVE_TEMPLATES = ("refuse", "zero")
@@ -43,11 +43,7 @@ class Region:
 
     def __post_init__(self) -> None:
         problems = _choice_problems(self)
-        negative = [
-            problem
-            for name, values in self.table.columns.items()
-            if (problem := negative_template_problem(values, name, self.table.places))
-        ]
+        negative = negative_template_problems(self.table.columns, self.table.places)
         if self.negative_templates != "zero":
             problems += negative
         if problems:

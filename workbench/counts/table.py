@@ -187,15 +187,17 @@ def count_problems(observed: Array, places: Places) -> list[Problem]:
     ]
 
 
-def negative_template_problem(values: Array, name: str, places: Places) -> Problem | None:
-    """Return what to say about a template's bins below zero, if there are any."""
-    rows = np.flatnonzero(values < 0)
-    if not rows.size:
-        return None
-    return Problem(
-        "Template bins below zero",
-        places.where(rows, name),
-        places.found(rows, name, values),
-        "expected events >= 0",
-        'merge bins, or write negative_templates = "zero" in the region, which is then reported',
-    )
+def negative_template_problems(columns: Mapping[str, Array], places: Places) -> list[Problem]:
+    """Return what to say about templates' bins below zero, one problem a template that has them."""
+    return [
+        Problem(
+            "Template bins below zero",
+            places.where(rows, name),
+            places.found(rows, name, values),
+            "expected events >= 0",
+            'merge bins, or write negative_templates = "zero" in the region of an analysis file, which is '
+            "then reported",
+        )
+        for name, values in columns.items()
+        if (rows := np.flatnonzero(values < 0)).size
+    ]

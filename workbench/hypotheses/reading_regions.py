@@ -36,7 +36,7 @@ def read_region(name: str, section: Section, folder: Path) -> Region | None:
         "negative_templates": section.text("negative_templates", "refuse"),
         "empty_bin_events": section.number_if_given("empty_bin_events"),
     }
-    table = _table(section, folder)
+    table = _table(section, folder, str(choices["negative_templates"]))
     section.close()
     if table is None or not section.is_sound:
         return None
@@ -53,7 +53,7 @@ def read_region(name: str, section: Section, folder: Path) -> Region | None:
     return region
 
 
-def _table(section: Section, folder: Path) -> Table | None:
+def _table(section: Section, folder: Path, negative_templates: str) -> Table | None:
     """Return the region's table from the file that it names, or from the bins that it writes."""
     if section.has("table"):
         for key in ("edges", "observed"):
@@ -66,7 +66,7 @@ def _table(section: Section, folder: Path) -> Table | None:
                     f"leave out table or {key}",
                 )
         name = section.text("table")
-        return _table_file(name, section, folder) if section.is_sound else None
+        return _table_file(name, section, folder, negative_templates) if section.is_sound else None
     if not section.has("edges"):
         section.refuse(
             None,
@@ -90,7 +90,7 @@ def _table(section: Section, folder: Path) -> Table | None:
         return None
 
 
-def _table_file(name: str, section: Section, folder: Path) -> Table | None:
+def _table_file(name: str, section: Section, folder: Path, negative_templates: str) -> Table | None:
     fault = _path_fault(name, folder)
     if fault is not None:
         what, found, expected = fault
@@ -98,7 +98,7 @@ def _table_file(name: str, section: Section, folder: Path) -> Table | None:
         section.refuse("table", what, found, expected, remedy)
         return None
     try:
-        return read_csv_table(folder / name, name)
+        return read_csv_table(folder / name, name, negative_templates=negative_templates)
     except InputError as error:
         section.is_sound = False
         for problem in error.problems:
