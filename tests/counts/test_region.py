@@ -54,7 +54,9 @@ def test_all_wrong_choices_are_told_at_once() -> None:
         ),
         (
             "Template bins below zero",
-            'merge bins, or write negative_templates = "zero" in the region of an analysis file, '
-            "which is then reported",
+            (
+                'merge bins, or write negative_templates = "zero" in the region of an analysis file, '
+                "which is then reported"
+            ),
         ),
     ]
