@@ -47,7 +47,8 @@ def test_counts_where_nothing_is_expected_are_not_a_discovery() -> None:
     background, signal = weighing.evidences
     assert (background.established, background.ln_evidence, background.error) == (False, None, None)
     assert "region 'r' from 2 to 3" in background.reason
-    assert "empty_bin_events" in background.reason
+    assert "set empty_bin_events in the region" in background.reason
+    assert "save one first with --save" in background.reason  # a histogram alone has no region to set it in
     assert signal.established
     (comparison,) = weighing.comparisons
     assert (comparison.ln_bayes_factor, comparison.posterior_odds, comparison.established) == (

@@ -127,6 +127,25 @@ def test_what_is_not_established_shows_no_odds() -> None:
     assert "ln B" not in text
 
 
+def test_a_reason_that_both_hypotheses_share_is_said_once_in_the_frame_and_once_below_the_evidences() -> None:
+    given = hand.unestablished()
+    reason = given.evidences[1].reason
+    first = replace(given.evidences[0], established=False, reason=reason)
+    text = weigh_screen(hand.weighed(replace(given, evidences=(first, given.evidences[1]))))
+    said = " ".join(text.split())
+    assert said.count(reason) == 2
+    assert f"background only and resonance are not established: {reason}." in said
+    assert f"background only and resonance: {reason}." in said
+
+
+def test_a_fit_that_nothing_supports_shows_no_likelihood() -> None:
+    """It said "ln likelihood no number"."""
+    given = hand.fitted()
+    impossible = replace(given.fits[0], ending=Ending.NO_SUPPORT, ln_likelihood=-np.inf, fitted=())
+    text = fit_screen(replace(given, fits=(impossible,)))
+    assert "  No parameter value can produce the observed counts.\n" in text
+
+
 def test_the_check_gives_no_odds() -> None:
     assert "odds" not in SCREENS["check"]()
 

@@ -243,7 +243,8 @@ def _impossible(model: Model, impossible: npt.NDArray[np.bool_]) -> Evidence:
     names = ", ".join(bin_names(model, np.flatnonzero(impossible)))
     reason = (
         f"no parameter value can produce the events observed in {names}; "
-        "if the prediction there is an empty simulation, set `empty_bin_events` in the region"
+        "if the prediction there is an empty simulation, set empty_bin_events in the region of the analysis "
+        "file (from a histogram alone, save one first with --save)"
     )
     return Evidence(model.hypothesis, None, None, False, reason, ())
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
 
 from workbench.likelihood.results import Fit, Fitted
@@ -38,7 +39,8 @@ def fit_lines(fit: Fit) -> list[str]:
     """Return one hypothesis' block: how the fit ended, then a line a parameter."""
     lines = heading(f"Fit of {one_line(fit.hypothesis)}")
     ending = fit.ending.value
-    lines += paragraph(f"{ending[0].upper()}{ending[1:]}. ln likelihood {fixed(fit.ln_likelihood, 3)}.")
+    height = f" ln likelihood {fixed(fit.ln_likelihood, 3)}." if math.isfinite(fit.ln_likelihood) else ""
+    lines += paragraph(f"{ending[0].upper()}{ending[1:]}.{height}")
     if fit.fitted:
         header = ["parameter", "value", "pull", "contraction"]
         values = aligned_values(fit.fitted)

@@ -88,9 +88,9 @@ def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
     rows = [["hypothesis", "estimator", "ln evidence", "k-hat", "points"]]
     rows += [[label, other[0], value, other[1], other[2]] for label, other, value in cells]
     lines = [*heading("Evidences"), *columns(rows, "lllrr")]
-    for evidence in evidences:
-        if not evidence.established:
-            lines += bullet(f"{evidence.hypothesis} is not established: {_reason(evidence)}")
+    for names, reason in _doubts(evidences):
+        verb = "is" if len(names) == 1 else "are"
+        lines += bullet(f"{' and '.join(names)} {verb} not established: {reason}")
     if all(evidence.established for evidence in evidences):
         lines += paragraph("Every evidence is established: error, k-hat and agreement are all in order.")
     return lines
@@ -130,17 +130,19 @@ def probability_lines(posteriors: Sequence[Posterior]) -> list[str]:
     return [*heading("Probabilities"), *columns(rows, "lrl")]
 
 
-def _reason(evidence: Evidence) -> str:
-    return evidence.reason.removesuffix(".") + "."
+def _doubts(evidences: Sequence[Evidence]) -> list[tuple[list[str], str]]:
+    """Return (hypotheses, reason) of what is not established, a reason that several share once."""
+    found: dict[str, list[str]] = {}
+    for evidence in evidences:
+        if not evidence.established:
+            found.setdefault(evidence.reason.removesuffix(".") + ".", []).append(evidence.hypothesis)
+    return [(names, reason) for reason, names in found.items()]
 
 
 def _not_established(comparison: Comparison, evidences: Sequence[Evidence]) -> list[str]:
-    concerned = {comparison.hypothesis, comparison.against}
-    reasons = [
-        f"{evidence.hypothesis}: {_reason(evidence)}"
-        for evidence in evidences
-        if evidence.hypothesis in concerned and not evidence.established
-    ]
+    pair = (comparison.hypothesis, comparison.against)
+    concerned = [evidence for evidence in evidences if evidence.hypothesis in pair]
+    reasons = [f"{' and '.join(names)}: {reason}" for names, reason in _doubts(concerned)]
     closing = "What each estimator says stands above; none of it is a result."
     frame = framed("NOT ESTABLISHED: NO ODDS ARE GIVEN", [*reasons, closing])
     return [*frame, *columns([["prior odds", odds(math.log(comparison.prior_odds))]], "ll")]
