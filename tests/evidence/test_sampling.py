@@ -11,7 +11,8 @@ from scipy import special
 
 from tests.evidence.brute_force import ln_evidence, standard_normal, under
 from tests.evidence.small_analyses import TAU, YIELD, bump, counting, several_bins, source, templates
-from workbench.evidence import closed_forms, sampling
+from workbench.evidence import sampling
+from workbench.evidence.formulas import closed_forms
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.proposal import Proposal, propose
 from workbench.evidence.quadrature import Grid, integrate

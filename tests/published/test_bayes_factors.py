@@ -10,7 +10,7 @@ import pytest
 from scipy import integrate, stats
 
 from tests.published.printed import Printed, of_topic
-from workbench.evidence import closed_forms, count_mixtures, on_off, reference_odds
+from workbench.evidence.formulas import closed_forms, count_mixtures, on_off, reference_odds
 
 
 def gamma_background(what: str, n: int, s: float, q: float, k: float) -> float:

@@ -12,7 +12,7 @@ from scipy import stats
 from workbench.counts.binning import Binning
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.evidence import closed_forms, count_mixtures
+from workbench.evidence.formulas import closed_forms, count_mixtures
 from workbench.evidence.weigh import weigh, weigh_hypothesis
 from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.hypotheses.priors import Exponential, Gamma, Prior, Uniform
@@ -178,8 +178,8 @@ def test_the_numerical_path_would_notice_another_prior() -> None:
 def test_errors_of_the_numerical_path_are_of_the_right_size() -> None:
     """Pulls over several cases and seeds: their mean square is 1, less where the error stands at its floor.
 
-    In one or two dimensions the lattices are far better than independent draws, and the error is kept at 0.3 of
-    what those would have: on purpose too large there, never too small.
+    In one or two dimensions the lattices are far better than independent draws, and the error is kept at 0.3
+    of what those would have: on purpose too large there, never too small.
     """
     pulls = []
     for case in (known_background(17, 3.8, 2.0), gamma_background(17), on_off(8, 14), on_off(30, 40)):

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy import stats
 
-from workbench.evidence import expected_weight, on_off
+from workbench.evidence.formulas import expected_weight, on_off
 
 
 def test_the_expected_weight_is_the_mean_over_all_outcomes() -> None:

@@ -7,7 +7,7 @@ import pytest
 from scipy import integrate, stats
 
 from tests.published.printed import Printed, of_topic
-from workbench.evidence import expected_weight, reference_odds, two_rates
+from workbench.evidence.formulas import expected_weight, reference_odds, two_rates
 
 
 @of_topic("lindley", "lindley")

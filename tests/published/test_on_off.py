@@ -10,7 +10,7 @@ import pytest
 from scipy import integrate, stats
 
 from tests.published.printed import Printed, of_topic
-from workbench.evidence import on_off, two_rates
+from workbench.evidence.formulas import on_off, two_rates
 
 
 def counted(n: int, b: float, sigma: float | None = None, model: str = "known") -> float:

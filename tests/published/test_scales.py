@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from tests.published.printed import Printed, of_topic
-from workbench.evidence import scales
+from workbench.evidence.formulas import scales
 
 BOUNDARY = {
     "kass-raftery-2": scales.KASS_RAFTERY.boundaries[0],

@@ -11,7 +11,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.count_mixtures import (
+from workbench.evidence.formulas.count_mixtures import (
     ln_gamma_mixture,
     ln_sum_of_two,
     ln_uniform_mixture,

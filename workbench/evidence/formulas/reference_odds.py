@@ -6,7 +6,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.count_mixtures import ln_upper_gamma
+from workbench.evidence.formulas.count_mixtures import ln_upper_gamma
 from workbench.likelihood.laws import half_deviance, stirling_error
 
 Array = npt.NDArray[np.float64]
