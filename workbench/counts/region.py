@@ -23,7 +23,8 @@ class Region:
         table: the histogram table; its template bins are >= 0 from here on.
         observable: what the axis measures.
         unit: the axis' unit.
-        template_errors: True when the table's error columns enter the likelihood.
+        template_errors: True when the table's error columns enter the likelihood; None, left out, keeps them
+            out as False does, which an analysis then warns of.
         negative_templates: "refuse", or "zero" to set negative template bins to zero, reported.
         empty_bin_events: expected events given to bins that no process can fill; None adds nothing.
         zeroed: where the template bins stood that were set to zero.
@@ -36,7 +37,7 @@ class Region:
     table: Table
     observable: str = ""
     unit: str = ""
-    template_errors: bool = False
+    template_errors: bool | None = None
     negative_templates: str = "refuse"
     empty_bin_events: float | None = None
     zeroed: tuple[str, ...] = ()

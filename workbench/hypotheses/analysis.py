@@ -8,6 +8,7 @@ from typing import Protocol, TypeVar
 
 from workbench.counts.region import Region
 from workbench.errors import Caution, InputError, Problem, nearest
+from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.contents import digest_of_analysis
 from workbench.hypotheses.declared import Declared
@@ -40,7 +41,6 @@ class Analysis:
         regions, parameters, processes, uncertainties, hypotheses: by declaration order; no hypotheses at all
             stands for "background only" and "signal plus background", equally probable.
         exposure: what yields are proportional to; None if not said.
-        cautions: what is worth knowing about the declarations; not part of the content.
 
     Raises:
         InputError: with everything that is wrong.
@@ -53,10 +53,9 @@ class Analysis:
     uncertainties: tuple[Uncertainty, ...] = ()
     hypotheses: tuple[Hypothesis, ...] = ()
     exposure: Exposure | None = None
-    cautions: tuple[Caution, ...] = ()
 
     def __post_init__(self) -> None:
-        for kind in ("regions", "parameters", "processes", "uncertainties", "hypotheses", "cautions"):
+        for kind in ("regions", "parameters", "processes", "uncertainties", "hypotheses"):
             object.__setattr__(self, kind, tuple(getattr(self, kind)))
         faults = [*_duplicates(self), *faults_of(_declared(self))]
         if faults:
@@ -74,6 +73,11 @@ class Analysis:
     def digest(self) -> str:
         """Return "sha256:..." of the content: declarations and numbers, not file names or cautions."""
         return digest_of_analysis(self)
+
+    @property
+    def cautions(self) -> tuple[Caution, ...]:
+        """Return what is worth knowing about the declarations, wherever they came from."""
+        return cautions_of(self)
 
     def region(self, name: str) -> Region:
         """Return the region of that name, or raise an InputError."""

@@ -3,13 +3,11 @@
 from __future__ import annotations
 
 import math
-from dataclasses import replace
 
 from workbench.counts.region import Region
 from workbench.counts.table import Table
 from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis, default_hypotheses
-from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Prior, Uniform
 from workbench.hypotheses.processes import Contribution, Process
@@ -67,7 +65,7 @@ def analysis_from_table(
         Uncertainty(f"{name} normalisation", (Effect(name, float(background_uncertainty)),))
         for name in backgrounds
     ]
-    analysis = Analysis(
+    return Analysis(
         title=f"Histogram {table.source}" if title is None else title,
         regions=(Region(REGION, table, template_errors=bool(table.errors)),),
         parameters=(Parameter(STRENGTH, strength),),
@@ -75,7 +73,6 @@ def analysis_from_table(
         uncertainties=tuple(sources) if background_uncertainty > 0 else (),
         hypotheses=default_hypotheses(processes),
     )
-    return replace(analysis, cautions=cautions_of(analysis))
 
 
 def is_signal(column: str) -> bool:

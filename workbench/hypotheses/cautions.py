@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from workbench.counts.binning import Binning
 from workbench.counts.region import Region
+from workbench.counts.table import ERROR_ENDING
 from workbench.errors import Caution
 from workbench.hypotheses.effects import regions_acted_on
 from workbench.hypotheses.faults import dotted, quoted, shown
@@ -31,18 +32,31 @@ def cautions_of(analysis: Analysis) -> tuple[Caution, ...]:
         analysis: the analysis.
 
     Returns:
-        Cautions about hypotheses, held numbers, interpolated templates and uncertainties.
+        Cautions about template columns, hypotheses, held numbers, interpolated templates and uncertainties.
 
     Source:
         none, definition; one-sided uncertainties are common practice, no source.
     """
     return (
+        *_regions(analysis),
         *_hypotheses(analysis),
         *_held(analysis),
         *_spaced_templates(analysis),
         *_one_sided(analysis),
         *_variations(analysis),
     )
+
+
+def _regions(analysis: Analysis) -> Iterator[Caution]:
+    for region in analysis.regions:
+        if region.table.errors and region.template_errors is None:
+            columns = ", ".join(quoted(column + ERROR_ENDING) for column in region.table.errors)
+            yield Caution(
+                "template-errors-unused",
+                f"{region.table.source} has error columns ({columns}) that are not used: "
+                f"write template_errors = true or false in {dotted(('regions', region.name))}.",
+            )
+        yield from region.cautions
 
 
 def _hypotheses(analysis: Analysis) -> Iterator[Caution]:

@@ -33,7 +33,6 @@ LEFT_OUT: Content = {
     "negative_templates": "refuse",
     "observable": "",
     "prior": 1.0,
-    "template_errors": False,
     "unit": "",
 }
 
@@ -83,6 +82,7 @@ def digest_of_analysis(analysis: Analysis) -> str:
         none, definition
     """
     content = content_of(analysis)
+    content["regions"] = {region.name: _choices(region) for region in analysis.regions}
     content["tables"] = {region.name: numbers_digest(region.table) for region in analysis.regions}
     text = json.dumps(content, ensure_ascii=True, separators=(",", ":"), default=float)
     return "sha256:" + hashlib.sha256(text.encode("ascii")).hexdigest()
@@ -117,13 +117,19 @@ def region_content(region: Region) -> Content:
         {
             "observable": region.observable,
             "unit": region.unit,
-            "template_errors": region.template_errors,
+            "template_errors": region.template_errors if region.table.errors else None,
             "negative_templates": None
             if region.negative_templates == "refuse"
             else region.negative_templates,
             "empty_bin_events": region.empty_bin_events,
         }
     )
+
+
+def _choices(region: Region) -> Content:
+    """Return a region's keys with the choice of template errors as it is in force, said or left out."""
+    said = {key: value for key, value in region_content(region).items() if key != "template_errors"}
+    return said | {"template_errors": bool(region.template_errors)}
 
 
 def prior_content(prior: Prior) -> Content:

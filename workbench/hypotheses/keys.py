@@ -9,21 +9,19 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterator, Mapping
 
-from workbench.errors import Caution, Problem, nearest
+from workbench.errors import Problem, nearest
 from workbench.hypotheses.faults import Fault, KeyPath, Place, shortened, shown
 
 
 class Findings:
-    """The problems and cautions met while reading one file.
+    """The problems met while reading one file.
 
     Attributes:
-        cautions: what is worth knowing.
         place: key path to words.
     """
 
     def __init__(self, place: Place, line: Callable[[KeyPath], int | None] | None = None) -> None:
         self.place = place
-        self.cautions: list[Caution] = []
         self._line = line
         self._problems: list[tuple[int, Problem]] = []
 

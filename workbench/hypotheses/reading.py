@@ -5,13 +5,11 @@ from __future__ import annotations
 import math
 import re
 import tomllib
-from dataclasses import replace
 from pathlib import Path
 
 from workbench.counts.files import read_bytes, text_of
 from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis, declared_analysis
-from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import Exposure
@@ -84,8 +82,7 @@ def analysis_from_text(text: str, folder: Path, shown_as: str) -> Analysis:
         findings.add(fault)
     if findings.problems:
         raise InputError(*findings.problems)
-    analysis = declared_analysis(title, declared)
-    return replace(analysis, cautions=(*findings.cautions, *cautions_of(analysis)))
+    return declared_analysis(title, declared)
 
 
 def parsed(text: str, shown_as: str) -> dict[str, object]:

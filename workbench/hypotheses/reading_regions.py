@@ -11,8 +11,8 @@ from workbench.counts.binning import Binning
 from workbench.counts.csv_table import read_csv_table
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.errors import Caution, InputError, Problem
-from workbench.hypotheses.faults import KeyPath, dotted, quoted, shortened, shown
+from workbench.errors import InputError, Problem
+from workbench.hypotheses.faults import KeyPath, quoted, shortened, shown
 from workbench.hypotheses.keys import Findings, Section
 
 INLINE_SOURCE = "edges and counts in the analysis file"
@@ -32,7 +32,9 @@ def read_region(name: str, section: Section, folder: Path) -> Region | None:
     choices = {
         "observable": section.text("observable", ""),
         "unit": section.text("unit", ""),
-        "template_errors": section.truth("template_errors", False),
+        "template_errors": section.truth("template_errors", False)
+        if section.has("template_errors")
+        else None,
         "negative_templates": section.text("negative_templates", "refuse"),
         "empty_bin_events": section.number_if_given("empty_bin_events"),
     }
@@ -41,16 +43,12 @@ def read_region(name: str, section: Section, folder: Path) -> Region | None:
     if table is None or not section.is_sound:
         return None
     findings = section.findings
-    if table.errors and not section.has("template_errors"):
-        findings.cautions.append(_errors_left_out(name, table))
     try:
-        region = Region(name=name, table=table, **choices)  # type: ignore[arg-type]  # one dict of several types
+        return Region(name=name, table=table, **choices)  # type: ignore[arg-type]  # one dict of several types
     except InputError as error:
         for problem in error.problems:
             findings.tell(_placed(problem, name, findings), section.path)
         return None
-    findings.cautions += region.cautions
-    return region
 
 
 def _table(section: Section, folder: Path, negative_templates: str) -> Table | None:
@@ -173,12 +171,3 @@ def _inline(problem: Problem, section: Section) -> Problem:
     _, _, detail = problem.where.partition(", ")
     bins = detail.partition(", column")[0] if detail.startswith("bin") else ""
     return replace(problem, where=where + (f", {bins}" if bins else ""))
-
-
-def _errors_left_out(name: str, table: Table) -> Caution:
-    columns = ", ".join(f"'{column} error'" for column in table.errors)
-    return Caution(
-        "template-errors-unused",
-        f"{table.source} has error columns ({columns}) that are not used: "
-        f"write template_errors = true or false in {dotted(('regions', name))}.",
-    )

@@ -79,7 +79,7 @@ def _region(analysis: Analysis, region: Region) -> dict[str, Any]:
         "observed": None if observed is None else int(observed.sum()),
         "empty_bins": None if observed is None else int(np.sum(observed == 0)),
         "single_count_bins": None if observed is None else int(np.sum(observed == 1)),
-        "template_errors": region.template_errors,
+        "template_errors": bool(region.template_errors),
         "columns": {
             name: {"sum": float(values.sum()), "used_by": uses.get(name, [])}
             for name, values in region.table.columns.items()
