@@ -1,7 +1,8 @@
 """What can be wrong with an input, said so that it can be mended.
 
 A `Problem` is one fault in something the user gave; `InputError` carries all the faults found at once.
-A `Caution` is something worth knowing about a result that stands.
+A `Caution` is something worth knowing about a result that stands. The names of the user's things stand in
+double quotes everywhere.
 """
 
 from __future__ import annotations
@@ -9,6 +10,8 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterable
 from dataclasses import dataclass
+
+LONGEST_SHOWN = 60
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,5 +69,21 @@ def nearest(word: str, known: Iterable[str]) -> str:
     choices = sorted(known)
     close = difflib.get_close_matches(word, choices, n=1, cutoff=0.6)
     if close:
-        return f"write {close[0]!r}"
+        return f"write {quoted(close[0])}"
     return "use one of: " + ", ".join(choices) if choices else "leave it out"
+
+
+def quoted(word: str) -> str:
+    """Return one of the user's words in double quotes, on one line, cut where it is long."""
+    return '"' + shortened(word) + '"'
+
+
+def shortened(text: str) -> str:
+    """Return a text that can be printed, cut to what fits on a line of the terminal."""
+    text = printable(text)
+    return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
+
+
+def printable(text: str) -> str:
+    """Return a text with everything that a terminal would not show, or act on, spelt out."""
+    return "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in text)

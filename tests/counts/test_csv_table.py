@@ -115,7 +115,7 @@ def test_a_file_that_is_not_there_is_named_with_its_neighbour(tmp_path: Path) ->
         "  where     conuts.csv\n"
         "  found     no such file\n"
         "  expected  a file that exists\n"
-        "  try       use 'counts.csv', which is there"
+        '  try       use "counts.csv", which is there'
     )
 
 

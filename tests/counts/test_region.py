@@ -17,7 +17,7 @@ DIPPING = Table(BINNING, None, {"fakes": np.array([1.0, -0.5])}, source="dip.csv
 
 
 def test_template_bins_below_zero_are_refused_with_their_line() -> None:
-    with pytest.raises(InputError, match=r"dip\.csv, line 7, column 'fakes'"):
+    with pytest.raises(InputError, match=r'dip\.csv, line 7, column "fakes"'):
         Region("peak", DIPPING)
 
 
@@ -25,7 +25,7 @@ def test_template_bins_below_zero_are_zeroed_only_when_asked_and_then_reported()
     region = Region("peak", DIPPING, negative_templates="zero")
     assert region.table.columns["fakes"].tolist() == [1.0, 0.0]
     assert [caution.text for caution in region.cautions] == [
-        "Template bins below zero were set to zero: dip.csv, line 7, column 'fakes'."
+        'Template bins below zero were set to zero: dip.csv, line 7, column "fakes".'
     ]
     assert region.table.digest == DIPPING.digest
     assert DIPPING.columns["fakes"].tolist() == [1.0, -0.5]
@@ -46,7 +46,7 @@ def test_all_wrong_choices_are_told_at_once() -> None:
         Region(" ", DIPPING, template_errors=True, negative_templates="zeros", empty_bin_events=0.0)
     assert [(problem.what, problem.remedy) for problem in caught.value.problems] == [
         ("A region without a name", "name the region"),
-        ("An unknown way to treat template bins below zero", "write 'zero'"),
+        ("An unknown way to treat template bins below zero", 'write "zero"'),
         ("Template errors asked for, but none given", "add the columns, or write template_errors = false"),
         (
             "Events for empty bins that are no positive number",

@@ -54,7 +54,7 @@ def test_what_is_no_count_is_refused() -> None:
 
 
 def test_bins_are_counted_from_one_where_there_is_no_file() -> None:
-    with pytest.raises(InputError, match="Python, bins 1 and 3, column 'observed'"):
+    with pytest.raises(InputError, match='Python, bins 1 and 3, column "observed"'):
         Table(BINNING, [-1, 2, -4])  # type: ignore[arg-type]
 
 

@@ -46,7 +46,7 @@ def test_counts_where_nothing_is_expected_are_not_a_discovery() -> None:
     weighing = weigh(with_empty_bin(1.0, None))
     background, signal = weighing.evidences
     assert (background.established, background.ln_evidence, background.error) == (False, None, None)
-    assert "region 'r' from 2 to 3" in background.reason
+    assert 'region "r" from 2 to 3' in background.reason
     assert "set empty_bin_events in the region" in background.reason
     assert "save one first with --save" in background.reason  # a histogram alone has no region to set it in
     assert signal.established

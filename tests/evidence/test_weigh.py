@@ -94,7 +94,7 @@ def test_counts_that_are_not_there_are_asked_for_by_region() -> None:
     planned = replace(
         counting(3, 2.0, Uniform(0.0, 1.0), control=4), regions=(one_bin("on", None), one_bin("off", 4))
     )
-    with pytest.raises(InputError, match="region 'on'"):
+    with pytest.raises(InputError, match='region "on"'):
         weigh(planned)
 
 

@@ -116,7 +116,7 @@ def test_a_prior_without_its_outer_braces_is_shown_with_them() -> None:
         "  where     --strength\n"
         '  found     "uniform = { low = 0, high = 5 }": no { before it and no } after it\n'
         "  expected  { FAMILY = { ... } }, braces included\n"
-        "  try       write '{ uniform = { low = 0, high = 5 } }', the quotes for the shell"
+        '  try       write "{ uniform = { low = 0, high = 5 } }", the quotes for the shell'
     )
 
 
@@ -125,7 +125,7 @@ def test_a_prior_without_its_outer_braces_is_shown_with_them() -> None:
     [
         ("uniform(0, 5)", "no { at its start"),
         ("{ uniform = { low = 0, high = 5 }", "unclosed inline table"),
-        ("{ uniform { low = 0 } }", "expected = after a key in a key/value pair"),
+        ("{ uniform { low = 0 } }", 'expected "=" after a key in a key/value pair'),
     ],
 )
 def test_a_prior_that_cannot_be_read_says_what_is_missing_and_shows_one_that_can(
@@ -135,5 +135,5 @@ def test_a_prior_that_cannot_be_read_says_what_is_missing_and_shows_one_that_can
         parse_prior(text)
     (problem,) = refusal.value.problems
     assert problem.found == f'"{text}": {missing}'
-    shown = problem.remedy.split("'")[1]
+    shown = problem.remedy.split('"')[1]
     assert parse_prior(shown) == wb.Uniform(0.0, 5.0)

@@ -186,7 +186,7 @@ def test_a_bin_edge_problem_of_a_table_is_told_together_with_the_others(tmp_path
     text = LINE.replace("edges = [20, 40, 60, 80]\nobserved = [12, 7, 3]", 'table = "t.csv"')
     told = problems(text.replace('mean = "mass"', 'mean = "mas"'), tmp_path)
     assert told == [
-        ("Observed counts below zero", "t.csv, line 3, column 'observed'"),
+        ("Observed counts below zero", 't.csv, line 3, column "observed"'),
         (
             "A parameter that is not declared",
             "a.toml, line 19, processes.line.regions.peak.shape.gaussian.mean",
@@ -337,7 +337,7 @@ def test_template_bins_below_zero_are_set_to_zero_only_where_asked(tmp_path: Pat
     text = LINE.replace(
         "edges = [20, 40, 60, 80]\nobserved = [12, 7, 3]", 'table = "t.csv"\ntemplate_errors = true'
     )
-    assert problems(text, tmp_path) == [("Template bins below zero", "t.csv, line 4, column 'fakes'")]
+    assert problems(text, tmp_path) == [("Template bins below zero", 't.csv, line 4, column "fakes"')]
     analysis = read(text.replace("template_errors", 'negative_templates = "zero"\ntemplate_errors'), tmp_path)
     assert analysis.region("peak").table.columns["fakes"].tolist() == [8.0, 5.0, 0.0]
     assert codes(analysis) == ["negative-template-zeroed"]
@@ -387,7 +387,7 @@ m = { n = 1, o = { p = 2 } }
 
 
 def test_an_unknown_name_is_an_input_error_in_python_too() -> None:
-    with pytest.raises(InputError, match="write 'strength'"):
+    with pytest.raises(InputError, match='write "strength"'):
         read(LINE).parameter("stength")
     with pytest.raises(InputError, match="hypothesis"):
         read(LINE).parameters_used("nothing")

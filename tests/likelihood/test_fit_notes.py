@@ -44,13 +44,13 @@ def test_a_strength_at_its_boundary_has_a_one_sided_error_and_says_so() -> None:
     assert strength.low is None
     crossing = optimize.brentq(lambda v: math.log(v / 4) - v + 4 + 0.5, 4.0, 8.0)
     assert strength.high == pytest.approx((crossing - 4) / 2, rel=1e-4)
-    assert found.notes == ("strength is at the end of its range: its error is one-sided",)
+    assert found.notes == ('"strength" is at the end of its range: its error is one-sided',)
 
 
 def test_without_asymmetric_errors_a_strength_at_its_boundary_has_none() -> None:
     found = fit(counting(1.0, 4.0, 2.0), BOTH, asymmetric=False)
     assert of(found, "strength").high is None
-    assert found.notes == ("strength is at the end of its range: no error is quoted",)
+    assert found.notes == ('"strength" is at the end of its range: no error is quoted',)
 
 
 def test_a_mass_without_a_signal_is_flat_is_named_and_has_no_error() -> None:
@@ -68,8 +68,8 @@ def test_a_mass_without_a_signal_is_flat_is_named_and_has_no_error() -> None:
     assert strength.high is not None
     assert (mass.error, mass.low, mass.high) == (None, None, None)
     assert found.notes == (
-        "the data do not constrain mass; no error is quoted",
-        "strength is at the end of its range: its error is one-sided",
+        'the data do not constrain "mass"; no error is quoted',
+        '"strength" is at the end of its range: its error is one-sided',
     )
     assert np.isfinite(found.correlations).all()
 
@@ -88,7 +88,7 @@ def test_only_the_product_of_two_factors_is_known_and_both_are_named() -> None:
     assert found.ending is Ending.FLAT
     assert a.error is None
     assert b.error is None
-    assert "a, b" in found.notes[0]
+    assert '"a", "b"' in found.notes[0]
 
 
 def alike(observed: list[float], prior: Prior) -> Analysis:
@@ -110,7 +110,7 @@ def test_shapes_that_the_data_cannot_tell_apart_are_named() -> None:
     found = fit(alike([31.0, 60.0, 89.0], Uniform(0.0, 50.0)), BOTH)
     assert found.ending in {Ending.CONVERGED, Ending.AT_LIMIT}
     told = fit(alike([101.0, 200.0, 299.0], Normal(5.0, 4.0, low=0.0)), BOTH)
-    assert any(note.startswith("the data cannot tell strength from size") for note in told.notes)
+    assert any(note.startswith('the data cannot tell "strength" from "size"') for note in told.notes)
     assert told.correlations[0, 1] < -0.99
 
 
@@ -143,7 +143,7 @@ def test_a_nuisance_that_the_prior_decides_contracts_little_and_is_named() -> No
     assert idle.contraction == pytest.approx(0.0, abs=1e-9)
     assert rate.contraction is not None
     assert 0.0 < rate.contraction < 0.05
-    assert found.notes == ("the data say little about rate, s, idle (contraction below 5 %)",)
+    assert found.notes == ('the data say little about "rate", "s", "idle" (contraction below 5 %)',)
 
 
 def test_a_lognormal_nuisance_is_measured_in_its_logarithm() -> None:

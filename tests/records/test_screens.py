@@ -134,8 +134,8 @@ def test_a_reason_that_both_hypotheses_share_is_said_once_in_the_frame_and_once_
     text = weigh_screen(hand.weighed(replace(given, evidences=(first, given.evidences[1]))))
     said = " ".join(text.split())
     assert said.count(reason) == 2
-    assert f"background only and resonance are not established: {reason}." in said
-    assert f"background only and resonance: {reason}." in said
+    assert f'"background only" and "resonance" are not established: {reason}.' in said
+    assert f'"background only" and "resonance": {reason}.' in said
 
 
 def test_a_fit_that_nothing_supports_shows_no_likelihood() -> None:

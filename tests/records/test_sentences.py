@@ -21,7 +21,7 @@ def test_nothing_fits_only_when_everything_fails() -> None:
 
 def test_a_searched_range_is_named() -> None:
     texts = {item.code: item.text for item in usual_cautions(hand.analysis(), hand.weighing().comparisons)}
-    assert "mass (uniform from 25 to 75, in GeV)" in texts["look-elsewhere"]
+    assert '"mass" (uniform from 25 to 75, in GeV)' in texts["look-elsewhere"]
     assert "strength" in texts["strength-prior"]
 
 
@@ -37,7 +37,7 @@ def test_a_strength_is_no_searched_range_even_where_nothing_is_established() -> 
     """Without odds there is no sensitivity either, and the strength was said to be the range searched."""
     bare = tuple(replace(comparison, sensitivity=()) for comparison in hand.weighing().comparisons)
     texts = {item.code: item.text for item in usual_cautions(hand.analysis(), bare)}
-    assert "prior of mass" in texts["look-elsewhere"]
+    assert 'prior of "mass"' in texts["look-elsewhere"]
     assert "strength" not in texts["look-elsewhere"]
     assert "strength" in texts["strength-prior"]
 
@@ -45,7 +45,7 @@ def test_a_strength_is_no_searched_range_even_where_nothing_is_established() -> 
 def test_effects_are_said_with_their_sign() -> None:
     assert effect_words(Effect("a", 0.1)) == "+10 %"
     assert effect_words(Effect("a", 0.03, -0.04, ("peak",))) == "+3 % / −4 % in peak"
-    assert effect_words(Effect("a", "hard", "soft")) == "columns 'hard' / 'soft'"
+    assert effect_words(Effect("a", "hard", "soft")) == 'columns "hard" / "soft"'
     assert percent(-0.005) == "−0.5 %"
 
 

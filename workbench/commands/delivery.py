@@ -11,7 +11,7 @@ from typing import Any
 from workbench.commands.parsing import Parser
 from workbench.commands.terminal import can_show, print_text, warn
 from workbench.counts.files import write_text_atomically
-from workbench.errors import Caution, InputError, Problem
+from workbench.errors import Caution, InputError, Problem, quoted
 from workbench.records.files import record_text, write_record
 
 
@@ -40,16 +40,16 @@ def refuse_unwritable(option: str, name: str | None) -> None:
     path = Path(name)
     if path.is_dir():
         raise InputError(
-            Problem("A folder where a file is needed", option, repr(name), "a file", "add a file's name")
+            Problem("A folder where a file is needed", option, quoted(name), "a file", "add a file's name")
         )
     if not path.parent.is_dir():
         raise InputError(
             Problem(
                 "File can't be written",
                 option,
-                repr(name),
+                quoted(name),
                 "a folder that exists",
-                f"make {str(path.parent)!r}",
+                f"make {quoted(str(path.parent))}",
             )
         )
 

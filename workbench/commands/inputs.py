@@ -8,7 +8,7 @@ from pathlib import Path
 from workbench.commands.delivery import refuse_unwritable
 from workbench.commands.parsing import Parser, relative_size, whole_number
 from workbench.counts.files import digest_of, read_bytes
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis
 from workbench.records.descriptions import percent
 from workbench.records.outcomes import Origin
@@ -83,7 +83,7 @@ def load(options: argparse.Namespace, *, seed: int | None) -> tuple[Analysis, Or
         Problem(
             "A kind of file that is not read",
             name,
-            f"the ending {suffix!r}" if suffix else "a name without an ending",
+            f"the ending {quoted(suffix)}" if suffix else "a name without an ending",
             "an analysis (.toml) or a histogram (.csv, .tsv, .txt)",
             "save it as CSV with the columns low,high,observed",
         )
@@ -106,9 +106,9 @@ def refuse_planning(analysis: Analysis, command: str) -> None:
             *(
                 Problem(
                     f"{command} needs observed counts",
-                    f"region {region.name}, {region.table.source}",
-                    "no column 'observed'",
-                    "a column 'observed' with the counted events",
+                    f"region {quoted(region.name)}, {region.table.source}",
+                    'no column "observed"',
+                    'a column "observed" with the counted events',
                     "add the column; oddsbench check works without it",
                 )
                 for region in missing
@@ -150,7 +150,7 @@ def _refuse_existing(save: str | None) -> None:
             Problem(
                 "File exists already",
                 "--save",
-                repr(save),
+                quoted(save),
                 "a new file",
                 "choose another name, or remove it first",
             )
@@ -167,7 +167,7 @@ def _refuse_histogram_options(options: argparse.Namespace) -> None:
         Problem(
             f"{option} does not go with an analysis file",
             option,
-            repr(value),
+            quoted(str(value)),
             "a histogram file (.csv, .tsv, .txt)",
             f"say it in {options.file}, and leave {option} out",
         )

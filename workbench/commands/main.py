@@ -9,7 +9,7 @@ from collections.abc import Sequence
 
 from workbench.commands.parsing import Parser
 from workbench.commands.terminal import print_text
-from workbench.errors import InputError, Problem, nearest
+from workbench.errors import InputError, Problem, nearest, quoted
 
 DONE = 0
 NOT_ESTABLISHED = 1
@@ -87,7 +87,7 @@ def _dispatch(asked: list[str]) -> int:
             Problem(
                 "Unknown command",
                 "oddsbench",
-                repr(first),
+                quoted(first),
                 "one of: " + ", ".join(COMMANDS),
                 nearest(first, COMMANDS),
             )

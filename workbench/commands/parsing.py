@@ -10,7 +10,7 @@ from typing import IO, NoReturn, TextIO, cast
 
 from workbench.commands.terminal import print_text
 from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
-from workbench.errors import InputError, Problem, nearest
+from workbench.errors import InputError, Problem, nearest, quoted
 
 
 class Parser(argparse.ArgumentParser):
@@ -57,15 +57,18 @@ class Parser(argparse.ArgumentParser):
         where, remedy = f"{self.prog}, {name}", f"{self.prog} --help"
         if error.message.startswith("expected"):
             return Problem("Option without its value", where, "nothing after it", "one value", remedy)
-        return Problem("Option not understood", where, error.message, "the option as --help shows it", remedy)
+        found = error.message.replace("'", '"')
+        return Problem("Option not understood", where, found, "the option as --help shows it", remedy)
 
     def _stranger(self, word: str) -> Problem:
         if not word.startswith("-"):
-            return Problem("More than one file", self.prog, repr(word), "one FILE", "name one file at a time")
+            return Problem(
+                "More than one file", self.prog, quoted(word), "one FILE", "name one file at a time"
+            )
         known = [name for action in self._actions for name in action.option_strings if name.startswith("--")]
         option = word.split("=", 1)[0]
         return Problem(
-            "Unknown option", self.prog, repr(option), "an option of this command", nearest(option, known)
+            "Unknown option", self.prog, quoted(option), "an option of this command", nearest(option, known)
         )
 
 
@@ -89,7 +92,7 @@ def whole_number(option: str, lowest: int, highest: int) -> Callable[[str], int]
                 Problem(
                     f"{option} is not in its range",
                     option,
-                    repr(text),
+                    quoted(text),
                     expected,
                     f"{option} {max(lowest, 1)}",
                 )
@@ -116,7 +119,7 @@ def relative_size(option: str) -> Callable[[str], float]:
                 Problem(
                     f"{option} is not a relative size",
                     option,
-                    repr(text),
+                    quoted(text),
                     "0, or 1e-100 to 1e6; 0.10 is ten per cent",
                     f"{option} 0.10",
                 )

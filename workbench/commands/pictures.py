@@ -6,7 +6,7 @@ from pathlib import Path
 
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 from workbench.plots.page import KINDS, picture_bytes, weighing_page
 from workbench.records.outcomes import WeighOutcome
 
@@ -24,7 +24,9 @@ def refuse_other_kinds(option: str, name: str) -> None:
     if _kind(name) not in KINDS:
         endings = ", ".join(f".{kind}" for kind in KINDS)
         remedy = f"{option} {Path(name).stem or 'odds'}.png"
-        raise InputError(Problem("A kind of picture that is not drawn", option, repr(name), endings, remedy))
+        raise InputError(
+            Problem("A kind of picture that is not drawn", option, quoted(name), endings, remedy)
+        )
     refuse_unwritable(option, name)
 
 

@@ -25,7 +25,7 @@ from workbench.counts.table import (
     negative_template_problems,
     value_problems,
 )
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 
 Array = npt.NDArray[np.float64]
 
@@ -174,8 +174,8 @@ def _header_problems(header: _Line, shown: str) -> list[Problem]:
     problems += [
         Problem(
             "Two columns of the same name",
-            f"{where}, column {name!r}",
-            f"{name!r} {names.count(name)} times",
+            f"{where}, column {quoted(name)}",
+            f"{quoted(name)} {names.count(name)} times",
             "each name once",
             "rename one of the columns, or leave it out",
         )
@@ -200,11 +200,13 @@ def _missing(name: str, names: tuple[str, ...], where: str) -> Problem:
     lowered = {other.lower(): other for other in names if other}
     close = difflib.get_close_matches(name, lowered, n=1, cutoff=0.7)
     return Problem(
-        f"A table without the column {name!r}",
+        f"A table without the column {quoted(name)}",
         where,
-        "the columns " + listed([repr(other) for other in names]),
+        "the columns " + listed([quoted(other) for other in names]),
         "low, high, observed, then one column a template",
-        f"rename {lowered[close[0]]!r} to {name!r}" if close else f"add the column {name!r}",
+        f"rename {quoted(lowered[close[0]])} to {quoted(name)}"
+        if close
+        else f"add the column {quoted(name)}",
     )
 
 

@@ -10,7 +10,7 @@ import os
 import tempfile
 from pathlib import Path
 
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 
 
 def digest_of(data: bytes) -> str:
@@ -104,7 +104,7 @@ def _unreadable(path: Path, shown: str, error: OSError | ValueError) -> Problem:
     if isinstance(error, FileNotFoundError):
         names = [entry.name for entry in path.parent.iterdir()] if path.parent.is_dir() else []
         close = difflib.get_close_matches(path.name, names, n=1)
-        remedy = f"use {close[0]!r}, which is there" if close else "check the name and the folder"
+        remedy = f"use {quoted(close[0])}, which is there" if close else "check the name and the folder"
         return Problem("File not found", shown, "no such file", "a file that exists", remedy)
     if isinstance(error, IsADirectoryError):
         return Problem("A folder where a file is needed", shown, "a folder", "a file", "name a file in it")

@@ -8,6 +8,8 @@ from dataclasses import dataclass, field
 import numpy as np
 import numpy.typing as npt
 
+from workbench.errors import quoted
+
 _MOST = 5  # things of one kind that are listed one by one
 _LONGEST = 60  # characters of a cell that are shown
 
@@ -37,7 +39,7 @@ class Places:
     def column(self, name: str) -> str:
         """Return where a column is named."""
         line = "" if self.header is None else f" line {self.header},"
-        return f"{self.source},{line} column {name!r}"
+        return f"{self.source},{line} column {quoted(name)}"
 
     def row(self, index: int) -> str:
         """Return the name of one bin's row."""
@@ -47,10 +49,10 @@ class Places:
         """Return where some bins' numbers of one column stand."""
         indices = np.atleast_1d(np.asarray(rows, dtype=np.intp)).tolist()
         if len(indices) == 1:
-            return f"{self.source}, {self.row(indices[0])}, column {column!r}"
+            return f"{self.source}, {self.row(indices[0])}, column {quoted(column)}"
         numbers = [self.lines[index] if self.lines else index + 1 for index in indices]
         word = "lines" if self.lines else "bins"
-        return f"{self.source}, {word} {listed([str(number) for number in numbers])}, column {column!r}"
+        return f"{self.source}, {word} {listed([str(number) for number in numbers])}, column {quoted(column)}"
 
     def found(self, rows: npt.ArrayLike, column: str, values: npt.NDArray[np.float64]) -> str:
         """Return some bins' numbers of one column, as they were written."""
@@ -65,7 +67,7 @@ class Places:
 def as_written(text: str) -> str:
     """Return a file's text fit for a terminal: cut when long, escaped when it holds control characters."""
     short = text if len(text) <= _LONGEST else text[: _LONGEST - 3] + "..."
-    return short if short.isprintable() else repr(short)
+    return short if short.isprintable() else quoted(short)
 
 
 def listed(texts: Sequence[str]) -> str:

@@ -9,7 +9,7 @@ import numpy as np
 
 from workbench.counts.magnitudes import WORKABLE, is_workable
 from workbench.counts.table import Table, negative_template_problems
-from workbench.errors import Caution, InputError, Problem, nearest
+from workbench.errors import Caution, InputError, Problem, nearest, quoted
 
 NEGATIVE_TEMPLATES = ("refuse", "zero")
 
@@ -64,7 +64,7 @@ class Region:
 
 
 def _choice_problems(region: Region) -> list[Problem]:
-    where = f"region {region.name!r}"
+    where = f"region {quoted(region.name)}"
     problems = []
     if not region.name.strip():
         problems.append(Problem("A region without a name", where, "nothing", "a name", "name the region"))
@@ -73,8 +73,8 @@ def _choice_problems(region: Region) -> list[Problem]:
             Problem(
                 "An unknown way to treat template bins below zero",
                 f"{where}, negative_templates",
-                repr(region.negative_templates),
-                " or ".join(repr(choice) for choice in NEGATIVE_TEMPLATES),
+                quoted(str(region.negative_templates)),
+                " or ".join(quoted(choice) for choice in NEGATIVE_TEMPLATES),
                 nearest(str(region.negative_templates), NEGATIVE_TEMPLATES),
             )
         )
@@ -84,7 +84,7 @@ def _choice_problems(region: Region) -> list[Problem]:
                 "Template errors asked for, but none given",
                 f"{where}, template_errors",
                 f"no error column in {region.table.source}",
-                "at least one column 'NAME error' beside the column 'NAME'",
+                'at least one column "NAME error" beside the column "NAME"',
                 "add the columns, or write template_errors = false",
             )
         )

@@ -12,7 +12,7 @@ import numpy.typing as npt
 from workbench.counts.binning import Binning, locked, not_finite_problem
 from workbench.counts.files import digest_of
 from workbench.counts.places import Places
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 
 Array = npt.NDArray[np.float64]
 
@@ -109,7 +109,7 @@ def name_problems(
         Problem(
             "A template with a name that means something else",
             places.column(name),
-            repr(name),
+            quoted(name),
             f"any name but {', '.join(BIN_COLUMNS)}",
             "rename the template",
         )
@@ -120,16 +120,18 @@ def name_problems(
 
 
 def _orphan(name: str, columns: Mapping[str, object], places: Places) -> Problem:
-    remedy = f"add the column {name!r}, or leave its errors out"
+    remedy = f"add the column {quoted(name)}, or leave its errors out"
     close = difflib.get_close_matches(name, columns, n=1)
     if close:
-        remedy = f"rename it to {close[0] + ERROR_ENDING!r}, or add the column {name!r}"
+        remedy = f"rename it to {quoted(close[0] + ERROR_ENDING)}, or add the column {quoted(name)}"
     if name in BIN_COLUMNS:
         remedy = "leave it out: the law of the counts says how far they spread"
     return Problem(
         "Errors of a template that is not there",
         places.column(name + ERROR_ENDING),
-        f"no column {name!r}" if name not in BIN_COLUMNS else f"errors of {name!r}, which is no template",
+        f"no column {quoted(name)}"
+        if name not in BIN_COLUMNS
+        else f"errors of {quoted(name)}, which is no template",
         "the name of one of the templates: " + (", ".join(columns) or "(there are none)"),
         remedy,
     )

@@ -11,7 +11,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from workbench.errors import Caution
+from workbench.errors import Caution, quoted
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Comparison
 from workbench.likelihood.model import Model
@@ -76,9 +76,9 @@ def empty_bin_cautions(
             cautions.append(
                 Caution(
                     "empty-bin-events",
-                    f"{comparison.hypothesis} against {comparison.against}: ln B depends on the events given "
-                    f"to bins that nothing fills; it is {few}, {given} and {many} with a tenth, once and ten "
-                    "times as many.",
+                    f"{quoted(comparison.hypothesis)} against {quoted(comparison.against)}: ln B depends on "
+                    f"the events given to bins that nothing fills; it is {few}, {given} and {many} with a "
+                    "tenth, once and ten times as many.",
                 )
             )
     return tuple(cautions)

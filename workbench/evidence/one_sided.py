@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from workbench.errors import Caution
+from workbench.errors import Caution, quoted
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.sampling import sample
 from workbench.hypotheses.analysis import Analysis
@@ -56,7 +56,7 @@ def one_sided_cautions(analysis: Analysis, grids: Sequence[Grid | None]) -> tupl
         found.append(
             Caution(
                 "one-sided-reading",
-                f"{source.name!r} on {effect.process!r} has both variations on one side; read as "
+                f"{quoted(source.name)} on {quoted(effect.process)} has both variations on one side; read as "
                 + "; read as ".join(changes),
             )
         )
@@ -98,7 +98,7 @@ def _changes(analysis: Analysis, grids: Sequence[Grid]) -> str:
         again = integrate(model, grid.integrand.counts, grid.mode)
         shifts.append(np.nan if again is None else _sampled(again) - _sampled(grid))
     words = [
-        f"ln B of {hypothesis.name!r} changes by " + f"{shift - shifts[0]:+.2f}".replace("-", "−")
+        f"ln B of {quoted(hypothesis.name)} changes by " + f"{shift - shifts[0]:+.2f}".replace("-", "−")
         for hypothesis, shift in zip(analysis.hypotheses[1:], shifts[1:], strict=True)
     ]
     return " and ".join(words)

@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.errors import Caution, InputError, Problem
+from workbench.errors import Caution, InputError, Problem, quoted
 from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
@@ -110,10 +110,10 @@ def observed_counts(model: Model) -> Array:
         *(
             Problem(
                 what="a region has no observed counts",
-                where=f"region {name!r}",
-                found="no `observed`",
+                where=f"region {quoted(name)}",
+                found='no column "observed"',
                 expected="observed counts in every bin",
-                remedy="add an `observed` column, or use `oddsbench check`, which needs none",
+                remedy='add a column "observed", or use oddsbench check, which needs none',
             )
             for name in missing
         )
@@ -259,7 +259,7 @@ def bin_names(model: Model, bins: npt.NDArray[np.intp]) -> list[str]:
             if start <= index < start + binning.number:
                 low, high = binning.low[index - start], binning.high[index - start]
                 unit = f" {region.unit}" if region.unit else ""
-                names.append(f"region {region.name!r} from {low:g} to {high:g}{unit}")
+                names.append(f"region {quoted(region.name)} from {low:g} to {high:g}{unit}")
         start += binning.number
     return names
 
@@ -271,7 +271,7 @@ def _cautions(one: Weighed) -> list[Caution]:
         found.append(
             Caution(
                 "unfinished-nodes",
-                f"{one.model.hypothesis}: {share:.1%} of the quadrature's nodes did not converge",
+                f"{quoted(one.model.hypothesis)}: {share:.1%} of the quadrature's nodes did not converge.",
             )
         )
     return found

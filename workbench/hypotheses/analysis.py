@@ -7,14 +7,14 @@ from dataclasses import dataclass
 from typing import Protocol, TypeVar
 
 from workbench.counts.region import Region
-from workbench.errors import Caution, InputError, Problem, nearest
+from workbench.errors import Caution, InputError, Problem, nearest, quoted
 from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.contents import digest_of_analysis
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.effects import regions_acted_on
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
-from workbench.hypotheses.faults import Fault, dotted, shortened
+from workbench.hypotheses.faults import Fault, dotted
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Fixed
@@ -272,7 +272,7 @@ def _duplicates(analysis: Analysis) -> Iterator[Fault]:
             yield Fault(
                 (kind, name),
                 f"Two {kind} of the same name",
-                f"{shortened(name)!r} {names.count(name)} times",
+                f"{quoted(name)} {names.count(name)} times",
                 "each name once",
                 "rename one of them",
             )
@@ -287,7 +287,7 @@ def _named(kind: str, name: str, given: Sequence[Noun]) -> Noun:
         Problem(
             f"No {kind} of this name",
             kind,
-            repr(shortened(name)),
+            quoted(name),
             f"a {kind} of the analysis",
             nearest(name, known),
         )

@@ -6,7 +6,7 @@ import math
 
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis, default_hypotheses
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Prior, Uniform
@@ -85,7 +85,7 @@ def _template(column: str) -> dict[str, Contribution]:
 
 
 def _column_problems(table: Table, signals: list[str], backgrounds: list[str]) -> list[Problem]:
-    listed = ", ".join(repr(name) for name in table.columns) or "no template columns"
+    listed = ", ".join(quoted(name) for name in table.columns) or "no template columns"
     problems = []
     if not signals:
         problems.append(
@@ -93,7 +93,7 @@ def _column_problems(table: Table, signals: list[str], backgrounds: list[str]) -
                 "A histogram without a signal column",
                 table.source,
                 listed,
-                "a column named 'signal', or 'signal ...': the events expected at strength 1",
+                'a column named "signal", or "signal ...": the events expected at strength 1',
                 "rename the signal's column, or write an analysis file that says which process is signal",
             )
         )

@@ -12,9 +12,9 @@ import numpy.typing as npt
 from workbench.counts.binning import Binning
 from workbench.counts.region import Region
 from workbench.counts.table import ERROR_ENDING
-from workbench.errors import Caution
+from workbench.errors import Caution, quoted
 from workbench.hypotheses.effects import regions_acted_on
-from workbench.hypotheses.faults import dotted, quoted, shown
+from workbench.hypotheses.faults import dotted, shown
 from workbench.hypotheses.shapes import Template, Templates
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 
@@ -167,7 +167,7 @@ def _variation(source: Uncertainty, effect: Effect, region: Region, column: str)
         smallest = 1e-9 * float(nominal.sum())
     if min(moved) > smallest or max(moved) < -smallest:
         yield _one_sided_caution(
-            source, effect, f"by {moved[0]:+.3g} and {moved[1]:+.3g} events in {region.name}"
+            source, effect, f"by {moved[0]:+.3g} and {moved[1]:+.3g} events in {quoted(region.name)}"
         )
     is_empty = (nominal == 0) & (up == 0) & (down == 0)
     is_additive = ~is_empty & ((nominal <= 0) | (up <= 0) | (down <= 0))

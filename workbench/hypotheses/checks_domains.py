@@ -8,7 +8,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, quoted, shown
+from workbench.errors import quoted
+from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, shown
 from workbench.hypotheses.priors import Normal
 from workbench.hypotheses.processes import Process
 from workbench.hypotheses.quantities import Curve, Quantity

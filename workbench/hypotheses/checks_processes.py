@@ -7,7 +7,7 @@ import math
 from collections.abc import Iterator
 
 from workbench.counts.region import Region
-from workbench.errors import nearest
+from workbench.errors import nearest, quoted, shortened
 from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.faults import (
@@ -16,8 +16,6 @@ from workbench.hypotheses.faults import (
     dotted,
     field_path,
     number_fault,
-    quoted,
-    shortened,
     shown,
 )
 from workbench.hypotheses.processes import Contribution, Process

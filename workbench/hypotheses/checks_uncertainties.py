@@ -6,9 +6,10 @@ import math
 from collections.abc import Collection, Iterator
 
 from workbench.counts.magnitudes import LARGEST_FACTOR
+from workbench.errors import quoted
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.effects import regions_acted_on
-from workbench.hypotheses.faults import Fault, KeyPath, number_fault, quoted, shown
+from workbench.hypotheses.faults import Fault, KeyPath, number_fault, shown
 from workbench.hypotheses.processes import Process
 from workbench.hypotheses.shapes import Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty

@@ -11,13 +11,12 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 from workbench.counts.magnitudes import WORKABLE, is_workable
-from workbench.errors import Problem
+from workbench.errors import Problem, quoted, shortened
 
 KeyPath = tuple[str | int, ...]
 Place = Callable[[KeyPath], str]
 
 BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
-LONGEST_SHOWN = 60
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,26 +63,10 @@ def field_path(key: str) -> KeyPath:
     return (name, int(rest.rstrip("]"))) if rest else (name,)
 
 
-def quoted(word: str) -> str:
-    """Return a text in double quotes on one line, cut where it is long."""
-    return '"' + shortened(word) + '"'
-
-
-def printable(text: str) -> str:
-    """Return a text with everything that a terminal would not show, or act on, spelt out."""
-    return "".join(letter if letter.isprintable() else f"\\u{ord(letter):04x}" for letter in text)
-
-
-def shortened(text: str) -> str:
-    """Return a text that can be printed, cut to what fits on a line of the terminal."""
-    text = printable(text)
-    return text if len(text) <= LONGEST_SHOWN else text[: LONGEST_SHOWN - 3] + "..."
-
-
 def toml_fault_text(text: str) -> str:
     """Return what the standard library's TOML reader found, in words that say what it is."""
     path = text.replace("('", "").replace("', '", ".").replace("',)", "").replace("')", "")
-    return path.replace("Invalid", "Unreadable").replace("invalid", "unreadable")
+    return path.replace("Invalid", "Unreadable").replace("invalid", "unreadable").replace("'", '"')
 
 
 def shown(value: object) -> str:

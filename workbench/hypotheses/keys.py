@@ -9,8 +9,8 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterator, Mapping
 
-from workbench.errors import Problem, nearest
-from workbench.hypotheses.faults import Fault, KeyPath, Place, shortened, shown
+from workbench.errors import Problem, nearest, shortened
+from workbench.hypotheses.faults import Fault, KeyPath, Place, shown
 
 
 class Findings:

@@ -8,12 +8,12 @@ import tomllib
 from pathlib import Path
 
 from workbench.counts.files import read_bytes, text_of
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, shortened
 from workbench.hypotheses.analysis import Analysis, declared_analysis
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import Exposure
-from workbench.hypotheses.faults import KeyPath, dotted, shortened, shown, toml_fault_text
+from workbench.hypotheses.faults import KeyPath, dotted, shown, toml_fault_text
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.keys import Findings, Section
 from workbench.hypotheses.lines import key_lines, line_of

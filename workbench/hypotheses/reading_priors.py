@@ -9,8 +9,8 @@ from typing import Any
 
 import numpy as np
 
-from workbench.errors import InputError, nearest
-from workbench.hypotheses.faults import Fault, printable, quoted, shown, toml_fault_text
+from workbench.errors import InputError, nearest, printable, quoted
+from workbench.hypotheses.faults import Fault, shown, toml_fault_text
 from workbench.hypotheses.keys import Findings, Section
 from workbench.hypotheses.priors import FAMILIES, Prior
 
@@ -130,7 +130,7 @@ def _unreadable(text: str, error: Exception) -> Fault:
         whole = f"{{ {printable(text.strip())} }}"
     elif not text.strip().startswith("{"):
         missing = "no { at its start"
-    remedy = f"write '{whole}', the quotes for the shell"
+    remedy = f'write "{whole}", the quotes for the shell'
     return Fault(("prior",), what, f"{shown(text)}: {missing}", f"{PRIOR}, braces included", remedy)
 
 
@@ -146,4 +146,4 @@ def _is_inside_of_a_table(text: str) -> bool:
 def _reason(error: Exception) -> str:
     if isinstance(error, RecursionError):
         return "brackets nested too deeply"
-    return toml_fault_text(str(error).partition(" (at ")[0]).lower().replace("'='", "=")
+    return toml_fault_text(str(error).partition(" (at ")[0]).lower()

@@ -11,8 +11,8 @@ from workbench.counts.binning import Binning
 from workbench.counts.csv_table import read_csv_table
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.errors import InputError, Problem
-from workbench.hypotheses.faults import KeyPath, quoted, shortened, shown
+from workbench.errors import InputError, Problem, quoted, shortened
+from workbench.hypotheses.faults import KeyPath, shown
 from workbench.hypotheses.keys import Findings, Section
 
 INLINE_SOURCE = "edges and counts in the analysis file"
@@ -156,7 +156,7 @@ def _stays_where_it_says(name: str, folder: Path) -> bool:
 
 def _placed(problem: Problem, name: str, findings: Findings) -> Problem:
     """Return a region's problem with the place in the file instead of the region's name."""
-    subject = f"region {name!r}"
+    subject = f"region {quoted(name)}"
     if not problem.where.startswith(subject):
         return problem
     key = problem.where.removeprefix(subject).removeprefix(", ")
@@ -166,7 +166,7 @@ def _placed(problem: Problem, name: str, findings: Findings) -> Problem:
 
 def _inline(problem: Problem, section: Section) -> Problem:
     """Return a problem of bins written in the analysis, with the place in the file."""
-    key = "observed" if "'observed'" in problem.where else "edges"
+    key = "observed" if quoted("observed") in problem.where else "edges"
     where = section.findings.place((*section.path, key))
     _, _, detail = problem.where.partition(", ")
     bins = detail.partition(", column")[0] if detail.startswith("bin") else ""

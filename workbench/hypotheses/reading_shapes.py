@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import fields
 from typing import Any, Literal
 
-from workbench.errors import nearest
-from workbench.hypotheses.faults import quoted, shown
+from workbench.errors import nearest, quoted
+from workbench.hypotheses.faults import shown
 from workbench.hypotheses.keys import Section
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity

@@ -5,8 +5,8 @@ from __future__ import annotations
 import re
 from collections.abc import Collection
 
-from workbench.errors import nearest
-from workbench.hypotheses.faults import Fault, KeyPath, printable, quoted, shortened
+from workbench.errors import nearest, printable, quoted, shortened
+from workbench.hypotheses.faults import Fault, KeyPath
 
 NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
 

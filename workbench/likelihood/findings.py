@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from workbench.errors import quoted
 from workbench.hypotheses.priors import LogNormal
 from workbench.likelihood.coordinates import Coordinate
 from workbench.likelihood.model import Model
@@ -132,26 +133,30 @@ def _notes(fitted: tuple[Fitted, ...], summit: Summit) -> tuple[str, ...]:
     ]
     notes = []
     if flat:
-        notes.append(f"the data do not constrain {', '.join(flat)}; no error is quoted")
+        notes.append(f"the data do not constrain {_named(flat)}; no error is quoted")
     for one, is_at_limit in zip(fitted, spread.at_limit, strict=True):
         if is_at_limit:
             one_sided = one.low is not None or one.high is not None
             notes.append(
-                f"{one.name} is at the end of its range: "
+                f"{quoted(one.name)} is at the end of its range: "
                 + ("its error is one-sided" if one_sided else "no error is quoted")
             )
     notes += _degenerate(fitted, spread.correlations)
     if little:
-        notes.append(f"the data say little about {', '.join(little)} (contraction below 5 %)")
+        notes.append(f"the data say little about {_named(little)} (contraction below 5 %)")
     return tuple(notes)
 
 
 def _degenerate(fitted: tuple[Fitted, ...], correlations: Array) -> list[str]:
     """Return a sentence for each pair that the data cannot tell apart."""
     return [
-        f"the data cannot tell {fitted[second].name} from {fitted[first].name} "
+        f"the data cannot tell {quoted(fitted[second].name)} from {quoted(fitted[first].name)} "
         f"(correlation {correlations[first, second]:+.3f})"
         for first in range(len(fitted))
         for second in range(first)
         if abs(correlations[first, second]) > _DEGENERATE
     ]
+
+
+def _named(names: list[str]) -> str:
+    return ", ".join(quoted(name) for name in names)

@@ -8,7 +8,7 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from workbench.errors import InputError, Problem
+from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.assembly import assemble
 from workbench.likelihood.coordinates import Coordinate, coordinates_of
@@ -81,10 +81,10 @@ class Model:
             raise InputError(
                 Problem(
                     what=f"{purpose} needs observed counts",
-                    where=f"hypothesis {self.hypothesis!r}",
-                    found="a region without `observed`",
+                    where=f"hypothesis {quoted(self.hypothesis)}",
+                    found='a region without the column "observed"',
                     expected="observed counts in every bin",
-                    remedy="add an `observed` column",
+                    remedy='add a column "observed"',
                 )
             )
         return self.observed

@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 from collections.abc import Iterator
 
+from workbench.errors import quoted
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
@@ -27,7 +28,7 @@ def quantity_words(quantity: Quantity) -> str:
 def shape_words(shape: Shape) -> str:
     """Return a shape in words, its numbers and parameters included."""
     if isinstance(shape, Template):
-        return f"template {shape.column!r}"
+        return f"template {quoted(shape.column)}"
     if isinstance(shape, Templates):
         return f"{len(shape.columns)} templates over {shape.parameter}"
     parts = []
@@ -52,7 +53,7 @@ def effect_words(effect: Effect) -> str:
     where = f" in {', '.join(effect.regions)}" if effect.regions is not None else ""
     if isinstance(effect.up, str) or isinstance(effect.down, str):
         names = [size if isinstance(size, str) else percent(size) for size in (effect.up, effect.down or 0.0)]
-        return f"columns {names[0]!r} / {names[1]!r}{where}"
+        return f"columns {quoted(names[0])} / {quoted(names[1])}{where}"
     if effect.down is None:
         return percent(effect.up) + where
     return f"{percent(effect.up)} / {percent(effect.down)}{where}"

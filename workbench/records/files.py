@@ -90,7 +90,7 @@ def _stranger(record: object, shown: str) -> Problem | None:
         return Problem(
             "Not a record",
             shown,
-            "JSON without a key 'format'",
+            "JSON without a key format",
             "a record of " + ", ".join(COMMANDS),
             "name a file that --output wrote",
         )
@@ -98,7 +98,7 @@ def _stranger(record: object, shown: str) -> Problem | None:
         return Problem(
             "Record of another format",
             f"{shown}, key format",
-            repr(record["format"]),
+            json.dumps(record["format"]),
             str(FORMAT),
             "read it with the version of oddsbench that wrote it (key versions)",
         )
@@ -106,7 +106,7 @@ def _stranger(record: object, shown: str) -> Problem | None:
         return Problem(
             "Record of an unknown command",
             f"{shown}, key command",
-            repr(record.get("command")),
+            json.dumps(record.get("command")),
             "one of " + ", ".join(COMMANDS),
             "name a record of one of these commands",
         )

@@ -6,7 +6,7 @@ import math
 from collections.abc import Sequence
 
 from workbench.ensembles.results import Adequacy
-from workbench.errors import Caution
+from workbench.errors import Caution, quoted
 from workbench.evidence.results import Comparison
 from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.likelihood.coordinates import coordinates_of
@@ -80,10 +80,11 @@ def usual_cautions(analysis: Analysis, comparisons: Sequence[Comparison]) -> tup
         ),
     ]
     if strengths:
+        names = " and ".join(quoted(name) for name in sorted(strengths))
         cautions.append(
             Caution(
                 "strength-prior",
-                f"The Bayes factor depends on how wide the prior of {' and '.join(sorted(strengths))} is: "
+                f"The Bayes factor depends on how wide the prior of {names} is: "
                 "defend that width from what was known before the data.",
             )
         )
@@ -105,7 +106,7 @@ def _look_elsewhere(analysis: Analysis, comparisons: Sequence[Comparison], stren
         for name in analysis.signal_parameters(comparison.hypothesis):
             if name not in strengths and name not in held:
                 parameter = analysis.parameter(name)
-                searched[name] = f"{name} ({prior_words(parameter)})"
+                searched[name] = f"{quoted(name)} ({prior_words(parameter)})"
     if searched:
         return Caution(
             "look-elsewhere",

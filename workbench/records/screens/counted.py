@@ -18,6 +18,7 @@ from workbench.records.screens.layout import (
     columns,
     framed,
     heading,
+    named,
     one_line,
     paragraph,
     wide_columns,
@@ -73,7 +74,7 @@ def claimed_lines(analysis: Analysis, fits: Sequence[Fit]) -> list[str]:
         lines += ([""] if place else []) + _events_table(analysis, region, fits, bins)
     for fit in fits:
         if fit.ending is not Ending.CONVERGED:
-            lines += bullet(f"Fit of {fit.hypothesis}: {fit.ending.value}.")
+            lines += bullet(f"Fit of {named(fit.hypothesis)}: {fit.ending.value}.")
     return lines + _signal_priors(analysis)
 
 
@@ -83,7 +84,9 @@ def adequacy_lines(adequacies: Sequence[Adequacy]) -> list[str]:
     lines = [*heading("Do the hypotheses describe the data?"), *columns(rows, "lll")]
     for item in adequacies:
         if item.unfinished_fits:
-            lines += bullet(f"{item.hypothesis}: {item.unfinished_fits:,} of these fits did not converge.")
+            lines += bullet(
+                f"{named(item.hypothesis)}: {item.unfinished_fits:,} of these fits did not converge."
+            )
     return lines
 
 

@@ -23,6 +23,11 @@ def one_line(text: str) -> str:
     return " ".join("".join(mark if mark.isprintable() else " " for mark in text).split())
 
 
+def named(text: str) -> str:
+    """Return a name of the user's as sentences have it: whole, on one line, in double quotes."""
+    return f'"{one_line(text)}"'
+
+
 def heading(text: str) -> list[str]:
     """Return a section's heading with an empty line before it."""
     return ["", text]

@@ -31,6 +31,7 @@ from workbench.records.screens.layout import (
     columns,
     framed,
     heading,
+    named,
     one_line,
     paragraph,
     screen,
@@ -90,7 +91,7 @@ def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
     lines = [*heading("Evidences"), *columns(rows, "lllrr")]
     for names, reason in _doubts(evidences):
         verb = "is" if len(names) == 1 else "are"
-        lines += bullet(f"{' and '.join(names)} {verb} not established: {reason}")
+        lines += bullet(f"{_joined(names)} {verb} not established: {reason}")
     if all(evidence.established for evidence in evidences):
         lines += paragraph("Every evidence is established: error, k-hat and agreement are all in order.")
     return lines
@@ -139,10 +140,14 @@ def _doubts(evidences: Sequence[Evidence]) -> list[tuple[list[str], str]]:
     return [(names, reason) for reason, names in found.items()]
 
 
+def _joined(names: Sequence[str]) -> str:
+    return " and ".join(named(name) for name in names)
+
+
 def _not_established(comparison: Comparison, evidences: Sequence[Evidence]) -> list[str]:
     pair = (comparison.hypothesis, comparison.against)
     concerned = [evidence for evidence in evidences if evidence.hypothesis in pair]
-    reasons = [f"{' and '.join(names)}: {reason}" for names, reason in _doubts(concerned)]
+    reasons = [f"{_joined(names)}: {reason}" for names, reason in _doubts(concerned)]
     closing = "What each estimator says stands above; none of it is a result."
     frame = framed("NOT ESTABLISHED: NO ODDS ARE GIVEN", [*reasons, closing])
     return [*frame, *columns([["prior odds", odds(math.log(comparison.prior_odds))]], "ll")]
@@ -151,7 +156,9 @@ def _not_established(comparison: Comparison, evidences: Sequence[Evidence]) -> l
 def _sensitivity_lines(item: ScaledPrior, comparison: Comparison, ln_factor: float) -> list[str]:
     name = one_line(item.parameter)
     if item.halved is None and item.doubled is None:
-        return paragraph(f"The prior of {name} ({item.prior}) has no width to halve or double.")
+        return paragraph(
+            f"The prior of {named(item.parameter)} ({item.prior}) has no width to halve or double."
+        )
     decimals = max(decimals_for(comparison.ln_bayes_factor_error or 0.01), 1)
     rows = [[f"prior of {name}", "ln B", "posterior odds"]]
     for label, value in (
