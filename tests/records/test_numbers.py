@@ -13,6 +13,7 @@ from workbench.records.numbers import (
     decimals_for,
     factor,
     fixed,
+    ln_with_error,
     odds,
     probability,
     significant,
@@ -37,7 +38,7 @@ from workbench.records.numbers import (
         (1234567.0, 350.0, "(1.23457 ± 0.00035) × 10^6"),
         (1e-7, 3e-9, "(1.000 ± 0.030) × 10^−7"),
         (5.0, 0.0, "5.0000 (exact)"),
-        (1.0, 1e-13, "1.00000000 ± below 10^−8"),
+        (1.0, 1e-13, "1.00000 ± <0.00001"),
     ],
 )
 def test_a_number_is_rounded_to_its_error(value: float, error: float, text: str) -> None:
@@ -66,6 +67,20 @@ def test_numbers_below_each_other_share_their_decimals() -> None:
     assert with_errors([-43.2921, -35.575], [0.003, 0.004]) == ["−43.292 ± 0.003", "−35.575 ± 0.004"]
     assert with_errors([1.0, 2.0], [0.1, 0.001]) == ["1.000 ± 0.100", "2.000 ± 0.001"]
     assert with_errors([1.0, 2.0], [0.0, 0.02]) == ["1.000 (exact)", "2.000 ± 0.020"]
+
+
+def test_a_logarithm_has_four_decimals_at_most() -> None:
+    """An evidence in closed form stood beside "−19.10678538 ± 0.00000000"."""
+    assert with_errors([-19.10678538, -19.1], [3e-12, 0.003]) == ["−19.1068 ± <0.0001", "−19.1000 ± 0.0030"]
+    assert with_errors([-19.10678538], [1.2e-4]) == ["−19.1068 ± 0.0001"]
+    assert ln_with_error(0.0123456, 2e-6) == "0.0123 ± <0.0001"
+    assert ln_with_error(1.01417, 0.0) == "1.0142 (exact)"
+
+
+def test_a_factor_has_six_digits_at_most() -> None:
+    assert factor(math.log(2.7569123), 1e-7) == "2.75691 ± <0.00001"
+    assert factor(math.log(0.027569123), 1e-7) == "0.0275691 ± <0.0000001"
+    assert factor(2000.0, 1e-7) == "(3.88118 ± <0.00001) × 10^868"
 
 
 def test_a_side_without_an_error_says_so() -> None:

@@ -13,6 +13,8 @@ _PLAIN_BELOW = math.log(1e6)  # longer numbers are read wrongly, so they are sho
 _PLAIN_ABOVE = math.log(1e-4)
 _MEANINGLESS = 1e16
 _LEAST_PLAIN = 1e-8
+_MOST_DIGITS = 6  # nobody defends odds beyond them
+_MOST_DECIMALS_OF_LN = 4
 
 
 def decimals_for(error: float) -> int:
@@ -83,17 +85,36 @@ def with_error(value: float, error: float | None) -> str:
         return f"{fixed(value, 4)} (exact)"
     size = max(abs(value), error)
     if 1e-4 <= size < 1e6:
-        decimals = min(decimals_for(error), 8)
-        size_of_error = fixed(error, decimals) if round(error, decimals) > 0.0 else "below 10^−8"
-        return f"{fixed(value, decimals)} ± {size_of_error}"
+        most = _MOST_DIGITS - 1 - math.floor(math.log10(size))
+        decimals = min(decimals_for(error), max(most, 4), 8)
+        return f"{fixed(value, decimals)} ± {_size(error, decimals)}"
     exponent = math.floor(math.log10(size))
-    scale = 10.0**exponent
-    decimals = max(min(decimals_for(error / scale), 10), 0)
-    return f"({fixed(value / scale, decimals)} ± {fixed(error / scale, decimals)}) × 10^{_power(exponent)}"
+    return _with_power(value / 10.0**exponent, error / 10.0**exponent, exponent)
+
+
+def _with_power(value: float, error: float, exponent: int) -> str:
+    decimals = max(min(decimals_for(error), _MOST_DIGITS - 1), 0)
+    return f"({fixed(value, decimals)} ± {_size(error, decimals)}) × 10^{_power(exponent)}"
+
+
+def _size(error: float, decimals: int) -> str:
+    """Return an error as text; one that so many decimals can't show as below the last of them."""
+    return f"<{10.0**-decimals:.{decimals}f}" if error < 10.0**-decimals else fixed(error, decimals)
+
+
+def ln_with_error(value: float, error: float) -> str:
+    """Return "value ± error" of a logarithm, whose decimals mean the same at whatever size: at most four.
+
+    Args:
+        value: ln of an evidence or of a Bayes factor [nats], or log10 of one.
+        error: one standard error of it; 0 where it is exact.
+    """
+    (text,) = with_errors([value], [error])
+    return text
 
 
 def with_errors(values: Sequence[float], errors: Sequence[float]) -> list[str]:
-    """Return several "value ± error" with the same decimals, so that they can be compared down a column.
+    """Return several "value ± error" with the same decimals, four at most, to compare down a column.
 
     Args:
         values: the numbers.
@@ -102,9 +123,9 @@ def with_errors(values: Sequence[float], errors: Sequence[float]) -> list[str]:
     known = [error for error in errors if error > 0.0]
     least = min((decimals_for(error) for error in known), default=4)
     needed = max((-math.floor(math.log10(error)) for error in known), default=4)
-    decimals = min(max(least, needed, 0), 8)
+    decimals = min(max(least, needed, 0), _MOST_DECIMALS_OF_LN)
     return [
-        f"{fixed(value, decimals)} ± {fixed(error, decimals)}"
+        f"{fixed(value, decimals)} ± {_size(error, decimals)}"
         if error > 0.0
         else f"{fixed(value, decimals)} (exact)"
         for value, error in zip(values, errors, strict=True)
@@ -162,8 +183,7 @@ def factor(ln_value: float, ln_error: float | None = None) -> str:
     mantissa = math.exp(ln_value - exponent * _LN_10)
     if not (ln_error is not None and has_error and ln_error < 1.0):
         return _by_power(mantissa, exponent)
-    decimals = max(decimals_for(mantissa * ln_error), 0)
-    return f"({fixed(mantissa, decimals)} ± {fixed(mantissa * ln_error, decimals)}) × 10^{_power(exponent)}"
+    return _with_power(mantissa, mantissa * ln_error, exponent)
 
 
 def _by_power(mantissa: float, exponent: int) -> str:

@@ -11,9 +11,9 @@ from workbench.records.numbers import (
     decimals_for,
     factor,
     fixed,
+    ln_with_error,
     odds,
     probability,
-    with_error,
     with_errors,
 )
 from workbench.records.outcomes import WeighOutcome
@@ -106,9 +106,9 @@ def comparison_lines(comparison: Comparison, evidences: Sequence[Evidence]) -> l
         return lines + _not_established(comparison, evidences)
     error = comparison.ln_bayes_factor_error or 0.0
     rows = [
-        ["ln B", with_error(ln_factor, error)],
+        ["ln B", ln_with_error(ln_factor, error)],
         ["Bayes factor B", factor(ln_factor, error)],
-        ["log10 B", with_error(ln_factor / math.log(10.0), error / math.log(10.0))],
+        ["log10 B", ln_with_error(ln_factor / math.log(10.0), error / math.log(10.0))],
         ["prior odds", odds(math.log(comparison.prior_odds))],
         ["posterior odds", odds(ln_odds, error)],
     ]
