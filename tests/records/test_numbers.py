@@ -132,7 +132,8 @@ def test_a_probability_near_one_is_told_by_what_is_left(
 
 
 def test_numbers_are_not_padded_with_zeros() -> None:
-    assert (as_written(30.0), as_written(-0.5), as_written(1.2e-7)) == ("30", "−0.5", "1.2e−07")
+    assert (as_written(30.0), as_written(-0.5), as_written(1.2e-7)) == ("30", "−0.5", "1.2e−7")
+    assert as_written(3.2e18) == "3.2e18"
     assert (trimmed(10.0), trimmed(9.094), trimmed(2240.0)) == ("10", "9.09", "2,240")
     assert (significant(999.96, 4), significant(0.0), fixed(float("nan"), 2)) == ("1,000", "0", "no number")
 

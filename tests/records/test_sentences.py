@@ -5,9 +5,10 @@ from __future__ import annotations
 from dataclasses import replace
 
 from tests.records import hand_built as hand
+from workbench.hypotheses.exposure import Exposure
 from workbench.hypotheses.quantities import Curve
 from workbench.hypotheses.uncertainties import Effect
-from workbench.records.descriptions import effect_words, percent, quantity_words
+from workbench.records.descriptions import effect_words, exposure_words, percent, quantity_words
 from workbench.records.sentences import usual_cautions, verdict_on_all
 
 
@@ -40,6 +41,13 @@ def test_a_strength_is_no_searched_range_even_where_nothing_is_established() -> 
     assert 'prior of "mass"' in texts["look-elsewhere"]
     assert "strength" not in texts["look-elsewhere"]
     assert "strength" in texts["strength-prior"]
+
+
+def test_an_exposure_whose_unit_is_a_number_is_a_product() -> None:
+    """The screen said "3.2 1e18 protons on target"."""
+    assert exposure_words(Exposure(3.2, "10^18 protons on target")) == "3.2 × 10^18 protons on target"
+    assert exposure_words(Exposure(24.0, "fb^-1")) == "24 fb^-1"
+    assert exposure_words(Exposure(86.0)) == "86"
 
 
 def test_effects_are_said_with_their_sign() -> None:

@@ -17,6 +17,7 @@ from workbench.plots.frame import clean_axes
 from workbench.plots.palette import LIGHT, Palette
 from workbench.plots.small_counts import excess, interval
 from workbench.plots.words import spread, typeset, wrapped
+from workbench.records.descriptions import exposure_words
 from workbench.records.numbers import as_written
 
 if TYPE_CHECKING:
@@ -272,7 +273,7 @@ def _name_marks(
 def _title(analysis: Analysis, region: Region) -> str:
     parts = [region.name.replace("$", r"\$")]
     if analysis.exposure is not None:
-        parts.append(f"{as_written(analysis.exposure.collected)} {analysis.exposure.unit}".strip())
+        parts.append(exposure_words(analysis.exposure))
     return typeset("  ·  ".join(parts))
 
 

@@ -7,11 +7,18 @@ from collections.abc import Iterator
 
 from workbench.errors import quoted
 from workbench.hypotheses.analysis import Analysis
+from workbench.hypotheses.exposure import Exposure
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.shapes import Shape, Template, Templates
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.records.numbers import as_written
+
+
+def exposure_words(exposure: Exposure) -> str:
+    """Return an exposure in words: "24 fb^-1", and "3.2 × 10^18 protons" where the unit is a number."""
+    sign = " × " if exposure.unit[:1].isdigit() else " "
+    return f"{as_written(exposure.collected)}{sign}{exposure.unit}".strip()
 
 
 def quantity_words(quantity: Quantity) -> str:

@@ -63,8 +63,9 @@ def significant(value: float, digits: int = 3) -> str:
 
 
 def as_written(value: float) -> str:
-    """Return a number as a person would type it: 30, 0.5, 1.2e−7; never padded with zeros."""
-    return f"{value:.10g}".replace("-", "−")
+    """Return a number as a person would type it: 30, 0.5, 3.2e18, 1.2e−7; never padded with zeros."""
+    mantissa, mark, power = f"{value:.10g}".partition("e")
+    return (mantissa + mark + (str(int(power)) if mark else "")).replace("-", "−")
 
 
 def count(number: float) -> str:

@@ -10,6 +10,7 @@ from workbench.counts.region import Region
 from workbench.ensembles.results import Adequacy
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Ending, Fit
+from workbench.records.descriptions import exposure_words
 from workbench.records.numbers import as_written, count, fixed
 from workbench.records.outcomes import Origin
 from workbench.records.screens.layout import (
@@ -40,8 +41,7 @@ def title_lines(analysis: Analysis, origin: Origin) -> list[str]:
     """Return the title and, under it, the file, the exposure and the seed."""
     parts = [origin.file] if origin.file else []
     if analysis.exposure is not None:
-        unit = f" {analysis.exposure.unit}" if analysis.exposure.unit else ""
-        parts.append(f"exposure {as_written(analysis.exposure.collected)}{unit}")
+        parts.append(f"exposure {exposure_words(analysis.exposure)}")
     if origin.seed is not None:
         parts.append(f"seed {origin.seed}")
     lines = paragraph(analysis.title or "Untitled analysis", "")
