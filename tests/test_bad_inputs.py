@@ -15,7 +15,7 @@ from workbench.commands.main import main
 from workbench.counts.csv_table import read_csv_table
 from workbench.counts.region import Region
 from workbench.errors import InputError
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 
 BAD = Path(__file__).parent / "bad"
 MESSAGE = ".error.txt"

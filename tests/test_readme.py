@@ -21,8 +21,8 @@ import workbench
 from tests.measured import NUMBER, number, strays
 from workbench.commands.main import COMMANDS, main
 from workbench.commands.parsing import Parser
+from workbench.hypotheses.file.reading import read_analysis
 from workbench.hypotheses.priors import FAMILIES
-from workbench.hypotheses.reading import read_analysis
 from workbench.hypotheses.shapes import SHAPES
 
 ROOT = Path(__file__).parents[1]

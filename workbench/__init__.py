@@ -37,7 +37,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     ),
     "workbench.hypotheses.processes": ("Contribution", "Process"),
     "workbench.hypotheses.quantities": ("Curve",),
-    "workbench.hypotheses.reading": ("read_analysis",),
+    "workbench.hypotheses.file.reading": ("read_analysis",),
     "workbench.hypotheses.shapes": (
         "Bernstein",
         "BreitWigner",
@@ -51,7 +51,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
         "Voigt",
     ),
     "workbench.hypotheses.uncertainties": ("Effect", "Uncertainty"),
-    "workbench.hypotheses.writing": ("write_analysis",),
+    "workbench.hypotheses.file.writing": ("write_analysis",),
     "workbench.likelihood.fit": ("fit",),
 }
 _HOME_OF = {name: home for home, names in _HOMES.items() for name in names}

@@ -13,7 +13,7 @@ from scipy import special
 from tests.benchmarks.timing import race, report, timed
 from workbench.evidence.weigh import Weighed, observed_counts, weigh, weigh_hypothesis
 from workbench.hypotheses.analysis import Analysis
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 from workbench.likelihood.model import compile_model
 
 Array = npt.NDArray[np.float64]

@@ -11,7 +11,7 @@ from pytest_benchmark.fixture import BenchmarkFixture
 from tests.benchmarks.timing import race, report
 from workbench.ensembles.adequacy import adequacy
 from workbench.hypotheses.analysis import Analysis
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 from workbench.likelihood.fit import fit
 from workbench.likelihood.model import compile_model
 from workbench.likelihood.objective import StandardObjective

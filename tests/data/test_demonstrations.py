@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from workbench.evidence.weigh import weigh
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 
 DATA = Path(__file__).parents[2] / "data"
 MADE = (

@@ -10,7 +10,7 @@ import pytest
 
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 
 SKERRY = Path(__file__).parents[2] / "data" / "skerry" / "skerry-fixed-mass.toml"
 

@@ -11,8 +11,8 @@ from scipy import integrate as scipy_integrate
 from tests.analyses import counting
 from workbench.evidence.quadrature import integrate
 from workbench.evidence.reweighting import ln_change
+from workbench.hypotheses.file.reading import read_analysis
 from workbench.hypotheses.priors import Exponential, Gamma, HalfNormal, Prior, Uniform
-from workbench.hypotheses.reading import read_analysis
 from workbench.likelihood.model import compile_model
 
 DATA = Path(__file__).parents[2] / "data"

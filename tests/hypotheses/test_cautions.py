@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 import workbench as wb
-from workbench.hypotheses.writing import write_analysis
+from workbench.hypotheses.file.writing import write_analysis
 
 
 def declared(template_errors: bool | None = None, down: float = 0.05) -> wb.Analysis:

@@ -16,8 +16,8 @@ from hypothesis import strategies as st
 from tests.mutations import edited, edits
 from workbench.errors import InputError
 from workbench.hypotheses.analysis import Analysis
-from workbench.hypotheses.reading import read_analysis
-from workbench.hypotheses.writing import write_analysis
+from workbench.hypotheses.file.reading import read_analysis
+from workbench.hypotheses.file.writing import write_analysis
 
 ROOT = Path(__file__).parents[2]
 FILES = [

@@ -13,11 +13,11 @@ import pytest
 
 from workbench.errors import InputError
 from workbench.hypotheses.analysis import Analysis, Exposure, Hypothesis
-from workbench.hypotheses.lines import key_lines
+from workbench.hypotheses.file.lines import key_lines
+from workbench.hypotheses.file.reading import analysis_from_text, read_analysis
 from workbench.hypotheses.priors import Fixed, LogNormal, Normal, Uniform
 from workbench.hypotheses.processes import Contribution
 from workbench.hypotheses.quantities import Curve
-from workbench.hypotheses.reading import analysis_from_text, read_analysis
 from workbench.hypotheses.shapes import Bernstein, CrystalBall, Falling, Gaussian, Templates
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 

@@ -16,7 +16,7 @@ from pathlib import Path
 import pytest
 
 import workbench as wb
-from workbench.hypotheses.toml_text import value_text
+from workbench.hypotheses.file.toml_text import value_text
 
 ROOT = Path(__file__).parents[2]
 FILES = Path(__file__).parent / "files"

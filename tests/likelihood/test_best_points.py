@@ -11,7 +11,7 @@ import numpy.typing as npt
 import pytest
 
 from workbench.ensembles.drawing import draw_counts, draw_parameters
-from workbench.hypotheses.reading import read_analysis
+from workbench.hypotheses.file.reading import read_analysis
 from workbench.likelihood import starts
 from workbench.likelihood.fit import fit
 from workbench.likelihood.model import Model, compile_model
@@ -86,7 +86,7 @@ def test_a_fit_without_asymmetric_errors_loads_no_iminuit() -> None:
     """The command `weigh` loaded it on every start and ran it to find what was known already."""
     code = (
         "import sys\n"
-        "from workbench.hypotheses.reading import read_analysis\n"
+        "from workbench.hypotheses.file.reading import read_analysis\n"
         "from workbench.likelihood.fit import fit\n"
         f"found = fit(read_analysis({str(SKERRY)!r}), 'resonance', asymmetric=False)\n"
         "print(found.ending.name, 'iminuit' in sys.modules)\n"

@@ -71,7 +71,7 @@ def load(options: argparse.Namespace, *, seed: int | None) -> tuple[Analysis, Or
     suffix = Path(options.file).suffix.lower()
     if suffix in ANALYSES:
         _refuse_histogram_options(options)
-        from workbench.hypotheses.reading import read_analysis
+        from workbench.hypotheses.file.reading import read_analysis
 
         analysis = read_analysis(options.file)
         return analysis, Origin(name, digest_of(read_bytes(Path(options.file), name)), seed)
@@ -135,7 +135,7 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
     if options.save is None:
         notes.append("Add --save FILE.toml to keep the analysis file that this made.")
     else:
-        from workbench.hypotheses.writing import write_analysis
+        from workbench.hypotheses.file.writing import write_analysis
 
         write_analysis(analysis, Path(options.save))
         notes.append(f"The analysis file that this made is {options.save}.")

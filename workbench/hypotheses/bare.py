@@ -8,10 +8,10 @@ from workbench.counts.region import Region
 from workbench.counts.table import Table
 from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis, default_hypotheses
+from workbench.hypotheses.file.priors import parse_prior
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Prior, Uniform
 from workbench.hypotheses.processes import Contribution, Process
-from workbench.hypotheses.reading_priors import parse_prior
 from workbench.hypotheses.shapes import Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 

@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.hypotheses.quantities import parameters_of
-from workbench.hypotheses.shape_family import AnalyticShape
+from workbench.hypotheses.shapes.family import AnalyticShape
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]

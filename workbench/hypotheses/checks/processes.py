@@ -8,7 +8,7 @@ from collections.abc import Iterator
 
 from workbench.counts.region import Region
 from workbench.errors import nearest, quoted, shortened
-from workbench.hypotheses.checks_domains import contribution_domain_faults, interpolation_faults
+from workbench.hypotheses.checks.domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.faults import (
     Fault,

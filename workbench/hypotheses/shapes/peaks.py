@@ -13,7 +13,13 @@ from scipy import special
 from workbench.counts.binning import Binning
 from workbench.hypotheses.jets import Jet
 from workbench.hypotheses.quantities import Quantity
-from workbench.hypotheses.shape_family import AnalyticShape, Bounds, edges_of, from_tails, moved_and_stretched
+from workbench.hypotheses.shapes.family import (
+    AnalyticShape,
+    Bounds,
+    edges_of,
+    from_tails,
+    moved_and_stretched,
+)
 
 Array = npt.NDArray[np.float64]
 

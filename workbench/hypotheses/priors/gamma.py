@@ -10,7 +10,7 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.hypotheses.jets import Derivatives
-from workbench.hypotheses.prior_family import (
+from workbench.hypotheses.priors.family import (
     LN_SQRT_TWO_PI,
     SERIES_BELOW,
     TAIL_KNOWN,
@@ -23,7 +23,7 @@ from workbench.hypotheses.prior_family import (
     refuse,
     standard_from_tails,
 )
-from workbench.hypotheses.scale_priors import PositivePrior
+from workbench.hypotheses.priors.scales import PositivePrior
 
 
 @dataclass(frozen=True, slots=True)

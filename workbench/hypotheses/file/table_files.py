@@ -14,7 +14,7 @@ from workbench.counts.csv_writing import csv_text
 from workbench.counts.region import Region
 from workbench.errors import InputError
 from workbench.hypotheses.contents import Content, numbers_digest
-from workbench.hypotheses.reading_regions import read_table_beside
+from workbench.hypotheses.file.regions import read_table_beside
 
 
 @dataclass(frozen=True, slots=True)

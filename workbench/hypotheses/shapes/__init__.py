@@ -6,11 +6,11 @@ from dataclasses import dataclass
 from types import MappingProxyType
 from typing import ClassVar, Final
 
-from workbench.hypotheses.continua import Bernstein, Falling, Flat, PowerLaw
-from workbench.hypotheses.crystal_ball import CrystalBall
-from workbench.hypotheses.peaks import BreitWigner, Gaussian
-from workbench.hypotheses.shape_family import AnalyticShape
-from workbench.hypotheses.voigt import Voigt
+from workbench.hypotheses.shapes.continua import Bernstein, Falling, Flat, PowerLaw
+from workbench.hypotheses.shapes.crystal_ball import CrystalBall
+from workbench.hypotheses.shapes.family import AnalyticShape
+from workbench.hypotheses.shapes.peaks import BreitWigner, Gaussian
+from workbench.hypotheses.shapes.voigt import Voigt
 
 
 @dataclass(frozen=True, slots=True)

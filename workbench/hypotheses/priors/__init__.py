@@ -5,13 +5,13 @@ from __future__ import annotations
 from types import MappingProxyType
 from typing import Final
 
-from workbench.hypotheses.beta_prior import Beta
-from workbench.hypotheses.gamma_prior import Gamma
 from workbench.hypotheses.jets import Derivatives
-from workbench.hypotheses.normal_prior import Normal
-from workbench.hypotheses.prior_family import ContinuousPrior, Moments
-from workbench.hypotheses.range_priors import Fixed, LogUniform, Uniform
-from workbench.hypotheses.scale_priors import Exponential, HalfNormal, LogNormal
+from workbench.hypotheses.priors.beta import Beta
+from workbench.hypotheses.priors.family import ContinuousPrior, Moments
+from workbench.hypotheses.priors.gamma import Gamma
+from workbench.hypotheses.priors.normal import Normal
+from workbench.hypotheses.priors.ranges import Fixed, LogUniform, Uniform
+from workbench.hypotheses.priors.scales import Exponential, HalfNormal, LogNormal
 
 Prior = Uniform | Normal | LogNormal | Gamma | Exponential | HalfNormal | LogUniform | Beta | Fixed
 

@@ -10,9 +10,9 @@ from workbench.counts.files import read_bytes, text_of, write_text_atomically
 from workbench.errors import InputError, Problem
 from workbench.hypotheses.analysis import Analysis, default_hypotheses
 from workbench.hypotheses.contents import Content, content_of
-from workbench.hypotheses.reading import analysis_from_text, parsed
-from workbench.hypotheses.table_files import Bins, bins_of
-from workbench.hypotheses.toml_text import file_text
+from workbench.hypotheses.file.reading import analysis_from_text, parsed
+from workbench.hypotheses.file.table_files import Bins, bins_of
+from workbench.hypotheses.file.toml_text import file_text
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -103,7 +103,7 @@ def _text(
 
 def _merged(original: str, content: Content) -> str | None:
     """Return the original with the new content, or None where its layout cannot be edited in place."""
-    from workbench.hypotheses.merging import merged_text  # tomlkit is slow and needed only here
+    from workbench.hypotheses.file.merging import merged_text  # tomlkit is slow and needed only here
 
     try:
         return merged_text(original, content)

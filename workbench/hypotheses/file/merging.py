@@ -9,7 +9,7 @@ import tomlkit
 from tomlkit.items import InlineTable
 
 from workbench.hypotheses.contents import Content
-from workbench.hypotheses.toml_text import is_left_out, table_lines, value_text
+from workbench.hypotheses.file.toml_text import is_left_out, table_lines, value_text
 
 ORDERED = ("regions", "parameters", "processes", "uncertainties", "hypotheses")
 

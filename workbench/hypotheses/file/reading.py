@@ -14,14 +14,14 @@ from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import Exposure
 from workbench.hypotheses.faults import KeyPath, dotted, shown, toml_fault_text
+from workbench.hypotheses.file.keys import Findings, Section
+from workbench.hypotheses.file.lines import key_lines, line_of
+from workbench.hypotheses.file.priors import read_prior
+from workbench.hypotheses.file.regions import read_region
+from workbench.hypotheses.file.shapes import read_process
+from workbench.hypotheses.file.uncertainties import read_uncertainty
 from workbench.hypotheses.hypothesis import Hypothesis
-from workbench.hypotheses.keys import Findings, Section
-from workbench.hypotheses.lines import key_lines, line_of
 from workbench.hypotheses.parameters import Parameter
-from workbench.hypotheses.reading_priors import read_prior
-from workbench.hypotheses.reading_regions import read_region
-from workbench.hypotheses.reading_shapes import read_process
-from workbench.hypotheses.reading_uncertainties import read_uncertainty
 
 FORMAT = 1
 SYNTAX_PLACE = re.compile(

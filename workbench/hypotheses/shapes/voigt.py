@@ -18,7 +18,7 @@ from scipy import special
 from workbench.counts.binning import Binning
 from workbench.hypotheses.jets import Jet, compose
 from workbench.hypotheses.quantities import Quantity
-from workbench.hypotheses.shape_family import AnalyticShape, Bounds, Edges, edges_of, from_tails
+from workbench.hypotheses.shapes.family import AnalyticShape, Bounds, Edges, edges_of, from_tails
 
 Array = npt.NDArray[np.float64]
 Complex = npt.NDArray[np.complex128]

@@ -7,7 +7,7 @@ from typing import Any, Literal
 
 from workbench.errors import nearest, quoted
 from workbench.hypotheses.faults import shown
-from workbench.hypotheses.keys import Section
+from workbench.hypotheses.file.keys import Section
 from workbench.hypotheses.processes import Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.shapes import SHAPES, Bernstein, Shape, Template, Templates

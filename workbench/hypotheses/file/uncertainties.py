@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from workbench.hypotheses.faults import KeyPath, shown
-from workbench.hypotheses.keys import Section
+from workbench.hypotheses.file.keys import Section
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 
 SIZE = "a number, { up, down } with two numbers or two column names, or { regions = { ... } }"

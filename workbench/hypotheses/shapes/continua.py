@@ -13,7 +13,7 @@ from scipy import special
 from workbench.counts.binning import Binning
 from workbench.hypotheses.jets import Jet, compose
 from workbench.hypotheses.quantities import Quantity
-from workbench.hypotheses.shape_family import AnalyticShape, Bounds, edges_of
+from workbench.hypotheses.shapes.family import AnalyticShape, Bounds, edges_of
 
 Array = npt.NDArray[np.float64]
 

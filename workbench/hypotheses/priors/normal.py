@@ -10,7 +10,7 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.hypotheses.jets import Derivatives
-from workbench.hypotheses.prior_family import (
+from workbench.hypotheses.priors.family import (
     LN_SQRT_TWO_PI,
     Array,
     ContinuousPrior,

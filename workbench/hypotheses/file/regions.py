@@ -13,7 +13,7 @@ from workbench.counts.region import Region
 from workbench.counts.table import Table
 from workbench.errors import InputError, Problem, quoted, shortened
 from workbench.hypotheses.faults import KeyPath, shown
-from workbench.hypotheses.keys import Findings, Section
+from workbench.hypotheses.file.keys import Findings, Section
 
 INLINE_SOURCE = "edges and counts in the analysis file"
 

@@ -11,7 +11,7 @@ from scipy import special
 
 from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.hypotheses.jets import Derivatives
-from workbench.hypotheses.prior_family import (
+from workbench.hypotheses.priors.family import (
     LN_SQRT_TWO_PI,
     ROOT_TWO,
     TINY,

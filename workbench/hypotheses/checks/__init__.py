@@ -7,8 +7,8 @@ from collections.abc import Iterator, Mapping
 
 from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.errors import quoted
-from workbench.hypotheses.checks_processes import process_faults
-from workbench.hypotheses.checks_uncertainties import overlarge_change, uncertainty_faults
+from workbench.hypotheses.checks.processes import process_faults
+from workbench.hypotheses.checks.uncertainties import overlarge_change, uncertainty_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
 from workbench.hypotheses.faults import Fault, KeyPath, number_fault, shown

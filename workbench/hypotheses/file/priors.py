@@ -11,7 +11,7 @@ import numpy as np
 
 from workbench.errors import InputError, nearest, printable, quoted
 from workbench.hypotheses.faults import Fault, shown, toml_fault_text
-from workbench.hypotheses.keys import Findings, Section
+from workbench.hypotheses.file.keys import Findings, Section
 from workbench.hypotheses.priors import FAMILIES, Prior
 
 PRIOR = "{ FAMILY = { ... } }"
