@@ -143,7 +143,7 @@ def test_a_nuisance_that_the_prior_decides_contracts_little_and_is_named() -> No
     assert idle.contraction == pytest.approx(0.0, abs=1e-9)
     assert rate.contraction is not None
     assert 0.0 < rate.contraction < 0.05
-    assert found.notes == ('the data say little about "rate", "s", "idle" (contraction below 5 %)',)
+    assert found.notes == ('the data say little about "rate", "s", "idle" (contraction below 0.05)',)
 
 
 def test_a_lognormal_nuisance_is_measured_in_its_logarithm() -> None:

@@ -13,10 +13,10 @@ from tests.records import hand_built as hand
 from workbench.evidence.results import Evidence
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.hypothesis import Hypothesis
-from workbench.likelihood.results import Ending
+from workbench.likelihood.results import Ending, Fitted
 from workbench.records.outcomes import FitOutcome, WeighOutcome
 from workbench.records.screens.check import check_screen
-from workbench.records.screens.fit import fit_screen
+from workbench.records.screens.fit import fit_screen, value_text
 from workbench.records.screens.layout import WIDEST, columns, plain_ascii, wide_columns
 from workbench.records.screens.weigh import weigh_screen
 
@@ -144,6 +144,25 @@ def test_a_fit_that_nothing_supports_shows_no_likelihood() -> None:
     impossible = replace(given.fits[0], ending=Ending.NO_SUPPORT, ln_likelihood=-np.inf, fitted=())
     text = fit_screen(replace(given, fits=(impossible,)))
     assert "  No parameter value can produce the observed counts.\n" in text
+
+
+def test_a_fit_names_what_the_data_say_little_about_under_its_table() -> None:
+    lines = fit_screen(hand.fitted()).splitlines()
+    note = lines.index("  · The data say nothing about fake composition: its error is that of its prior.")
+    assert lines[note - 1].split()[0] == "exposure"
+
+
+def test_sources_are_written_alike_whether_their_error_is_just_above_1_or_just_below() -> None:
+    """One stood as "0.1 ± 1.0" above another's "0.12 ± 1.00"."""
+    source = Fitted("a", "", "source", 0.1234, 1.004, None, None, 0.12, 0.0, False)
+    assert value_text(source) == "0.12 ± 1.00"
+    assert value_text(replace(source, error=0.996)) == "0.12 ± 1.00"
+    assert value_text(replace(source, error=0.0123)) == "0.123 ± 0.012"
+
+
+def test_a_fit_explains_its_columns_once() -> None:
+    text = fit_screen(hand.fitted())
+    assert text.count("contraction: 1 − (error / the prior's standard deviation)^2") == 1
 
 
 def test_the_check_gives_no_odds() -> None:

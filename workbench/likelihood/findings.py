@@ -143,7 +143,7 @@ def _notes(fitted: tuple[Fitted, ...], summit: Summit) -> tuple[str, ...]:
             )
     notes += _degenerate(fitted, spread.correlations)
     if little:
-        notes.append(f"the data say little about {_named(little)} (contraction below 5 %)")
+        notes.append(f"the data say little about {_named(little)} (contraction below {_PRIOR_DOMINATED:g})")
     return tuple(notes)
 
 

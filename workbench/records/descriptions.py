@@ -43,9 +43,9 @@ def shape_words(shape: Shape) -> str:
         value = getattr(shape, item.name)
         name = item.name.replace("_", " ")
         if item.name == "coefficients":
-            parts.append(f"{name} {', '.join(quantity_words(part) for part in value)}")
+            parts.append(f"{name} = {', '.join(quantity_words(part) for part in value)}")
         else:
-            parts.append(f"{name} {quantity_words(value)}")
+            parts.append(f"{name} = {quantity_words(value)}")
     return f"{shape.family} ({', '.join(parts)})" if parts else shape.family
 
 

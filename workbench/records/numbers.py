@@ -153,11 +153,17 @@ def with_sides(value: float, low: float | None, high: float | None) -> str:
     return f"{texts[0]} {up} {down}"
 
 
-def with_two_digits(value: float, error: float) -> str:
-    """Return "value ± error" with two digits of the error, for parameters listed below each other."""
+def with_two_digits(value: float, error: float, least: int = 0) -> str:
+    """Return "value ± error" with two digits of the error, for parameters listed below each other.
+
+    Args:
+        value: the number.
+        error: one standard error of it.
+        least: decimals at least, for numbers of one scale, so that 0.99 and 1.01 are written alike.
+    """
     if not _LEAST_PLAIN <= max(abs(value), error) < _MEANINGLESS:
         return with_error(value, error)
-    decimals = _two_digits([error])
+    decimals = max(_two_digits([error]), least)
     return f"{fixed(value, decimals)} ± {fixed(error, decimals)}"
 
 

@@ -139,12 +139,14 @@ def predictive_lines(outcome: CheckOutcome) -> list[str]:
     """Return the total count that the priors alone predict, against what was observed."""
     observed = [region.table.observed for region in outcome.analysis.regions]
     known = [counts for counts in observed if counts is not None]
-    seen = f", observed {count(sum(counts.sum() for counts in known))}" if len(known) == len(observed) else ""
+    seen = (
+        f" (observed: {count(sum(counts.sum() for counts in known))})" if len(known) == len(observed) else ""
+    )
     rows = [["hypothesis", "median", "68 % of the draws"]]
     for item in outcome.predictives:
         low, median, high = (count(value) for value in (item.total_low, item.total_median, item.total_high))
         rows.append([one_line(item.hypothesis), median, f"{low} to {high}"])
-    title = f"Counts in all, as the priors predict them{seen}"
+    title = f"Counts in all as the priors predict them{seen}"
     return [*heading(title), *columns(rows, "lrr", INDENT)]
 
 

@@ -12,6 +12,10 @@ from workbench.records.screens.counted import NONE, counted_lines, title_lines
 from workbench.records.screens.layout import aligned_at, bullet, columns, heading, one_line, paragraph, screen
 
 NOTABLE = 0.2
+LEGEND = (
+    "pull: distance from the prior's mean in its standard deviations; + is above.",
+    "contraction: 1 − (error / the prior's standard deviation)^2; 0: the data say nothing, 1: they decide.",
+)
 
 
 def fit_screen(outcome: FitOutcome) -> str:
@@ -26,6 +30,8 @@ def fit_screen(outcome: FitOutcome) -> str:
     lines += counted_lines(outcome.analysis)
     for fit in outcome.fits:
         lines += fit_lines(fit)
+    if any(fit.fitted for fit in outcome.fits):
+        lines += ["", *(line for sentence in LEGEND for line in paragraph(sentence))]
     for fit in outcome.fits:
         lines += correlation_lines(fit)
     if outcome.analysis.cautions:
@@ -50,7 +56,7 @@ def fit_lines(fit: Fit) -> list[str]:
         ]
         lines += ["", *columns([header, *body], "llrr")]
     for note in fit.notes:
-        lines += bullet(note)
+        lines += bullet(f"{note[0].upper()}{note[1:].removesuffix('.')}.")
     return lines
 
 
@@ -62,7 +68,7 @@ def correlation_lines(fit: Fit) -> list[str]:
     ]
     if not rows:
         return []
-    title = f"Correlations above {NOTABLE:g} under {one_line(fit.hypothesis)}"
+    title = f"Correlations beyond ±{NOTABLE:g} under {one_line(fit.hypothesis)}"
     return [*heading(title), *columns(rows, "rl")]
 
 
@@ -88,7 +94,7 @@ def value_text(item: Fitted) -> str:
         return with_sides(item.value, item.low, item.high)
     if item.error is None:
         return f"{significant(item.value, 4)} no error"
-    return with_two_digits(item.value, item.error)
+    return with_two_digits(item.value, item.error, 2 if item.role == "source" else 0)
 
 
 def _name(item: Fitted) -> str:
