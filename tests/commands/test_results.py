@@ -148,7 +148,7 @@ def test_a_bare_histogram_says_what_was_assumed(histogram: str, capsys: pytest.C
     assert main(["fit", histogram, *options]) == 0
     screen = " ".join(capsys.readouterr().out.split())
     assert "its strength's prior is exponential with mean 2" in screen
-    assert "every background has its own uncertainty of +20 %" in screen
+    assert "every background has its own uncertainty of 20 %" in screen
     assert "Add --save FILE.toml to keep the analysis file that this made." in screen
 
 

@@ -10,7 +10,7 @@ from workbench.commands.parsing import Parser, relative_size, whole_number
 from workbench.counts.files import digest_of, read_bytes
 from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis
-from workbench.records.descriptions import percent
+from workbench.records.numbers import as_written
 from workbench.records.outcomes import Origin
 
 ANALYSES = (".toml",)
@@ -128,7 +128,7 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
     analysis = analysis_from_table(table, strength=strength, background_uncertainty=size)
     made_up = (
         f"No analysis file: the signal columns are one process, its strength's prior is {strength.text()}; "
-        f"every background has its own uncertainty of {percent(size)}. Change these with --strength and "
+        f"every background has its own uncertainty of {as_written(100.0 * size)} %. Change these with --strength and "
         "--background-uncertainty."
     )
     notes = [made_up]
