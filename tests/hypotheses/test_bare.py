@@ -120,6 +120,14 @@ def test_a_prior_without_its_outer_braces_is_shown_with_them() -> None:
     )
 
 
+def test_a_prior_without_its_family_is_told_to_name_it() -> None:
+    with pytest.raises(wb.InputError) as refusal:
+        parse_prior("{ low = 0, high = 5 }")
+    (problem,) = refusal.value.problems
+    assert problem.what == "A prior has exactly one family"
+    assert problem.remedy == "name the family around the numbers, such as { uniform = { low = 0, high = 5 } }"
+
+
 @pytest.mark.parametrize(
     ("text", "missing"),
     [

@@ -128,8 +128,8 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
     analysis = analysis_from_table(table, strength=strength, background_uncertainty=size)
     made_up = (
         f"No analysis file: the signal columns are one process, its strength's prior is {strength.text()}; "
-        f"every background has its own uncertainty of {as_written(100.0 * size)} %. Change these with --strength and "
-        "--background-uncertainty."
+        f"every background has its own uncertainty of {as_written(100.0 * size)} %. Change these with "
+        "--strength and --background-uncertainty."
     )
     notes = [made_up]
     if options.save is None:

@@ -31,7 +31,9 @@ def read_prior(section: Section, key: str = "prior") -> Prior | None:
             "A prior has exactly one family",
             shown(holder.content),
             PRIOR,
-            "keep one family: " + ", ".join(FAMILIES),
+            "keep one family: " + ", ".join(FAMILIES)
+            if any(name in FAMILIES for name in holder.content)
+            else f"name the family around the numbers, such as {EXAMPLE}",
         )
         return None
     family = next(iter(holder.content))
