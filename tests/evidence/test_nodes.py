@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import numpy.typing as npt
 import pytest
@@ -128,3 +130,13 @@ def test_columns_are_taken_and_joined_row_by_row() -> None:
     assert both.ln_integral() == pytest.approx(
         integrand.columns(np.array([[-0.5], [0.7]])).ln_integral(), abs=1e-9
     )
+    assert both.evaluations == first.evaluations + second.evaluations >= 2 * INNER_NODES
+
+
+def test_nodes_on_which_newtons_steps_crawl_are_no_longer_refined() -> None:
+    """A million counts in a bin that expects seven once kept the mass-unknown Skerry busy for minutes."""
+    integrand = integrand_of(bump(np.ones(40)))
+    usual = integrand.columns(np.array([[0.0]]))
+    assert not integrand.is_beyond_reach(usual)
+    assert not integrand.is_beyond_reach(replace(usual, evaluations=100 * usual.inner.size))
+    assert integrand.is_beyond_reach(replace(usual, evaluations=10**9))

@@ -29,6 +29,8 @@ _TOO_DEEP = 60.0
 _EDGE = 8.3
 _TOLERANCE = 1e-3
 _ADJUSTMENTS = 8
+_CRAWL = 30  # evaluations a node; three are usual
+_MOST_BATCHES = 300
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -44,6 +46,7 @@ class Columns:
         hessians: (column, inner, coordinate, coordinate) Hessian of the ln integrand there.
         converged: (column, inner) True where the maximisation converged.
         has_inner: False when every signal coordinate is an outer one.
+        evaluations: how often derivatives were worked out to find all this.
     """
 
     outer: Array
@@ -53,6 +56,7 @@ class Columns:
     hessians: Array
     converged: npt.NDArray[np.bool_]
     has_inner: bool
+    evaluations: int = 0
 
     def ln_integral(self) -> Array:
         """Return (column,) ln of the integral over the inner coordinate."""
@@ -84,6 +88,7 @@ class Columns:
             self.hessians[order],
             self.converged[order],
             self.has_inner,
+            self.evaluations,
         )
 
     def joined(self, other: Columns) -> Columns:
@@ -96,6 +101,7 @@ class Columns:
             np.concatenate([self.hessians, other.hessians]),
             np.concatenate([self.converged, other.converged]),
             self.has_inner,
+            self.evaluations + other.evaluations,
         )
 
 
@@ -188,6 +194,14 @@ class Integrand:
         low, high, edge = forecast.range()
         return self._settled(forecast, low, high, edge)
 
+    def is_beyond_reach(self, columns: Columns) -> bool:
+        """Tell whether the maxima took so long to find that more nodes would not help.
+
+        Counts far from any prediction leave an integrand on which Newton's steps crawl.
+        """
+        each, all_together = _CRAWL * columns.inner.size, _MOST_BATCHES * rows_at_once(self.model)
+        return columns.evaluations > max(each, all_together)
+
     def climb(self, starts: Array, moving: Indices) -> Maxima:
         """Return the maxima over some coordinates from (batch, coordinate) starting points."""
         objective = StandardObjective(self.model)
@@ -200,12 +214,9 @@ class Integrand:
         ]
         if len(pieces) == 1:
             return pieces[0]
-        return Maxima(
-            *(
-                np.concatenate([getattr(piece, name) for piece in pieces])
-                for name in ("points", "values", "gains", "gradients", "hessians", "converged")
-            )
-        )
+        names = ("points", "values", "gains", "gradients", "hessians", "converged")
+        arrays = {name: np.concatenate([getattr(piece, name) for piece in pieces]) for name in names}
+        return Maxima(**arrays, evaluations=sum(piece.evaluations for piece in pieces))
 
     def _forecast(self, starts: Array, inner: int) -> Forecast:
         """Return what the linear response of the counts says about the strength in each column."""
@@ -225,7 +236,7 @@ class Integrand:
         columns = self._strung(forecast, low[:, None] + (high - low)[:, None] * steps)
         for _ in range(_ADJUSTMENTS):
             change, low, high = _adjusted(columns, low, high, edge)
-            if not change.any():
+            if not change.any() or self.is_beyond_reach(columns):
                 break
             rows = np.flatnonzero(change)
             again = low[rows, None] + (high[rows] - low[rows])[:, None] * steps
@@ -260,6 +271,7 @@ class Integrand:
             found.hessians.reshape(*shape, self.model.size, self.model.size),
             found.converged.reshape(shape),
             index is not None,
+            found.evaluations,
         )
 
 

@@ -101,7 +101,7 @@ def _integrated(model: Model, counts: Array, near: Mapping[str, float], along_ri
     columns = integrand.columns(_product([axis.nodes for axis in axes]))
     for _ in range(_ROUNDS):
         finer = _refined(axes, columns)
-        if finer is None:
+        if finer is None or integrand.is_beyond_reach(columns):
             break
         columns = _extended(integrand, axes, columns, finer)
         axes = finer

@@ -174,7 +174,8 @@ def _estimated(model: Model, grid: Grid, seed: np.random.SeedSequence, near: Map
     drawn = _sampled(grid, seed)
     first = Weighed(model, _agreed(model, grid, drawn), grid, drawn)
     has_ridge = grid.bending is None or grid.bending.ridge is not None
-    if has_ridge or (first.evidence.established and drawn.k_hat < _EVEN_ENOUGH):
+    is_hopeless = not drawn.k_hat < np.inf
+    if has_ridge or is_hopeless or (first.evidence.established and drawn.k_hat < _EVEN_ENOUGH):
         return first
     again = integrate(model, grid.integrand.counts, near, along_ridge=True)
     if again is None:

@@ -28,6 +28,7 @@ class Maxima:
         gradients: (batch, coordinate) its gradient.
         hessians: (batch, coordinate, coordinate) its Hessian, held coordinates included.
         converged: (batch,) True where the expected further gain is below the tolerance.
+        evaluations: how often derivatives were worked out, all rows together.
     """
 
     points: Array
@@ -36,6 +37,7 @@ class Maxima:
     gradients: Array
     hessians: Array
     converged: Flags
+    evaluations: int
 
 
 def maximise(
@@ -69,7 +71,7 @@ def maximise(
     box = _Box.around(objective, start, moving, scale)
     points = np.clip(start, box.low, box.high)
     values, gradients, hessians = objective.derivatives(points, counts)
-    shrink = np.ones(len(points))
+    shrink, evaluations = np.ones(len(points)), len(points)
     steps, gain = _steps(box, points, gradients, hessians)
     converged = (gain <= tolerance) & np.isfinite(values)
     active = np.flatnonzero((gain > tolerance) & steps.any(axis=1))
@@ -80,6 +82,7 @@ def maximise(
         trial = np.clip(wanted, box.low, box.high)
         rows = counts if counts.ndim == 1 else counts[active]
         value, gradient, hessian = objective.derivatives(trial, rows)
+        evaluations += len(trial)
         better = value >= values[active] - 1e-10 * (1.0 + np.abs(values[active]))
         worse = active[~better]
         shrink[worse] *= 0.3
@@ -93,7 +96,8 @@ def maximise(
             )
         converged[moved] = (gain[moved] <= tolerance) & np.isfinite(values[moved])
         active = active[~converged[active] & (shrink[active] > 1e-9) & steps[active].any(axis=1)]
-    return Maxima(points, values, np.where(converged, gain, 0.0), gradients, hessians, converged)
+    gains = np.where(converged, gain, 0.0)
+    return Maxima(points, values, gains, gradients, hessians, converged, evaluations)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
