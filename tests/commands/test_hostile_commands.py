@@ -162,6 +162,61 @@ def test_checking_and_fitting_a_mutated_file_end_calmly(
         assert json.loads(out, parse_constant=refuse_constant)["command"] == command
 
 
+ONCE = {
+    "an overflow told by numpy": (0, "check", {"yield = 6.0": "yield = 1e100"}, 0),
+    "derivatives that are no numbers": (0, "fit", {"yield = 4.0": "yield = 1e50"}, 1),
+    "a singular matrix": (
+        2,
+        "weigh",
+        {"high = 5": "high = 1e50", "mean = 18, sd = 0.5": "mean = 18, sd = 1e-50"},
+        None,
+    ),
+    "eigenvalues that did not converge": (
+        2,
+        "weigh",
+        {"normal = { mean = 18, sd = 0.5 }": "gamma = { shape = 1e-3, rate = 1e5 }"},
+        None,
+    ),
+    "estimates that differ by nan": (
+        2,
+        "weigh",
+        {"normal = { mean = 18, sd = 0.5 }": "gamma = { shape = 1e-99, rate = 1e-100 }"},
+        1,
+    ),
+    "the minimiser's remarks amid the record": (
+        1,
+        "fit",
+        {
+            "gamma = { shape = 2.0, rate = 0.8 }": "beta = { a = 100, b = 1e-100 }",
+            "high = 1328": "high = 1e99",
+        },
+        0,
+    ),
+}
+
+
+@pytest.mark.parametrize(("which", "command", "changed", "code"), ONCE.values(), ids=ONCE)
+def test_what_once_ended_badly_ends_calmly(
+    folder: Path,
+    capsys: pytest.CaptureFixture[str],
+    which: int,
+    command: str,
+    changed: dict[str, str],
+    code: int | None,
+) -> None:
+    text = FILES[which].read_text(encoding="utf-8")
+    for old, new in changed.items():
+        assert old in text
+        text = text.replace(old, new)
+    path = folder / "once.toml"
+    path.write_text(text, encoding="utf-8")
+    ended, out = answer(capsys, [command, str(path), "--json"])
+    assert json.loads(out, parse_constant=refuse_constant)["command"] == command
+    assert code in {None, ended}
+    _, screen = answer(capsys, [command, str(path)])
+    assert re.search(r"\b(nan|inf)\b", screen) is None
+
+
 def test_many_mutated_files_are_still_answered(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
     """The changes are not so coarse that everything is refused."""
     codes = [

@@ -216,7 +216,7 @@ def _agreed(model: Model, grid: Grid, drawn: Sample) -> Evidence:
         drawn.error if finite else None,
         not reason,
         reason,
-        tuple(one for one in estimates if one.ln_evidence > LEAST_LN_HEIGHT),
+        tuple(one for one in estimates if one.ln_evidence > LEAST_LN_HEIGHT and np.isfinite(one.error)),
     )
 
 
@@ -226,6 +226,8 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
         return "no draw can produce the observed counts"
     if grid.ln_evidence <= LEAST_LN_HEIGHT:
         return "the nuisance parameters have no maximum that Laplace could integrate around"
+    if not np.isfinite([grid.ln_evidence, grid.error, drawn.error]).all():
+        return "its numbers are too far apart for double precision"
     allowed = largest_allowed(SCRAMBLES * _FIRST_DRAWS if drawn is None else drawn.ln_weights.size)
     if drawn.error > LARGEST_ERROR:
         return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"

@@ -125,6 +125,7 @@ def _minimised(search: Searcher, start: Array, counts: Array) -> tuple[Array, bo
     )
     minuit.errordef = Minuit.LIKELIHOOD
     minuit.strategy = 0
+    minuit.print_level = -1  # at 0 its C++ writes remarks to standard output, amid the record
     minuit.errors = 0.1 * search.scale
     minuit.limits = [
         (None if np.isinf(low) else low, None if np.isinf(high) else high)
