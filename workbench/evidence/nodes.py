@@ -13,8 +13,8 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.outlook import DEEP, Outlook
 from workbench.evidence.search import Landscape, signal_events
-from workbench.hypotheses.priors import Prior
 from workbench.likelihood.model import Model
 from workbench.likelihood.newton import Maxima, maximise
 from workbench.likelihood.objective import StandardObjective, rows_at_once
@@ -24,9 +24,7 @@ Indices = npt.NDArray[np.intp]
 
 INNER_NODES = 15
 LEAST_LN_HEIGHT = -1e300  # of a node without a maximum to integrate around
-_DEEP = 6.0
-_TOO_DEEP = 60.0
-_EDGE = 8.3
+_FAR_DOWN = 60.0
 _TOLERANCE = 1e-3
 _ADJUSTMENTS = 8
 _CRAWL = 30  # evaluations a node; three are usual
@@ -105,51 +103,6 @@ class Columns:
         )
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class Forecast:
-    """What the linear response says about the inner strength, column by column.
-
-    Attributes:
-        starts: (column, coordinate) points with nuisance coordinates at the background's mode.
-        prior: the strength's prior.
-        best, information: (column,) best strength and its inverse variance.
-        absorbed: (column, nuisance) change of the nuisance coordinates that a unit of strength replaces.
-    """
-
-    starts: Array
-    prior: Prior
-    best: Array
-    information: Array
-    absorbed: Array
-
-    def take(self, rows: Indices) -> Forecast:
-        """Return some columns."""
-        return Forecast(
-            self.starts[rows], self.prior, self.best[rows], self.information[rows], self.absorbed[rows]
-        )
-
-    def range(self) -> tuple[Array, Array, Array]:
-        """Return (column,) ends in standard coordinates that hold a strength parabola, and the edge."""
-        low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
-        centre = self.prior.to_standard(np.clip(self.best, low, high))
-        slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)
-        width = np.clip(1.0 / (np.sqrt(self.information) * slope), 1e-9, 1.0)
-        edge = np.maximum(_EDGE, np.abs(centre) + 4.0)
-        local = centre[:, None] + width[:, None] * np.linspace(-6.0, 6.0, 61)
-        wide = edge[:, None] * np.linspace(-1.0, 1.0, 101)
-        t = np.sort(np.clip(np.concatenate([local, wide], axis=1), -edge[:, None], edge[:, None]), axis=1)
-        off = self.prior.from_standard(t)[0] - self.best[:, None]
-        # Poisson counts let the strength grow more easily than a parabola at the background does.
-        stiff = np.where(off > 0.0, 0.5, 1.0) * self.information[:, None]
-        depth = 0.5 * stiff * off**2 + 0.5 * t * t
-        depth -= depth.min(axis=1, keepdims=True)
-        inside = depth < _DEEP + 2.0
-        first = np.maximum(np.argmax(inside, axis=1) - 1, 0)
-        last = np.minimum(t.shape[1] - np.argmax(inside[:, ::-1], axis=1), t.shape[1] - 1)
-        rows = np.arange(len(t))
-        return t[rows, first], np.maximum(t[rows, last], t[rows, first] + 1e-9), edge
-
-
 @dataclass(frozen=True, eq=False)
 class Integrand:
     """What is integrated: a model with its counts and the landscape that its starting points come from."""
@@ -190,9 +143,9 @@ class Integrand:
         inner = self.inner
         if inner is None:
             return self._evaluated(starts[:, None, :], np.zeros((len(outer), 1)))
-        forecast = self._forecast(starts, inner)
-        low, high, edge = forecast.range()
-        return self._settled(forecast, low, high, edge)
+        outlook = self._outlook(starts, inner)
+        low, high, edge = outlook.range()
+        return self._settled(outlook, low, high, edge)
 
     def is_beyond_reach(self, columns: Columns) -> bool:
         """Tell whether the maxima took so long to find that more nodes would not help.
@@ -218,7 +171,7 @@ class Integrand:
         arrays = {name: np.concatenate([getattr(piece, name) for piece in pieces]) for name in names}
         return Maxima(**arrays, evaluations=sum(piece.evaluations for piece in pieces))
 
-    def _forecast(self, starts: Array, inner: int) -> Forecast:
+    def _outlook(self, starts: Array, inner: int) -> Outlook:
         """Return what the linear response of the counts says about the strength in each column."""
         prior = self.model.coordinates[inner].prior
         reference = starts.copy()
@@ -226,14 +179,14 @@ class Integrand:
         events = signal_events(self.model, self.landscape, reference[:, self.model.signal])
         unit = float(prior.median)
         amplitude, information = self.landscape.amplitudes(events)
-        return Forecast(
+        return Outlook(
             starts, prior, amplitude * unit, information / unit**2, self.landscape.absorbed(events) / unit
         )
 
-    def _settled(self, forecast: Forecast, low: Array, high: Array, edge: Array) -> Columns:
+    def _settled(self, outlook: Outlook, low: Array, high: Array, edge: Array) -> Columns:
         """Return columns whose inner range holds the integrand: widened or narrowed until it does."""
         steps = np.linspace(0.0, 1.0, INNER_NODES)
-        columns = self._strung(forecast, low[:, None] + (high - low)[:, None] * steps)
+        columns = self._strung(outlook, low[:, None] + (high - low)[:, None] * steps)
         for _ in range(_ADJUSTMENTS):
             change, low, high = _adjusted(columns, low, high, edge)
             if not change.any() or self.is_beyond_reach(columns):
@@ -242,14 +195,14 @@ class Integrand:
             again = low[rows, None] + (high[rows] - low[rows])[:, None] * steps
             order = np.arange(len(low))
             order[rows] = len(low) + np.arange(rows.size)
-            columns = columns.joined(self._strung(forecast.take(rows), again)).take(order)
+            columns = columns.joined(self._strung(outlook.take(rows), again)).take(order)
         return columns
 
-    def _strung(self, forecast: Forecast, inner: Array) -> Columns:
-        """Return columns evaluated at (column, inner) nodes, nuisance coordinates starting where forecast."""
-        points = np.repeat(forecast.starts[:, None, :], inner.shape[1], axis=1)
-        strength = forecast.prior.from_standard(inner)[0]
-        points[:, :, self.nuisance] -= strength[:, :, None] * forecast.absorbed[:, None, :]
+    def _strung(self, outlook: Outlook, inner: Array) -> Columns:
+        """Return columns evaluated at (column, inner) nodes, nuisance coordinates starting where it says."""
+        points = np.repeat(outlook.starts[:, None, :], inner.shape[1], axis=1)
+        strength = outlook.prior.from_standard(inner)[0]
+        points[:, :, self.nuisance] -= strength[:, :, None] * outlook.absorbed[:, None, :]
         points[:, :, self.inner] = inner
         return self._evaluated(points, inner)
 
@@ -297,11 +250,11 @@ def _adjusted(
     depth = columns.ln_height.max(axis=1, keepdims=True) - columns.ln_height
     length = high - low
     step = length / (INNER_NODES - 1)
-    short_low = (depth[:, 0] < _DEEP) & (low > -edge)
-    short_high = (depth[:, -1] < _DEEP) & (high < edge)
-    far_low = (depth[:, :3] > _TOO_DEEP).all(axis=1)
-    far_high = (depth[:, -3:] > _TOO_DEEP).all(axis=1)
-    inside = depth < _DEEP + 8.0
+    short_low = (depth[:, 0] < DEEP) & (low > -edge)
+    short_high = (depth[:, -1] < DEEP) & (high < edge)
+    far_low = (depth[:, :3] > _FAR_DOWN).all(axis=1)
+    far_high = (depth[:, -3:] > _FAR_DOWN).all(axis=1)
+    inside = depth < DEEP + 8.0
     first = np.argmax(inside, axis=1)
     last = INNER_NODES - 1 - np.argmax(inside[:, ::-1], axis=1)
     new_low = np.where(far_low, low + (first - 1.0) * step, low)

@@ -20,6 +20,7 @@ from scipy import special
 
 from workbench.evidence.axes import Axis, standard
 from workbench.evidence.bending import RidgeMap, TriangularMap, following
+from workbench.evidence.matrices import grouped, upper_roots
 from workbench.evidence.piecewise import between, draw, hat_areas
 from workbench.evidence.quadrature import Grid
 from workbench.evidence.stretching import Stretch, stretch_for
@@ -31,7 +32,6 @@ Flags = npt.NDArray[np.bool_]
 # One draw in nine, so that both kinds come in whole lattices of powers of 2.
 PRIOR_SHARE = 1.0 / 9.0
 _LN_2PI = float(np.log(2.0 * np.pi))
-_GATHERED = 16
 
 
 @dataclass(frozen=True, eq=False)
@@ -127,7 +127,7 @@ class Proposal:
             points[:, integrand.inner] = t
             node = column * grid.columns.inner.shape[1] + place
         bent = self.map.forward(self._stretch.forward(special.ndtri(noise)))
-        moved = _grouped(self._unwhitening, node, bent)
+        moved = grouped(self._unwhitening, node, bent)
         points[:, integrand.nuisance] = self._centre(node, self._signal(points)) + moved
         return points
 
@@ -246,7 +246,7 @@ class Proposal:
         """Return (draw,) density of the nuisance coordinates under one node's pair of normal laws."""
         nuisance = self.grid.integrand.nuisance
         offset = points[:, nuisance] - self._centre(node, signal)
-        normal, ln_stretch = self.map.inverse(_grouped(self.whitening, node, offset))
+        normal, ln_stretch = self.map.inverse(grouped(self.whitening, node, offset))
         ln_law = self._stretch.ln_density(normal) + self._ln_volume[node] - ln_stretch
         return np.asarray(np.exp(ln_law))
 
@@ -271,7 +271,7 @@ def propose(grid: Grid) -> Proposal:
         x, slope, _ = model.coordinates[index].prior.from_standard(places[:, slot])
         places[:, slot] = x
         responses[:, slot] /= np.maximum(slope, 1e-12)[:, None]
-    roots = _upper_roots(block)
+    roots = upper_roots(block)
     bend = grid.bending
     if bend is None:
         straight = TriangularMap(np.zeros(3 * (nuisance.size,)))
@@ -281,15 +281,6 @@ def propose(grid: Grid) -> Proposal:
     return Proposal(
         grid, turn @ roots, following(bend.third, bend.ridge), points[:, nuisance], responses, places
     )
-
-
-def _upper_roots(matrices: Array) -> Array:
-    try:
-        return np.swapaxes(np.linalg.cholesky(matrices), 1, 2)
-    except np.linalg.LinAlgError:
-        values, vectors = np.linalg.eigh(matrices)
-        mended = (vectors * np.maximum(values, 0.05)[:, None, :]) @ np.swapaxes(vectors, 1, 2)
-        return np.swapaxes(np.linalg.cholesky(mended), 1, 2)
 
 
 def _product_areas(axes: tuple[Axis, ...]) -> Array:
@@ -305,16 +296,3 @@ def _chosen(heights: Array, below: Indices, share: Array, u: Array, from_prior: 
     left = (1.0 - share) * np.where(from_prior, 1.0, heights[rows, below])
     right = share * np.where(from_prior, 1.0, heights[rows, below + 1])
     return np.asarray(u * (left + right) < right, dtype=np.intp)
-
-
-def _grouped(matrices: Array, where: Indices, vectors: Array) -> Array:
-    """Return matrices[where] @ vectors, group by group where the matrices are large."""
-    if vectors.shape[1] <= _GATHERED:
-        return np.asarray((matrices[where] @ vectors[..., None])[..., 0])
-    result = np.empty_like(vectors)
-    order = np.argsort(where, kind="stable")
-    ends = np.cumsum(np.bincount(where, minlength=len(matrices)))
-    for group, rows in enumerate(np.split(order, ends[:-1])):
-        if rows.size:
-            result[rows] = vectors[rows] @ matrices[group].T
-    return result
