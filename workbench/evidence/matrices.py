@@ -13,7 +13,7 @@ _SMALLEST = 0.05
 
 
 def upper_roots(matrices: Array) -> Array:
-    """Return upper-triangular R with R'R = matrix, small and negative eigenvalues raised first where needed."""
+    """Return upper-triangular R with R'R = matrix; eigenvalues too small for that are raised first."""
     try:
         return np.swapaxes(np.linalg.cholesky(matrices), 1, 2)
     except np.linalg.LinAlgError:
