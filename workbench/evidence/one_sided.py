@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from workbench.counts.magnitudes import is_workable
 from workbench.errors import Caution, quoted
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.sampling import sample
@@ -76,7 +77,7 @@ def _readings(analysis: Analysis, source: Uncertainty, effect: Effect) -> list[R
     up, down = float(effect.up), float(effect.down or 0.0)
     larger = max(up, down, key=abs)
     readings = [(abs(larger), "the larger size")]
-    if up != down:
+    if up != down and is_workable(0.5 * (up - down)):
         readings.append((0.5 * abs(up - down), "half of their distance"))
     made = []
     for size, words in readings:
