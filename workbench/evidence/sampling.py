@@ -43,7 +43,9 @@ class Sample:
 
 
 @np.errstate(all="ignore")  # an impossible point has ln weight -inf
-def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> Sample:
+def sample(
+    grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int, before: Sample | None = None
+) -> Sample:
     """Return the importance-sampling estimate of the evidence on a grid's proposal.
 
     Z = mean of L(x) prior(x)/q(x) over draws from q; the error comes from the spread of 16 independently
@@ -54,6 +56,7 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
         seed: where the random shifts come from.
         draws_a_scramble: draws in each of the 16 independent scrambles, those from the signal coordinates'
             prior (one for eight) not counted; a power of 2.
+        before: draws of the same grid from another seed, which are kept and counted in.
 
     Returns:
         The weighted sample with ln evidence, standard error and k-hat.
@@ -73,7 +76,16 @@ def sample(grid: Grid, seed: np.random.SeedSequence, draws_a_scramble: int) -> S
         ]
     )
     ln_weights = ln_likelihood + _ln_prior(grid, points) - proposal.ln_density(points)
-    return _summary(points, np.nan_to_num(ln_weights, nan=-np.inf, posinf=-np.inf))
+    ln_weights = np.nan_to_num(ln_weights, nan=-np.inf, posinf=-np.inf)
+    if before is not None:
+        points, ln_weights = _merged(before.points, points), _merged(before.ln_weights, ln_weights)
+    return _summary(points, ln_weights)
+
+
+def _merged(first: Array, second: Array) -> Array:
+    """Return two batches of draws as one, scramble after scramble."""
+    batches = [batch.reshape(SCRAMBLES, -1, *batch.shape[1:]) for batch in (first, second)]
+    return np.concatenate(batches, axis=1).reshape(-1, *first.shape[1:])
 
 
 def _drawn(proposal: Proposal, generator: np.random.Generator, number: int) -> Array:

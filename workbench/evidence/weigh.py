@@ -187,13 +187,14 @@ def _estimated(model: Model, grid: Grid, seed: np.random.SeedSequence, near: Map
 
 
 def _sampled(grid: Grid, seed: np.random.SeedSequence) -> Sample:
-    """Return the sampling pass, with more draws until its error is small."""
+    """Return the sampling pass, doubled until its error is small."""
     draws = _FIRST_DRAWS
-    while True:
-        drawn = sample(grid, seed, draws)
-        if draws >= _MOST_DRAWS or drawn.error <= _WANTED_ERROR:
-            return drawn
+    drawn = sample(grid, seed, draws)
+    while draws < _MOST_DRAWS and drawn.error > _WANTED_ERROR:
+        more = np.random.SeedSequence(seed.entropy, spawn_key=(*seed.spawn_key, draws))
+        drawn = sample(grid, more, draws, drawn)
         draws *= 2
+    return drawn
 
 
 def _exactly(model: Model, value: float) -> Evidence:
