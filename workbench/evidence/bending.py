@@ -22,7 +22,7 @@ from workbench.evidence.ridge import Ridge
 Array = npt.NDArray[np.float64]
 
 _STEP = 1.5
-_NEGLIGIBLE = 2e-3
+_NEGLIGIBLE = 0.02
 _BEYOND = 0.55
 _LARGEST_LOG_SCALE = 0.7
 
@@ -151,6 +151,9 @@ class TriangularMap:
         up, down = self._stretch
         y = np.zeros_like(normal)
         for k in range(normal.shape[1]):
+            if not self._is_bent(k):
+                y[:, k] = normal[:, k]
+                continue
             mean, ln_scale = self._conditional(y, k)
             y[:, k] = mean + np.exp(ln_scale) * np.where(normal[:, k] > 0.0, up[k], down[k]) * normal[:, k]
         return y
@@ -161,12 +164,18 @@ class TriangularMap:
         normal = np.zeros_like(y)
         ln_volume = np.zeros(len(y))
         for k in range(y.shape[1]):
+            if not self._is_bent(k):
+                normal[:, k] = y[:, k]
+                continue
             mean, ln_scale = self._conditional(y, k)
             offset = y[:, k] - mean
             stretch = np.where(offset > 0.0, up[k], down[k])
             normal[:, k] = offset * np.exp(-ln_scale) / stretch
             ln_volume += ln_scale + np.log(stretch)
         return normal, ln_volume
+
+    def _is_bent(self, k: int) -> bool:
+        return bool(self.third[k, : k + 1, : k + 1].any())
 
     def _conditional(self, y: Array, k: int) -> tuple[Array | float, Array | float]:
         """Return the mean and ln scale of coordinate k given those before it."""
