@@ -41,9 +41,11 @@ from workbench.hypotheses.shapes import (
 )
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.likelihood.model import compile_model
+from workbench.likelihood.results import Fit, Fitted
 
 Array = npt.NDArray[np.float64]
 WIDE = Uniform(0.0, 100.0)
+BOTH = "signal plus background"
 
 
 def region_of(
@@ -218,3 +220,8 @@ def _sources() -> tuple[Uncertainty, ...]:
 def one_hypothesis(analysis: Analysis, *processes: str, name: str = "this") -> Analysis:
     """Return the analysis with a single hypothesis made of the named processes."""
     return replace(analysis, hypotheses=(Hypothesis(name, processes),))
+
+
+def of(found: Fit, name: str) -> Fitted:
+    """Return one parameter of a fit by name."""
+    return next(one for one in found.fitted if one.name == name)

@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import re
+import shutil
+from collections.abc import Iterable
+from pathlib import Path
 
 from hypothesis import strategies as st
 
@@ -69,3 +72,11 @@ def edited(data: bytes, edit: tuple[object, ...]) -> bytes:
     elif kind == "cut" and isinstance(argument, int):
         new, end = b"", start + argument
     return data[:start] + new + data[end:]
+
+
+def tables_beside(folder: Path, files: Iterable[Path]) -> Path:
+    """Copy every table that stands beside the given files into a folder, and return it."""
+    for file in files:
+        for table in file.parent.glob("*.csv"):
+            shutil.copy(table, folder)
+    return folder

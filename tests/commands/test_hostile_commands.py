@@ -9,7 +9,6 @@ from __future__ import annotations
 import json
 import os
 import re
-import shutil
 import signal
 import subprocess
 import sys
@@ -19,7 +18,7 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
-from tests.mutations import edited, edits
+from tests.mutations import edited, edits, tables_beside
 from workbench.commands.main import main
 
 ROOT = Path(__file__).parents[2]
@@ -103,11 +102,7 @@ def hostile_file(folder: Path, which: int, made: list[tuple[object, ...]]) -> Pa
 @pytest.fixture(scope="module")
 def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """Return a folder with every table of the demonstrations."""
-    made = tmp_path_factory.mktemp("hostile")
-    for file in FILES:
-        for table in file.parent.glob("*.csv"):
-            shutil.copy(table, made)
-    return made
+    return tables_beside(tmp_path_factory.mktemp("hostile"), FILES)
 
 
 def answer(capsys: pytest.CaptureFixture[str], words: list[str]) -> tuple[int, str]:

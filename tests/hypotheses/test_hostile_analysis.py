@@ -6,14 +6,13 @@ misspelling keys and by bytes that are noise. Warnings are errors here too.
 
 from __future__ import annotations
 
-import shutil
 from pathlib import Path
 
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
-from tests.mutations import edited, edits
+from tests.mutations import edited, edits, tables_beside
 from workbench.errors import InputError
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.file.reading import read_analysis
@@ -53,11 +52,7 @@ def read_or_refuse(path: Path) -> Analysis | None:
 @pytest.fixture(scope="module")
 def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """Return a folder with the tables of every valid file."""
-    made = tmp_path_factory.mktemp("hostile")
-    for file in FILES:
-        for table in file.parent.glob("*.csv"):
-            shutil.copy(table, made)
-    return made
+    return tables_beside(tmp_path_factory.mktemp("hostile"), FILES)
 
 
 @given(st.integers(0, len(FILES) - 1), st.lists(edits, min_size=1, max_size=3))

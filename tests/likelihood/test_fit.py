@@ -12,9 +12,11 @@ from statsmodels.genmod import families
 from statsmodels.genmod.generalized_linear_model import GLM
 
 from tests.analyses import (
+    BOTH,
     background,
     counting,
     everything,
+    of,
     one_hypothesis,
     region_of,
     seen_bump,
@@ -28,14 +30,9 @@ from workbench.likelihood.fit import fit
 from workbench.likelihood.model import Model, compile_model
 from workbench.likelihood.objective import fit_objective
 from workbench.likelihood.parts import Seeds
-from workbench.likelihood.results import Ending, Fit, Fitted
+from workbench.likelihood.results import Ending, Fit
 
 Array = npt.NDArray[np.float64]
-BOTH = "signal plus background"
-
-
-def of(found: Fit, name: str) -> Fitted:
-    return next(one for one in found.fitted if one.name == name)
 
 
 def test_a_count_by_hand() -> None:

@@ -11,8 +11,10 @@ import pytest
 from scipy import optimize
 
 from tests.analyses import (
+    BOTH,
     background,
     counting,
+    of,
     region_of,
     seen_bump,
     signal,
@@ -23,14 +25,9 @@ from workbench.hypotheses.priors import LogNormal, Normal, Prior, Uniform
 from workbench.hypotheses.shapes import Flat, Gaussian, Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.likelihood.fit import fit
-from workbench.likelihood.results import Ending, Fit, Fitted
+from workbench.likelihood.results import Ending
 
 Array = npt.NDArray[np.float64]
-BOTH = "signal plus background"
-
-
-def of(found: Fit, name: str) -> Fitted:
-    return next(one for one in found.fitted if one.name == name)
 
 
 def test_a_strength_at_its_boundary_has_a_one_sided_error_and_says_so() -> None:

@@ -18,7 +18,7 @@ from workbench.evidence.one_sided import one_sided_cautions
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
-from workbench.evidence.sampling import SCRAMBLES, Sample, sample
+from workbench.evidence.sampling import Sample, sample
 from workbench.evidence.sensitivity import sensitivities
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import Model, compile_model, never_filled
@@ -229,7 +229,7 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
         return "the nuisance parameters have no maximum that Laplace could integrate around"
     if not np.isfinite([grid.ln_evidence, grid.error, drawn.error]).all():
         return "its numbers are too far apart for double precision"
-    allowed = largest_allowed(SCRAMBLES * _FIRST_DRAWS if drawn is None else drawn.ln_weights.size)
+    allowed = largest_allowed(drawn.ln_weights.size)
     if drawn.error > LARGEST_ERROR:
         return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
     if drawn.k_hat >= allowed:

@@ -254,6 +254,9 @@ def _with_spare(model: Model) -> Model:
 
 def never_filled(model: Model) -> npt.NDArray[np.bool_]:
     """Return (bin,) True where the total expectation is 0 at every tried parameter value."""
+    middle, _ = model.expected(model.seeds(np.zeros((1, model.size))))
+    if (middle != 0.0).all():
+        return np.zeros(model.bins, dtype=bool)
     spread = np.linspace(-2.0, 2.0, 5)[:, None] * np.ones(model.size)
     total, _ = model.expected(model.seeds(spread))
     return np.asarray((total == 0.0).all(axis=0))
