@@ -13,6 +13,7 @@ from workbench.evidence.results import Comparison, Evidence
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import Uniform
+from workbench.likelihood.model import compile_model
 
 SIGNAL = "signal plus background"
 
@@ -27,6 +28,11 @@ def value(evidence: Evidence) -> tuple[float, float]:
 def ln_b(comparison: Comparison) -> float:
     assert comparison.ln_bayes_factor is not None
     return comparison.ln_bayes_factor
+
+
+def numbers_in(text: str) -> list[float]:
+    words = [word.strip(".,;") for word in text.split()]
+    return [float(word.replace("−", "-")) for word in words if "." in word]
 
 
 TIGHT = Uniform(0.0, 5.0)
@@ -85,8 +91,7 @@ def test_events_for_empty_bins_make_it_established(events: float) -> None:
 def test_the_bayes_factor_is_shown_for_a_tenth_once_and_ten_times_the_events() -> None:
     (caution,) = [one for one in weigh(with_empty_bin(1.0, 0.1)).cautions if one.code == "empty-bin-events"]
     direct = [ln_b(weigh(with_empty_bin(1.0, events)).comparisons[0]) for events in (0.01, 0.1, 1.0)]
-    words = ", ".join(f"{one:.2f}" for one in direct[:2]) + f" and {direct[2]:.2f}"
-    assert words.replace("-", "−") in caution.text
+    assert numbers_in(caution.text) == pytest.approx(direct, abs=0.03)
     assert SIGNAL in caution.text
     assert abs(direct[0] - direct[1]) > 1.0, "the negative control: the three do differ"
 
@@ -96,11 +101,8 @@ def test_the_bayes_factor_with_sources_follows_the_events_too() -> None:
         return replace(with_empty_bin(1.0, events), uncertainties=(source("size", background=0.2),))
 
     (caution,) = [one for one in weigh(declared(0.1)).cautions if one.code == "empty-bin-events"]
-    found = [
-        float(word.replace("−", "-").strip(",;")) for word in caution.text.split() if "." in word.strip(".,;")
-    ]
     direct = [ln_b(weigh(declared(events)).comparisons[0]) for events in (0.01, 0.1, 1.0)]
-    assert found == pytest.approx(direct, abs=0.03)
+    assert numbers_in(caution.text) == pytest.approx(direct, abs=0.03)
 
 
 def test_events_for_empty_bins_that_no_bin_needs_are_not_mentioned() -> None:
@@ -108,3 +110,22 @@ def test_events_for_empty_bins_that_no_bin_needs_are_not_mentioned() -> None:
         "r", [3.0, 2.0], {"background": [3.0, 2.0], "signal": [1.0, 1.0]}, empty_bin_events=0.1
     )
     assert weigh(templates(region)).cautions == ()
+
+
+def test_a_bin_that_only_signal_fills_gets_its_events_under_every_hypothesis() -> None:
+    """By hand: at strength s the bin holds T = x + s, V = x^2, so that A = T^2/V and p = A/(A + T).
+
+    Once only background-only got the events, so that a signal of strength 0 was not background only.
+    """
+    events, count = 0.1, 2.0
+    analysis = with_empty_bin(count, events)
+    background, signal = (compile_model(analysis, one.name) for one in analysis.hypotheses)
+    counts = np.array([3.0, 2.0, count])
+    alone = background.ln_likelihood(background.natural_seeds(np.zeros((1, 0))), counts)[0]
+    found = signal.ln_likelihood(signal.natural_seeds(np.array([[0.0], [1.5]])), counts)
+    assert found[0] == alone
+    total = events + 1.5
+    shape = (total / events) ** 2
+    exact = stats.poisson.logpmf([3, 2], [4.5, 3.5]).sum()
+    exact += stats.nbinom.logpmf(count, shape, shape / (shape + total))
+    assert found[1] == pytest.approx(exact, abs=1e-10)

@@ -26,7 +26,7 @@ class Region:
         template_errors: True when the table's error columns enter the likelihood; None, left out, keeps them
             out as False does, which an analysis then warns of.
         negative_templates: "refuse", or "zero" to set negative template bins to zero, reported.
-        empty_bin_events: expected events given to bins that no process can fill; None adds nothing.
+        empty_bin_events: expected events given to bins that no background can fill; None adds nothing.
         zeroed: where the template bins stood that were set to zero.
 
     Raises:

@@ -1,7 +1,7 @@
 """How ln B answers the events that an empty simulation is given.
 
-Where no process can fill a bin, a region's `empty_bin_events` stands in for the missing simulation. That
-number is a choice, so that ln B is shown for a tenth, once and ten times of it.
+Where no background can fill a bin, a region's `empty_bin_events` stands in for the missing simulation, under
+every hypothesis alike. That number is a choice, so that ln B is shown for a tenth, once and ten times of it.
 """
 
 from __future__ import annotations
@@ -24,7 +24,7 @@ Three = tuple[float, float, float]
 def ln_bayes_factors(
     models: Sequence[Model], grids: Sequence[Grid | None], comparisons: Sequence[Comparison]
 ) -> tuple[Three | None, ...]:
-    """Return ln B with a tenth, once and ten times the events given to bins that nothing fills.
+    """Return ln B with a tenth, once and ten times the events given to bins that no background fills.
 
     Evidences are integrated again with the other numbers; their changes are added to the reported ln B.
 
@@ -77,8 +77,8 @@ def empty_bin_cautions(
                 Caution(
                     "empty-bin-events",
                     f"{quoted(comparison.hypothesis)} against {quoted(comparison.against)}: ln B depends on "
-                    f"the events given to bins that nothing fills; it is {few}, {given} and {many} with a "
-                    "tenth, once and ten times as many.",
+                    f"the events given to bins that no background fills; it is {few}, {given} and {many} "
+                    "with a tenth, once and ten times as many.",
                 )
             )
     return tuple(cautions)

@@ -32,7 +32,7 @@ class Model:
         parts: every process in every region.
         overall: sources that act on all bins of a part alike, one row a part.
         observed: (bin,) observed counts of all regions in order [events]; None when planning.
-        spare: (bin,) expected events added to bins that nothing can fill, where the region asks for it.
+        spare: (bin,) expected events added to bins that no background can fill, where the region asks for it.
     """
 
     analysis: Analysis
@@ -228,6 +228,10 @@ def compile_model(analysis: Analysis, hypothesis: str) -> Model:
     Raises:
         InputError: if the analysis has no such hypothesis.
     """
+    return _with_spare(_without_spare(analysis, hypothesis))
+
+
+def _without_spare(analysis: Analysis, hypothesis: str) -> Model:
     coordinates = coordinates_of(analysis, hypothesis)
     held = analysis.held_parameters(hypothesis)
     positions = {coordinate.name: index for index, coordinate in enumerate(coordinates)}
@@ -236,12 +240,15 @@ def compile_model(analysis: Analysis, hypothesis: str) -> Model:
     counts = [region.table.observed for region in analysis.regions]
     present = [count for count in counts if count is not None]
     observed = np.concatenate(present) if len(present) == len(counts) else None
-    model = Model(analysis, hypothesis, coordinates, parts, overall, observed, bins, np.zeros(bins))
-    return _with_spare(model)
+    return Model(analysis, hypothesis, coordinates, parts, overall, observed, bins, np.zeros(bins))
 
 
 def _with_spare(model: Model) -> Model:
-    """Return the model with the events that regions give to bins which nothing can fill."""
+    """Return the model with the events that regions give to bins which no background can fill.
+
+    A bin that the backgrounds of one hypothesis leave empty is given them under every hypothesis, so that
+    hypotheses differ in nothing but what they claim: a signal of strength 0 is background only.
+    """
     wanted = [
         np.full(region.table.binning.number, region.empty_bin_events or 0.0)
         for region in model.analysis.regions
@@ -249,7 +256,11 @@ def _with_spare(model: Model) -> Model:
     asked = np.concatenate(wanted)
     if not asked.any():
         return model
-    return replace(model, spare=np.where(never_filled(model), asked, 0.0))
+    empty = np.zeros(model.bins, dtype=bool)
+    for hypothesis in model.analysis.hypotheses:
+        other = _without_spare(model.analysis, hypothesis.name)
+        empty |= never_filled(other.restricted("background", spare=False))
+    return replace(model, spare=np.where(empty, asked, 0.0))
 
 
 def never_filled(model: Model) -> npt.NDArray[np.bool_]:

@@ -73,7 +73,7 @@ def region_lines(analysis: Analysis, region: Region) -> list[str]:
         rows.append(["template errors", f"of {', '.join(region.table.errors)} {taken}"])
     if region.empty_bin_events is not None:
         given = as_written(region.empty_bin_events)
-        rows.append(["unfilled bins", f"bins that no process fills get {given} events"])
+        rows.append(["unfilled bins", f"bins that no background fills get {given} events"])
     lines = [*heading(f"Region {one_line(region.name)}"), *columns(rows, "ll")]
     uses = column_uses(analysis, region.name)
     if uses:
