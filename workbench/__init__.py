@@ -35,7 +35,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
         "Normal",
         "Uniform",
     ),
-    "workbench.hypotheses.processes": ("Contribution", "Process"),
+    "workbench.hypotheses.processes": ("Alternative", "Contribution", "Process"),
     "workbench.hypotheses.quantities": ("Curve",),
     "workbench.hypotheses.file.reading": ("read_analysis",),
     "workbench.hypotheses.shapes": (

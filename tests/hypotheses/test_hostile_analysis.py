@@ -21,6 +21,7 @@ from workbench.hypotheses.file.writing import write_analysis
 ROOT = Path(__file__).parents[2]
 FILES = [
     Path(__file__).parent / "files" / "everything.toml",
+    Path(__file__).parent / "files" / "alternatives.toml",
     *(ROOT / "data" / name / f"{name}.toml" for name in ("skerry", "tarn", "sorrel")),
 ]
 

@@ -22,6 +22,7 @@ ROOT = Path(__file__).parents[2]
 FILES = Path(__file__).parent / "files"
 VALID = [
     FILES / "everything.toml",
+    FILES / "alternatives.toml",
     *(ROOT / "data" / name for name in ("skerry/skerry.toml", "tarn/tarn.toml", "sorrel/sorrel.toml")),
 ]
 Edit = Callable[[wb.Analysis], wb.Analysis]

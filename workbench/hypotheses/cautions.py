@@ -87,8 +87,9 @@ def _held(analysis: Analysis) -> Iterator[Caution]:
 
 def _spaced_templates(analysis: Analysis) -> Iterator[Caution]:
     for process in analysis.processes:
-        for name, contribution in process.regions.items():
-            shape, table = contribution.shape, analysis.region(name).table
+        for description in process.descriptions:
+            name, shape = description.region, description.contribution.shape
+            table = analysis.region(name).table
             if not isinstance(shape, Templates):
                 continue
             peaks = [_centre_and_width(table.binning, table.columns[column]) for column in shape.columns]
@@ -150,13 +151,14 @@ def _variations(analysis: Analysis) -> Iterator[Caution]:
         for effect in source.effects:
             process = analysis.process(effect.process)
             for name in regions_acted_on(effect, source, process):
-                shape, region = process.regions[name].shape, analysis.region(name)
-                if (
-                    isinstance(shape, Template)
-                    and isinstance(effect.up, str)
-                    and isinstance(effect.down, str)
-                ):
-                    yield from _variation(source, effect, region, shape.column)
+                if isinstance(effect.up, str) and isinstance(effect.down, str):
+                    columns = dict.fromkeys(
+                        one.contribution.shape.column
+                        for one in process.descriptions
+                        if one.region == name and isinstance(one.contribution.shape, Template)
+                    )
+                    for column in columns:
+                        yield from _variation(source, effect, analysis.region(name), column)
 
 
 def _variation(source: Uncertainty, effect: Effect, region: Region, column: str) -> Iterator[Caution]:

@@ -15,7 +15,7 @@ from workbench.counts.table import Table
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Prior
-from workbench.hypotheses.processes import Contribution, Process
+from workbench.hypotheses.processes import Alternative, Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.shapes import Shape, Template, Templates
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
@@ -176,11 +176,22 @@ def _parameter(parameter: Parameter) -> Content:
 
 
 def _process(process: Process) -> Content:
-    return {
+    content: Content = {
         "kind": process.kind,
         "factors": [one if isinstance(one, str) else float(one) for one in process.factors],
         "follows_exposure": process.follows_exposure,
-        "regions": {name: _contribution(one) for name, one in process.regions.items()},
+    }
+    if process.regions or not process.alternatives:
+        content["regions"] = {name: _contribution(one) for name, one in process.regions.items()}
+    if process.alternatives:
+        content["alternatives"] = {one.name: _alternative(one) for one in process.alternatives}
+    return content
+
+
+def _alternative(alternative: Alternative) -> Content:
+    return {
+        "prior": float(alternative.prior),
+        "regions": {name: _contribution(one) for name, one in alternative.regions.items()},
     }
 
 

@@ -22,7 +22,7 @@ def regions_acted_on(effect: Effect, source: Uncertainty, process: Process) -> t
     """
     return tuple(
         region
-        for region in process.regions
+        for region in process.region_names
         if (effect.regions is None or region in effect.regions)
         and (source.regions is None or region in source.regions)
     )

@@ -1,4 +1,4 @@
-"""Processes: a yield and a shape in each region."""
+"""Processes: a yield and a shape in each region, or several descriptions that compete."""
 
 from __future__ import annotations
 
@@ -43,15 +43,34 @@ class Contribution:
 
 
 @dataclass(frozen=True, slots=True)
+class Alternative:
+    """One of several descriptions of a background process, of which one holds, in all regions at once.
+
+    Attributes:
+        name: the alternative's name.
+        regions: region name to what the process contributes there if this description holds.
+        prior: prior probability relative to the process' other alternatives; > 0.
+    """
+
+    name: str
+    regions: Mapping[str, Contribution]
+    prior: float = 1.0
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "regions", FrozenMapping(self.regions))
+
+
+@dataclass(frozen=True, slots=True)
 class Process:
     """One source of events.
 
     Attributes:
         name: the process' name.
         kind: "background" or "signal".
-        regions: region name to what it contributes there.
+        regions: region name to what it contributes there; with alternatives, where all of them agree.
         factors: numbers or parameter names that multiply the yield in every region.
         follows_exposure: False keeps the yield when the exposure changes.
+        alternatives: descriptions of a background of which one holds; none where there is no doubt.
     """
 
     name: str
@@ -59,9 +78,11 @@ class Process:
     regions: Mapping[str, Contribution]
     factors: tuple[float | str, ...] = ()
     follows_exposure: bool = True
+    alternatives: tuple[Alternative, ...] = ()
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "regions", FrozenMapping(self.regions))
+        object.__setattr__(self, "alternatives", tuple(self.alternatives))
         object.__setattr__(self, "factors", tuple(self.factors))
 
     @property
@@ -70,9 +91,45 @@ class Process:
         return self.kind == "signal"
 
     @property
+    def region_names(self) -> tuple[str, ...]:
+        """Return the names of the regions that it contributes to, each once."""
+        return tuple(dict.fromkeys(description.region for description in self.descriptions))
+
+    @property
+    def descriptions(self) -> tuple[Description, ...]:
+        """Return what it contributes to each region, every alternative's word included."""
+        own = (Description(("regions", name), name, one) for name, one in self.regions.items())
+        others = (
+            Description(("alternatives", alternative.name, "regions", name), name, one)
+            for alternative in self.alternatives
+            for name, one in alternative.regions.items()
+        )
+        return (*own, *others)
+
+    @property
     def parameters(self) -> tuple[str, ...]:
-        """Return the names of the parameters that it depends on, in the order met."""
+        """Return the names of the parameters that it depends on, whichever alternative holds."""
         names = dict.fromkeys(one for one in self.factors if isinstance(one, str))
-        for contribution in self.regions.values():
-            names |= dict.fromkeys(contribution.parameters)
+        for description in self.descriptions:
+            names |= dict.fromkeys(description.contribution.parameters)
         return tuple(names)
+
+
+@dataclass(frozen=True, slots=True)
+class Description:
+    """What a process contributes to a region, and where that is said.
+
+    Attributes:
+        place: keys that lead to it from the process.
+        region: the region's name.
+        contribution: what it contributes there.
+    """
+
+    place: tuple[str, ...]
+    region: str
+    contribution: Contribution
+
+    @property
+    def alternative(self) -> str:
+        """Return the alternative that says so; empty where all agree."""
+        return self.place[1] if self.place[0] == "alternatives" else ""

@@ -9,6 +9,8 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.counts.region import Region
+from workbench.errors import InputError, Problem, quoted
+from workbench.hypotheses.alternatives import in_doubt
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.jets import Jet, choose
 from workbench.hypotheses.processes import Contribution, Process
@@ -48,7 +50,11 @@ def assemble(
 
     Returns:
         One part for each process and region, and the sources that act on all bins of a part alike.
+
+    Raises:
+        InputError: if a process has alternatives of which none is chosen: each is a model of its own.
     """
+    _refuse_alternatives(analysis, hypothesis)
     made = []
     start = 0
     for region in analysis.regions:
@@ -59,6 +65,21 @@ def assemble(
                 made.append(_part(analysis, process, region, bins, coordinates, held))
         start = stop
     return tuple(part for part, _ in made), _overall([found for _, found in made], coordinates)
+
+
+def _refuse_alternatives(analysis: Analysis, hypothesis: str) -> None:
+    problems = [
+        Problem(
+            "A background with alternatives where one description is needed",
+            f"hypothesis {quoted(hypothesis)}, process {quoted(process.name)}",
+            f"{len(process.alternatives)} alternatives",
+            "one description in each region",
+            "use weigh, fit, check or backgrounds, which take all of them, or keep one alternative",
+        )
+        for process in in_doubt(analysis, hypothesis)
+    ]
+    if problems:
+        raise InputError(*problems)
 
 
 def _part(

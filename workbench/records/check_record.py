@@ -9,7 +9,7 @@ import numpy as np
 from workbench.counts.region import Region
 from workbench.ensembles.predictive import PriorPredictive
 from workbench.hypotheses.analysis import Analysis
-from workbench.records.descriptions import column_uses, source_words
+from workbench.records.descriptions import alternative_priors, column_uses, source_words
 from workbench.records.files import FORMAT
 from workbench.records.outcomes import CheckOutcome
 from workbench.records.provenance import inputs, versions
@@ -36,7 +36,12 @@ def check_record(outcome: CheckOutcome) -> dict[str, Any]:
             {"name": item.name, "unit": item.unit, "prior": item.prior.text()} for item in analysis.parameters
         ],
         "processes": [
-            {"name": item.name, "kind": item.kind, "regions": list(item.regions)}
+            {
+                "name": item.name,
+                "kind": item.kind,
+                "regions": list(item.region_names),
+                "alternatives": alternative_priors(item),
+            }
             for item in analysis.processes
         ],
         "uncertainties": [

@@ -55,6 +55,12 @@ def yield_words(process: Process, contribution: Contribution) -> str:
     return " × ".join([own, *(quantity_words(part) for part in process.factors)])
 
 
+def alternative_priors(process: Process) -> dict[str, float]:
+    """Return each alternative of a process with its prior probability; nothing where there is no doubt."""
+    total = sum(one.prior for one in process.alternatives)
+    return {one.name: one.prior / total for one in process.alternatives}
+
+
 def effect_words(effect: Effect) -> str:
     """Return what a source does to one process: "+10 %", "+3 % / −4 %", or the columns that it swaps in."""
     where = f" in {', '.join(effect.regions)}" if effect.regions is not None else ""
@@ -85,14 +91,16 @@ def column_uses(analysis: Analysis, region: str) -> dict[str, list[str]]:
     """Return who uses each template column of a region's table, in words; nobody is an empty list."""
     uses: dict[str, list[str]] = {name: [] for name in analysis.region(region).table.columns}
     for process in analysis.processes:
-        contribution = process.regions.get(region)
-        if contribution is not None:
-            for column in _shape_columns(contribution.shape):
-                uses.setdefault(column, []).append(process.name)
+        for description in process.descriptions:
+            for column in (
+                _shape_columns(description.contribution.shape) if description.region == region else ()
+            ):
+                users = uses.setdefault(column, [])
+                users += [] if process.name in users else [process.name]
     for source in analysis.uncertainties:
         for effect in source.effects:
             limits = effect.regions if effect.regions is not None else source.regions
-            takes_part = region in analysis.process(effect.process).regions
+            takes_part = region in analysis.process(effect.process).region_names
             if takes_part and (limits is None or region in limits):
                 for column, side in _effect_columns(effect):
                     uses.setdefault(column, []).append(f"{source.name} ({side})")

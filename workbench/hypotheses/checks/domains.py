@@ -11,7 +11,7 @@ from collections.abc import Iterator
 from workbench.errors import quoted
 from workbench.hypotheses.faults import Fault, KeyPath, dotted, field_path, shown
 from workbench.hypotheses.priors import Normal
-from workbench.hypotheses.processes import Process
+from workbench.hypotheses.processes import Description, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.reach import Reach, atoms, product_range
 from workbench.hypotheses.shapes import Falling, Shape, Template, Templates
@@ -20,21 +20,20 @@ NEVER = 1e-6  # a part of a prior that is passed over
 
 
 def contribution_domain_faults(
-    path: KeyPath, region: str, process: Process, reaches: dict[str, Reach]
+    path: KeyPath, description: Description, process: Process, reaches: dict[str, Reach]
 ) -> Iterator[Fault]:
     """Yield the faults of a yield, factors and shape numbers that can leave their domain.
 
     Args:
         path: the process' key path.
-        region: the region looked at.
+        description: what it contributes to the region looked at.
         process: the process.
         reaches: parameter name to reach.
 
     Yields:
         Each fault, at the prior or the number that reaches too far.
     """
-    contribution = process.regions[region]
-    inside = (*path, "regions", region)
+    contribution, inside = description.contribution, (*path, *description.place)
     events = () if contribution.events is None else tuple(atoms(contribution.events))
     placed: list[tuple[KeyPath, float | str | Curve]] = [
         ((*path, "factors", place), one) for place, one in enumerate(process.factors)
@@ -42,7 +41,7 @@ def contribution_domain_faults(
     placed += [((*inside, "yield"), one) for one in events]
     low_high = product_range(tuple(one for _, one in placed), reaches)
     if low_high is not None and low_high[0] < 0:
-        reason = f"it multiplies the yield of {quoted(process.name)} in {quoted(region)}"
+        reason = f"it multiplies the yield of {quoted(process.name)} in {quoted(description.region)}"
         yield from _culprits(placed, 0.0, "An expected count can be negative", reason, reaches)
     yield from _shape_domain_faults(inside, contribution.shape, reaches)
 

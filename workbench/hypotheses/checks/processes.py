@@ -8,6 +8,7 @@ from collections.abc import Iterator
 
 from workbench.counts.region import Region
 from workbench.errors import nearest, quoted, shortened
+from workbench.hypotheses.checks.alternatives import alternative_faults, choice_faults
 from workbench.hypotheses.checks.domains import contribution_domain_faults, interpolation_faults
 from workbench.hypotheses.declared import Declared
 from workbench.hypotheses.faults import (
@@ -31,6 +32,7 @@ def process_faults(declared: Declared) -> Iterator[Fault]:
     for name, process in declared.processes.items():
         if process is not None:
             yield from _process(("processes", name), process, declared, reaches)
+    yield from choice_faults(declared)
 
 
 def _process(
@@ -44,7 +46,8 @@ def _process(
             '"background" or "signal"',
             nearest(str(process.kind), ["background", "signal"]),
         )
-    if not process.regions:
+    yield from alternative_faults(path, process)
+    if not process.region_names:
         yield Fault(
             (*path, "regions"),
             "A process in no region",
@@ -54,12 +57,13 @@ def _process(
         )
     for place, factor in enumerate(process.factors):
         yield from _atom((*path, "factors", place), factor, declared, reaches)
-    for region, contribution in process.regions.items():
-        inner = (*path, "regions", region)
+    for description in process.descriptions:
+        inner, region = (*path, *description.place), description.region
         if region not in declared.regions:
             yield unknown_fault(inner, "region", region, declared.regions)
-        yield from _contribution(inner, contribution, declared, declared.regions.get(region), reaches)
-        yield from contribution_domain_faults(path, region, process, reaches)
+        found = declared.regions.get(region)
+        yield from _contribution(inner, description.contribution, declared, found, reaches)
+        yield from contribution_domain_faults(path, description, process, reaches)
 
 
 def _contribution(

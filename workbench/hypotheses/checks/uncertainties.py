@@ -53,7 +53,9 @@ def _source(path: KeyPath, source: Uncertainty, declared: Declared) -> Iterator[
         if process is not None:
             yield from _effect(inner, effect, source, process, declared)
             twice = [
-                region for region in effect.regions or process.regions if (effect.process, region) in taken
+                region
+                for region in effect.regions or process.region_names
+                if (effect.process, region) in taken
             ]
             if twice:
                 yield Fault(
@@ -63,19 +65,19 @@ def _source(path: KeyPath, source: Uncertainty, declared: Declared) -> Iterator[
                     "one effect a process and region",
                     "multiply them into one, or make two sources",
                 )
-            taken |= {(effect.process, region) for region in effect.regions or process.regions}
+            taken |= {(effect.process, region) for region in effect.regions or process.region_names}
 
 
 def _effect(
     path: KeyPath, effect: Effect, source: Uncertainty, process: Process, declared: Declared
 ) -> Iterator[Fault]:
     for region in effect.regions or ():
-        if region not in process.regions:
+        if region not in process.region_names:
             yield unknown_fault(
                 (*path, "regions", region),
                 "region",
                 region,
-                process.regions,
+                process.region_names,
                 f"a region of {quoted(process.name)}",
             )
         elif source.regions is not None and region not in source.regions:
@@ -89,7 +91,7 @@ def _effect(
     acted = regions_acted_on(effect, source, process)
     if (
         not acted
-        and process.regions
+        and process.region_names
         and effect.regions is None
         and all(one in declared.regions for one in source.regions or ())
     ):
@@ -153,12 +155,16 @@ def _variation(
     path: KeyPath, columns: tuple[str, str], acted: Collection[str], process: Process, declared: Declared
 ) -> Iterator[Fault]:
     for name in acted:
-        shape = process.regions[name].shape
-        if not isinstance(shape, Template):
+        described = [one for one in process.descriptions if one.region == name]
+        others = [one for one in described if not isinstance(one.contribution.shape, Template)]
+        if others:
+            alternative = others[0].alternative
+            under = f" under {quoted(alternative)}" if alternative else ""
+            shape = others[0].contribution.shape
             yield Fault(
                 path,
                 "A template variation of a shape that is no template",
-                f"{quoted(process.name)} has the shape {shape.family} in {quoted(name)}",
+                f"{quoted(process.name)} has the shape {shape.family} in {quoted(name)}{under}",
                 "a process whose shape is a template",
                 "give numbers, or limit the effect to other regions",
             )

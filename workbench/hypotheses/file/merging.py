@@ -9,7 +9,7 @@ import tomlkit
 from tomlkit.items import InlineTable
 
 from workbench.hypotheses.contents import Content
-from workbench.hypotheses.file.toml_text import is_left_out, table_lines, value_text
+from workbench.hypotheses.file.toml_text import NESTED, is_left_out, table_lines, value_text
 
 ORDERED = ("regions", "parameters", "processes", "uncertainties", "hypotheses")
 
@@ -70,7 +70,7 @@ def _inline(value: object) -> Any:
 
 def _added(target: MutableMapping[str, Any], path: tuple[str, ...], value: object) -> Any:
     """Return what is set under a new key: a table of its own where the file would have one, else a value."""
-    is_table = isinstance(value, Mapping) and (len(path) == 1 or path[-2] in {*ORDERED, "regions"})
+    is_table = isinstance(value, Mapping) and (len(path) == 1 or path[-2] in {*ORDERED, *NESTED})
     if not is_table or isinstance(target, InlineTable):
         return _inline(value)
     fragment = tomlkit.parse("\n".join(_fragment_lines(path, cast("Content", value))))

@@ -8,7 +8,7 @@ from typing import Any, Literal
 from workbench.errors import nearest, quoted
 from workbench.hypotheses.faults import shown
 from workbench.hypotheses.file.keys import Section
-from workbench.hypotheses.processes import Contribution, Process
+from workbench.hypotheses.processes import Alternative, Contribution, Process
 from workbench.hypotheses.quantities import Curve, Quantity
 from workbench.hypotheses.shapes import SHAPES, Bernstein, Shape, Template, Templates
 
@@ -21,15 +21,8 @@ def read_process(name: str, section: Section) -> Process | None:
     kind = section.text("kind")
     factors = _factors(section)
     follows = section.truth("follows_exposure", True)
-    contributions: dict[str, Contribution] = {}
-    if not section.has("regions"):
-        section.value("regions", "a table with one table a region")
-    for region, inner in section.sections("regions", "a table with a shape"):
-        contribution = read_contribution(inner) if inner is not None else None
-        if contribution is None:
-            section.is_sound = False
-        else:
-            contributions[region] = contribution
+    alternatives = _alternatives(section)
+    contributions = _contributions(section, is_needed=not section.has("alternatives"))
     section.close()
     if section.is_sound and kind not in {"background", "signal"}:
         section.refuse(
@@ -42,7 +35,44 @@ def read_process(name: str, section: Section) -> Process | None:
     if not section.is_sound:
         return None
     checked: Literal["background", "signal"] = "signal" if kind == "signal" else "background"
-    return Process(name, checked, contributions, factors, follows)
+    return Process(name, checked, contributions, factors, follows, alternatives)
+
+
+def _contributions(section: Section, *, is_needed: bool = True) -> dict[str, Contribution]:
+    """Return what is put into each region under the key `regions`."""
+    contributions: dict[str, Contribution] = {}
+    if is_needed and not section.has("regions"):
+        section.value("regions", "a table with one table a region")
+    for region, inner in section.sections("regions", "a table with a shape"):
+        contribution = read_contribution(inner) if inner is not None else None
+        if contribution is None:
+            section.is_sound = False
+        else:
+            contributions[region] = contribution
+    return contributions
+
+
+def _alternatives(section: Section) -> tuple[Alternative, ...]:
+    """Return the descriptions of which one holds, under the key `alternatives`."""
+    found = []
+    is_empty = section.has("alternatives") and section.content["alternatives"] == {}
+    if is_empty:
+        section.refuse(
+            "alternatives",
+            "A choice among nothing",
+            "an empty table",
+            "at least two alternatives",
+            "describe the process under regions instead",
+        )
+    for name, inner in section.sections("alternatives", "a table with a prior and regions"):
+        if inner is None:
+            section.is_sound = False
+            continue
+        prior, contributions = inner.number("prior", 1.0), _contributions(inner)
+        inner.close()
+        section.is_sound = section.is_sound and inner.is_sound
+        found.append(Alternative(name, contributions, prior))
+    return tuple(found)
 
 
 def read_contribution(section: Section) -> Contribution | None:

@@ -8,6 +8,7 @@ from typing import cast
 from workbench.hypotheses.contents import LEFT_OUT, Content
 from workbench.hypotheses.faults import BARE_KEY
 
+NESTED = ("regions", "alternatives")
 ESCAPES = {'"': '\\"', "\\": "\\\\", "\n": "\\n", "\t": "\\t", "\r": "\\r"}
 
 
@@ -35,7 +36,7 @@ def file_text(content: Content) -> str:
 
 
 def table_lines(path: tuple[str, ...], table: Content) -> list[str]:
-    """Return a table with its header: numbers and texts first, a process' regions as tables of their own.
+    """Return a table with its header: numbers and texts first, a process' regions and alternatives apart.
 
     Args:
         path: the table's key path.
@@ -49,7 +50,7 @@ def table_lines(path: tuple[str, ...], table: Content) -> list[str]:
     for key, value in table.items():
         if is_left_out(key, value):
             continue
-        if key == "regions" and isinstance(value, Mapping):
+        if key in NESTED and isinstance(value, Mapping):
             for name, one in value.items():
                 inner += table_lines((*path, key, name), _table(one))
         elif key == "effects" and isinstance(value, Mapping):

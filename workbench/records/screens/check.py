@@ -8,7 +8,15 @@ from workbench.counts.region import Region
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE
 from workbench.hypotheses.parameters import Parameter
-from workbench.records.descriptions import column_uses, percent, shape_words, source_words, yield_words
+from workbench.hypotheses.processes import Description, Process
+from workbench.records.descriptions import (
+    alternative_priors,
+    column_uses,
+    percent,
+    shape_words,
+    source_words,
+    yield_words,
+)
 from workbench.records.numbers import as_written, count, fixed, probability
 from workbench.records.outcomes import CheckOutcome
 from workbench.records.screens.counted import (
@@ -92,12 +100,27 @@ def process_lines(analysis: Analysis) -> list[str]:
     """Return every process' expected events and shape, by region."""
     rows = [["process", "kind", "region", "events × shape"]]
     for process in analysis.processes:
-        for place, (region, contribution) in enumerate(process.regions.items()):
+        for place, description in enumerate(process.descriptions):
             first = [one_line(process.name), process.kind] if place == 0 else ["", ""]
-            fixed_yield = "" if process.follows_exposure else "; does not follow exposure"
-            words = f"{yield_words(process, contribution)} × {shape_words(contribution.shape)}{fixed_yield}"
-            rows.append([*first, one_line(region), words])
-    return [*heading("Processes"), *columns(rows, "llll")]
+            rows.append([*first, one_line(description.region), _description_words(process, description)])
+    return [*heading("Processes"), *columns(rows, "llll"), *_alternative_lines(analysis)]
+
+
+def _description_words(process: Process, description: Description) -> str:
+    contribution = description.contribution
+    fixed_yield = "" if process.follows_exposure else "; does not follow exposure"
+    under = f"{one_line(description.alternative)}: " if description.alternative else ""
+    return f"{under}{yield_words(process, contribution)} × {shape_words(contribution.shape)}{fixed_yield}"
+
+
+def _alternative_lines(analysis: Analysis) -> list[str]:
+    """Return the prior probability of each alternative of the processes that have some."""
+    rows = [["process in doubt", "alternative", "prior"]]
+    for process in analysis.processes:
+        for place, (name, share) in enumerate(alternative_priors(process).items()):
+            first = one_line(process.name) if place == 0 else ""
+            rows.append([first, one_line(name), probability(share, 1.0 - share)])
+    return ["", *columns(rows, "llr")] if len(rows) > 1 else []
 
 
 def parameter_lines(analysis: Analysis) -> list[str]:

@@ -115,7 +115,7 @@ def loud_lines(adequacies: Sequence[Adequacy]) -> list[str]:
 
 
 def _events_table(analysis: Analysis, region: Region, fits: Sequence[Fit], bins: slice) -> list[str]:
-    names = [process.name for process in analysis.processes if region.name in process.regions]
+    names = [process.name for process in analysis.processes if region.name in process.region_names]
     sums = {
         name: [float(fit.by_process[name][bins].sum()) if name in fit.by_process else None for fit in fits]
         for name in names
