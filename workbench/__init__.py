@@ -24,6 +24,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
     "workbench.hypotheses.bare": ("analysis_from_table",),
+    "workbench.hypotheses.distortion": ("Distortion",),
     "workbench.hypotheses.priors": (
         "Beta",
         "Exponential",

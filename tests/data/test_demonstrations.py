@@ -20,6 +20,7 @@ MADE = (
     "tarn/tarn-sideband.csv",
     "sorrel/sorrel-signal.csv",
     "sorrel/sorrel-control.csv",
+    "marram/marram-showers.csv",
 )
 
 
@@ -45,7 +46,7 @@ def test_every_table_in_the_folders_is_made_by_the_script() -> None:
     assert tables == {name for name in MADE if name.endswith(".csv")}
 
 
-@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel"])
+@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel", "marram"])
 def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     text = (DATA / folder / "README.md").read_text(encoding="utf-8")
     before, after = text.split("\n## The truth behind it\n")
@@ -53,7 +54,7 @@ def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     assert "\n## " not in after
 
 
-@pytest.mark.parametrize("name", ["skerry/skerry-fixed-mass", "tarn/tarn", "sorrel/sorrel"])
+@pytest.mark.parametrize("name", ["skerry/skerry-fixed-mass", "tarn/tarn", "sorrel/sorrel", "marram/marram"])
 def test_a_demonstration_has_an_established_answer(name: str) -> None:
     weighing = weigh(read_analysis(DATA / f"{name}.toml"))
     assert weighing.established, weighing.evidences
@@ -70,6 +71,14 @@ def test_skerry_is_neither_trivial_nor_hopeless() -> None:
     held = weigh(read_analysis(DATA / "skerry" / "skerry-fixed-mass.toml")).comparisons[0].ln_bayes_factor
     assert held is not None
     assert held > ln_b
+
+
+def test_at_marram_the_signal_beats_the_background_and_a_distortion_beats_both() -> None:
+    """There is no signal in the truth; the third hypothesis is what keeps it from being claimed."""
+    weighing = weigh(read_analysis(DATA / "marram" / "marram.toml"))
+    background, glow, neither = (one.probability or 0.0 for one in weighing.posteriors)
+    assert neither > glow > 100.0 * background
+    assert [caution.code for caution in weighing.cautions] == ["distortion-wins"]
 
 
 def test_the_analyses_read_without_a_caution() -> None:

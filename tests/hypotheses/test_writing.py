@@ -23,7 +23,10 @@ FILES = Path(__file__).parent / "files"
 VALID = [
     FILES / "everything.toml",
     FILES / "alternatives.toml",
-    *(ROOT / "data" / name for name in ("skerry/skerry.toml", "tarn/tarn.toml", "sorrel/sorrel.toml")),
+    *(
+        ROOT / "data" / name
+        for name in ("skerry/skerry.toml", "tarn/tarn.toml", "sorrel/sorrel.toml", "marram/marram.toml")
+    ),
 ]
 Edit = Callable[[wb.Analysis], wb.Analysis]
 

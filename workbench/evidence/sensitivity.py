@@ -1,4 +1,4 @@
-"""How the Bayes factor answers a strength prior that is half or twice as wide."""
+"""How the Bayes factor answers a strength prior, or a distortion, that is half or twice as wide."""
 
 from __future__ import annotations
 
@@ -10,13 +10,14 @@ from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.quadrature import Grid, integrate, integrate_again
 from workbench.evidence.results import Evidence, ScaledPrior
 from workbench.evidence.reweighting import ln_change
+from workbench.likelihood.distortions import resized
 from workbench.likelihood.model import Model
 
 
 def sensitivities(
     model: Model, grid: Grid | None, evidence: Evidence, against: Evidence
 ) -> tuple[ScaledPrior, ...]:
-    """Return ln B with the prior of each strength half and twice as wide.
+    """Return ln B with the prior of each strength, and the size of a distortion, half and twice as wide.
 
     The quadrature's nodes are summed under the other prior, or made again where they do not reach far enough;
     the change is added to the reported ln B.
@@ -28,7 +29,7 @@ def sensitivities(
         against: the evidence that ln B compares it with.
 
     Returns:
-        One entry for each signal strength; none where ln B itself is missing.
+        One entry for each signal strength, then one for a distortion; none where ln B itself is missing.
     """
     if evidence.ln_evidence is None or against.ln_evidence is None or model.observed is None:
         return ()
@@ -44,7 +45,22 @@ def sensitivities(
         ]
         halved, doubled = (None if one is None else ln_bayes_factor + one - base for one in changed)
         found.append(ScaledPrior(coordinate.name, coordinate.prior.text(), halved, doubled))
+    if grid is not None and model.analysis.hypothesis(model.hypothesis).distortion is not None:
+        found.append(_of_distortion(model, grid, ln_bayes_factor))
     return tuple(found)
+
+
+def _of_distortion(model: Model, grid: Grid, ln_bayes_factor: float) -> ScaledPrior:
+    """Return ln B with a distortion of half and of twice the size, integrated again."""
+    halved, doubled = (
+        None if again is None else ln_bayes_factor + again.ln_evidence - grid.ln_evidence
+        for again in (
+            integrate(resized(model, factor), grid.integrand.counts, grid.mode) for factor in (0.5, 2.0)
+        )
+    )
+    distortion = model.analysis.hypothesis(model.hypothesis).distortion
+    words = "" if distortion is None else f"{100.0 * distortion.size:.6g} % a term"
+    return ScaledPrior("distortion", words, halved, doubled)
 
 
 def _scaled(model: Model, index: int, factor: float) -> Model | None:

@@ -12,6 +12,7 @@ from workbench.errors import Caution, InputError, Problem, quoted
 from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
+from workbench.evidence.mis_modelling import mis_modelling_cautions
 from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
@@ -88,13 +89,15 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         if index > 0
     )
     grids = [one.grid for one in weighed]
+    probabilities = posteriors(evidences, priors / priors.sum())
     return Weighing(
         evidences,
-        posteriors(evidences, priors / priors.sum()),
+        probabilities,
         comparisons,
         seed,
         (
             *(caution for one in weighed for caution in _cautions(one)),
+            *mis_modelling_cautions(analysis, probabilities),
             *one_sided_cautions(analysis, grids),
             *empty_bin_cautions([one.model for one in weighed], grids, comparisons),
         ),

@@ -12,6 +12,7 @@ from workbench.hypotheses.cautions import cautions_of
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.contents import digest_of_analysis
 from workbench.hypotheses.declared import Declared
+from workbench.hypotheses.distortion import regions_distorted, term_names
 from workbench.hypotheses.effects import regions_acted_on
 from workbench.hypotheses.exposure import EXPOSURE_SOURCE, Exposure
 from workbench.hypotheses.faults import Fault, dotted
@@ -166,13 +167,13 @@ class Analysis:
         return tuple(name for name in self.parameters_used(hypothesis) if name not in shared)
 
     def sources_used(self, hypothesis: str) -> tuple[str, ...]:
-        """Return the sources of uncertainty that act on a hypothesis; that of the exposure, if any, is last.
+        """Return the sources of uncertainty that act on a hypothesis, those of its distortion last.
 
         Args:
             hypothesis: the hypothesis' name.
 
         Returns:
-            Names in declaration order, then "exposure".
+            Names in declaration order, then "exposure", then the terms of its distortion.
 
         Raises:
             InputError: if there is no such hypothesis.
@@ -192,7 +193,29 @@ class Analysis:
         has_exposure = self.exposure is not None and bool(self.exposure.uncertainty)
         if has_exposure and any(process.follows_exposure for process in processes.values()):
             names.append(EXPOSURE_SOURCE)
-        return tuple(names)
+        return (*names, *(name for terms in self.distorted_regions(hypothesis).values() for name in terms))
+
+    def distorted_regions(self, hypothesis: str) -> dict[str, tuple[str, ...]]:
+        """Return the regions that a hypothesis distorts smoothly, each with the names of its terms.
+
+        Args:
+            hypothesis: the hypothesis' name.
+
+        Returns:
+            Region to source names, in the regions' order; nothing without a distortion.
+
+        Raises:
+            InputError: if there is no such hypothesis.
+
+        Source:
+            none, definition
+        """
+        distortion = self.hypothesis(hypothesis).distortion
+        if distortion is None:
+            return {}
+        regions = [region.name for region in self.regions]
+        acted = regions_distorted(distortion, self.processes_of(hypothesis), regions)
+        return {region: term_names(region, distortion.terms) for region in acted}
 
 
 def default_hypotheses(processes: Sequence[Process]) -> tuple[Hypothesis, ...]:

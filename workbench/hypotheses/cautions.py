@@ -68,6 +68,12 @@ def _hypotheses(analysis: Analysis) -> Iterator[Caution]:
             f"Everything is compared with the first hypothesis, {quoted(first.name)}, which is not "
             f"background only: it contains the signal {', '.join(quoted(name) for name in signals)}.",
         )
+    if first.distortion is not None:
+        yield Caution(
+            "first-hypothesis-distorted",
+            f"Everything is compared with the first hypothesis, {quoted(first.name)}, whose backgrounds may "
+            "be distorted: ln B is not against the background as declared.",
+        )
     if not any(process.is_signal for process in analysis.processes):
         yield Caution("no-signal", "No process is a signal: there is nothing to search for.")
 

@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING
 
 from workbench.counts.region import Region
 from workbench.counts.table import Table
+from workbench.hypotheses.distortion import DEFAULT_TERMS, Distortion
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.parameters import Parameter
 from workbench.hypotheses.priors import Prior
@@ -33,6 +34,7 @@ LEFT_OUT: Content = {
     "negative_templates": "refuse",
     "observable": "",
     "prior": 1.0,
+    "terms": DEFAULT_TERMS,
     "unit": "",
 }
 
@@ -226,8 +228,16 @@ def _size(effect: Effect) -> object:
 
 
 def _hypothesis(hypothesis: Hypothesis) -> Content:
-    return {
+    content: Content = {
         "processes": list(hypothesis.processes),
         "prior": float(hypothesis.prior),
         "fix": {name: float(hypothesis.fix[name]) for name in sorted(hypothesis.fix)},
     }
+    if hypothesis.distortion is not None:
+        content["distortion"] = _distortion(hypothesis.distortion)
+    return content
+
+
+def _distortion(distortion: Distortion) -> Content:
+    regions = None if distortion.regions is None else list(distortion.regions)
+    return _given({"size": float(distortion.size), "terms": int(distortion.terms), "regions": regions})

@@ -12,6 +12,7 @@ from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.assembly import assemble
 from workbench.likelihood.coordinates import Coordinate, coordinates_of
+from workbench.likelihood.distortions import with_distortion
 from workbench.likelihood.kernel import Expansion, expand
 from workbench.likelihood.laws import bin_ln_probability
 from workbench.likelihood.parts import Part, Seeds, Sources
@@ -240,7 +241,8 @@ def _without_spare(analysis: Analysis, hypothesis: str) -> Model:
     counts = [region.table.observed for region in analysis.regions]
     present = [count for count in counts if count is not None]
     observed = np.concatenate(present) if len(present) == len(counts) else None
-    return Model(analysis, hypothesis, coordinates, parts, overall, observed, bins, np.zeros(bins))
+    model = Model(analysis, hypothesis, coordinates, parts, overall, observed, bins, np.zeros(bins))
+    return with_distortion(model)
 
 
 def _with_spare(model: Model) -> Model:

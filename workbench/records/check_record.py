@@ -9,6 +9,7 @@ import numpy as np
 from workbench.counts.region import Region
 from workbench.ensembles.predictive import PriorPredictive
 from workbench.hypotheses.analysis import Analysis
+from workbench.hypotheses.distortion import Distortion
 from workbench.records.descriptions import alternative_priors, column_uses, source_words
 from workbench.records.files import FORMAT
 from workbench.records.outcomes import CheckOutcome
@@ -64,11 +65,19 @@ def _hypotheses(outcome: CheckOutcome) -> list[dict[str, Any]]:
             "prior": item.prior / total,
             "processes": list(item.processes),
             "fix": dict(item.fix),
+            "distortion": _distortion(item.distortion),
             "prior_predictive": predictives.get(item.name),
             "adequacy": adequacies.get(item.name),
         }
         for item in hypotheses
     ]
+
+
+def _distortion(distortion: Distortion | None) -> dict[str, Any] | None:
+    if distortion is None:
+        return None
+    regions = None if distortion.regions is None else list(distortion.regions)
+    return {"size": distortion.size, "terms": distortion.terms, "regions": regions}
 
 
 def _region(analysis: Analysis, region: Region) -> dict[str, Any]:

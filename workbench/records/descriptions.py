@@ -81,6 +81,16 @@ def source_words(source: Uncertainty) -> list[tuple[str, str]]:
     ]
 
 
+def distortion_words(analysis: Analysis, hypothesis: str) -> str:
+    """Return a hypothesis' distortion in words; empty where it has none."""
+    distortion = analysis.hypothesis(hypothesis).distortion
+    if distortion is None:
+        return ""
+    where = " and ".join(analysis.distorted_regions(hypothesis))
+    terms = f"{distortion.terms} smooth term" + ("s" if distortion.terms > 1 else "")
+    return f"distorted by {terms} of {as_written(100.0 * distortion.size)} % in {where}"
+
+
 def percent(size: float) -> str:
     """Return a relative change as "+10 %" or "−4 %"."""
     text = as_written(abs(size) * 100.0)

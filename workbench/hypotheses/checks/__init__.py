@@ -7,6 +7,7 @@ from collections.abc import Iterator, Mapping
 
 from workbench.counts.magnitudes import LARGEST_FACTOR, is_workable
 from workbench.errors import quoted
+from workbench.hypotheses.checks.distortions import distortion_faults
 from workbench.hypotheses.checks.processes import process_faults
 from workbench.hypotheses.checks.uncertainties import overlarge_change, uncertainty_faults
 from workbench.hypotheses.declared import Declared
@@ -121,6 +122,7 @@ def _hypotheses_faults(declared: Declared) -> Iterator[Fault]:
     for name, hypothesis in declared.hypotheses.items():
         if hypothesis is not None:
             yield from _hypothesis_faults(name, hypothesis, declared)
+            yield from distortion_faults(name, hypothesis, declared)
 
 
 def _hypothesis_faults(name: str, hypothesis: Hypothesis, declared: Declared) -> Iterator[Fault]:

@@ -87,6 +87,16 @@ class Section:
         """Return a number, or None where the key is left out."""
         return self.number(key) if self.has(key) else None
 
+    def whole_number(self, key: str, default: int) -> int:
+        """Return a whole number; the default, with a fault, where it is another one."""
+        number = self.number(key, float(default))
+        if number.is_integer():
+            return int(number)
+        self.refuse(
+            key, f"{key} has a fraction", shown(number), "a whole number", "write it without a fraction"
+        )
+        return default
+
     def text(self, key: str, default: str | None = None) -> str:
         """Return a text; needed unless a default is given."""
         if default is not None and not self.has(key):

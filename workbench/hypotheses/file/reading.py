@@ -12,6 +12,7 @@ from workbench.errors import InputError, Problem, shortened
 from workbench.hypotheses.analysis import Analysis, declared_analysis
 from workbench.hypotheses.checks import faults_of
 from workbench.hypotheses.declared import Declared
+from workbench.hypotheses.distortion import DEFAULT_TERMS, Distortion
 from workbench.hypotheses.exposure import Exposure
 from workbench.hypotheses.faults import KeyPath, dotted, shown, toml_fault_text
 from workbench.hypotheses.file.keys import Findings, Section
@@ -173,5 +174,19 @@ def _hypothesis(name: str, section: Section) -> Hypothesis | None:
         holder = section.section("fix", "a table: parameter = number")
         fix = {} if holder is None else {key: holder.number(key) for key in holder.content}
         section.is_sound = section.is_sound and holder is not None and holder.is_sound
+    distortion = _distortion(section) if section.has("distortion") else None
     section.close()
-    return Hypothesis(name, processes, prior, fix) if section.is_sound and math.isfinite(prior) else None
+    is_read = section.is_sound and math.isfinite(prior)
+    return Hypothesis(name, processes, prior, fix, distortion) if is_read else None
+
+
+def _distortion(section: Section) -> Distortion | None:
+    inner = section.section("distortion", "a table: size = a relative size such as 0.05")
+    if inner is None:
+        section.is_sound = False
+        return None
+    size, terms = inner.number("size"), inner.whole_number("terms", DEFAULT_TERMS)
+    regions = inner.texts("regions") if inner.has("regions") else None
+    inner.close()
+    section.is_sound = section.is_sound and inner.is_sound
+    return Distortion(size, terms, regions)

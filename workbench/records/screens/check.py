@@ -12,6 +12,7 @@ from workbench.hypotheses.processes import Description, Process
 from workbench.records.descriptions import (
     alternative_priors,
     column_uses,
+    distortion_words,
     percent,
     shape_words,
     source_words,
@@ -153,6 +154,8 @@ def hypothesis_lines(analysis: Analysis) -> list[str]:
     rows = [["hypothesis", "prior", "processes"]]
     for item in analysis.hypotheses:
         held = "".join(f"; {name} held at {as_written(value)}" for name, value in item.fix.items())
+        distorted = distortion_words(analysis, item.name)
+        held += f"; {distorted}" if distorted else ""
         share = item.prior / total
         rows.append([one_line(item.name), probability(share, 1.0 - share), ", ".join(item.processes) + held])
     return [*heading("Hypotheses"), *columns(rows, "lrl")]

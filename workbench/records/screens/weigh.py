@@ -119,16 +119,27 @@ def comparison_lines(comparison: Comparison, evidences: Sequence[Evidence]) -> l
 
 
 def probability_lines(posteriors: Sequence[Posterior]) -> list[str]:
-    """Return every hypothesis' prior and posterior probability."""
+    """Return every hypothesis' prior and posterior probability, of three and more also against the rest."""
     known = [posterior.probability for posterior in posteriors]
-    rows = [["hypothesis", "prior", "posterior"]]
+    has_rest = len(posteriors) > 2 and None not in known
+    rows = [["hypothesis", "prior", "posterior", *["against the rest"] * has_rest]]
     for place, posterior in enumerate(posteriors):
         value = posterior.probability
         rest = sum(other for index, other in enumerate(known) if index != place and other is not None)
         after = "not established" if value is None else probability(value, rest, posterior.error)
         prior_rest = 1.0 - posterior.prior
-        rows.append([one_line(posterior.hypothesis), probability(posterior.prior, prior_rest), after])
-    return [*heading("Probabilities"), *columns(rows, "lrl")]
+        prior = probability(posterior.prior, prior_rest)
+        rows.append([one_line(posterior.hypothesis), prior, after, *[_against(posterior, rest)] * has_rest])
+    return [*heading("Probabilities"), *columns(rows, "lrll" if has_rest else "lrl")]
+
+
+def _against(posterior: Posterior, rest: float) -> str:
+    """Return a hypothesis' odds against all the others together."""
+    value = posterior.probability
+    if value is None or value <= 0.0 or rest <= 0.0:
+        return NONE
+    error = posterior.error or 0.0
+    return odds(math.log(value) - math.log(rest), error / (value * rest))
 
 
 def _doubts(evidences: Sequence[Evidence]) -> list[tuple[list[str], str]]:
