@@ -41,7 +41,7 @@ def engine(monkeypatch: pytest.MonkeyPatch) -> None:
     for module in (weigh, check, fit):
         monkeypatch.setattr(module, "load", lambda options, seed: (analysis, replace(hand.ORIGIN, seed=seed)))
     for module in (weigh, check):
-        monkeypatch.setattr(module, "adequacy", lambda analysis, name, seed, most: adequacies[name])
+        monkeypatch.setattr(module, "adequacy", lambda analysis, name, **options: adequacies[name])
     for module in (weigh, fit):
         monkeypatch.setattr(module, "fit", lambda analysis, name, asymmetric: fits[name])
     monkeypatch.setattr(check, "prior_predictive", lambda analysis, name, seed: predictives[name])
@@ -67,7 +67,7 @@ def test_a_hypothesis_that_fails_is_an_answer_and_no_error(
     monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
     failing = {item.hypothesis: item for item in hand.adequacies(0.0005, 0.0005)}
-    monkeypatch.setattr(weigh, "adequacy", lambda analysis, name, seed, most: failing[name])
+    monkeypatch.setattr(weigh, "adequacy", lambda analysis, name, **options: failing[name])
     assert main(["weigh", "tern.toml"]) == 0
     assert "NEITHER HYPOTHESIS DESCRIBES THE DATA" in capsys.readouterr().out.splitlines()[1]
 

@@ -21,6 +21,7 @@ MADE = (
     "sorrel/sorrel-signal.csv",
     "sorrel/sorrel-control.csv",
     "marram/marram-showers.csv",
+    "dunlin/dunlin-pairs.csv",
 )
 
 
@@ -46,7 +47,7 @@ def test_every_table_in_the_folders_is_made_by_the_script() -> None:
     assert tables == {name for name in MADE if name.endswith(".csv")}
 
 
-@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel", "marram"])
+@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel", "marram", "dunlin"])
 def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     text = (DATA / folder / "README.md").read_text(encoding="utf-8")
     before, after = text.split("\n## The truth behind it\n")
@@ -54,7 +55,9 @@ def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     assert "\n## " not in after
 
 
-@pytest.mark.parametrize("name", ["skerry/skerry-fixed-mass", "tarn/tarn", "sorrel/sorrel", "marram/marram"])
+@pytest.mark.parametrize(
+    "name", ["skerry/skerry-fixed-mass", "tarn/tarn", "sorrel/sorrel", "marram/marram", "dunlin/dunlin"]
+)
 def test_a_demonstration_has_an_established_answer(name: str) -> None:
     weighing = weigh(read_analysis(DATA / f"{name}.toml"))
     assert weighing.established, weighing.evidences
@@ -79,6 +82,13 @@ def test_at_marram_the_signal_beats_the_background_and_a_distortion_beats_both()
     background, glow, neither = (one.probability or 0.0 for one in weighing.posteriors)
     assert neither > glow > 100.0 * background
     assert [caution.code for caution in weighing.cautions] == ["distortion-wins"]
+
+
+def test_dunlin_depends_on_the_shape_of_its_background() -> None:
+    """One shape alone would say odds of more than 7, another of less than 1; the average lies between."""
+    (comparison,) = weigh(read_analysis(DATA / "dunlin" / "dunlin.toml")).comparisons
+    alone = {one.name: one.ln_bayes_factor or 0.0 for one in comparison.alternatives}
+    assert alone["exponential"] < 0.0 < (comparison.ln_bayes_factor or 0.0) < 2.0 < alone["power law"]
 
 
 def test_the_analyses_read_without_a_caution() -> None:

@@ -53,13 +53,15 @@ def _weighed(options: argparse.Namespace) -> WeighOutcome:
     refuse_planning(analysis, "weigh")
     most = options.pseudo_experiments
     with Progress() as progress:
+        progress.say("weighing")
+        weighing = weigh(analysis, seed=options.seed)
         fits, adequacies = [], []
         for hypothesis in analysis.hypotheses:
             progress.say(f"fitting {hypothesis.name}")
             fits.append(fit(analysis, hypothesis.name, asymmetric=False))
             progress.say(f"pseudo-experiments of {hypothesis.name}")
-            adequacies.append(adequacy(analysis, hypothesis.name, seed=options.seed, most=most))
-        progress.say("weighing")
-        weighing = weigh(analysis, seed=options.seed)
+            adequacies.append(
+                adequacy(analysis, hypothesis.name, seed=options.seed, most=most, weighing=weighing)
+            )
     asked = {**origin.options, "pseudo_experiments": most}
     return WeighOutcome(analysis, replace(origin, options=asked), weighing, tuple(adequacies), tuple(fits))

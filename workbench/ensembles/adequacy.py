@@ -2,12 +2,18 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import numpy.typing as npt
 
 from workbench.ensembles.drawing import pseudo_experiments
 from workbench.ensembles.results import Adequacy
 from workbench.errors import InputError, Problem
+from workbench.evidence.averaging import likeliest
+from workbench.evidence.results import Weighing
+from workbench.evidence.weigh import weigh
+from workbench.hypotheses.alternatives import variants_of
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.laws import ln_saturated
 from workbench.likelihood.model import Model, compile_model
@@ -23,7 +29,9 @@ _SAME = 4.0 * _TOLERANCE  # the same counts fitted twice may differ by this much
 
 
 @np.errstate(all="ignore")  # an impossible point has ln probability -inf, and a step to it is shortened
-def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000) -> Adequacy:
+def adequacy(
+    analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 2000, weighing: Weighing | None = None
+) -> Adequacy:
     """Return how often pseudo-experiments from a hypothesis fit it worse than the observed counts do.
 
         T = 2 (ln p of the saturated model - largest penalised ln p)
@@ -33,11 +41,16 @@ def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 
     their fitted values; counts come from the hypothesis' law; each pseudo-experiment is fitted again. Drawn
     until p is 3 errors away from 0.01: at least 200, at most `most`.
 
+    Where backgrounds have alternatives, the one with the largest posterior probability under the hypothesis
+    is judged, and named.
+
     Args:
         analysis: everything declared, with observed counts.
         hypothesis: the hypothesis' name.
         seed: where the pseudo-experiments come from.
         most: pseudo-experiments at the most.
+        weighing: what weighing the analysis found, where it is known; else it is weighed if there are
+            alternatives.
 
     Returns:
         Statistic, p and its standard error.
@@ -50,6 +63,11 @@ def adequacy(analysis: Analysis, hypothesis: str, *, seed: int = 1, most: int = 
         p of a simulated ensemble: A.C. Davison, D.V. Hinkley, Bootstrap Methods and their Application (1997);
         from memory.
     """
+    variants = variants_of(analysis, hypothesis)
+    if len(variants) > 1:
+        found = weigh(analysis, seed=seed) if weighing is None else weighing
+        judged = likeliest(variants, found.evidence_of(hypothesis))
+        return replace(adequacy(judged.analysis, hypothesis, seed=seed, most=most), alternative=judged.name)
     model = compile_model(analysis, hypothesis)
     counted = model.observed_for("adequacy")
     if most < 1:

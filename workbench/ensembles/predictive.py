@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 import numpy.typing as npt
 
 from workbench.ensembles.drawing import pseudo_experiments
+from workbench.hypotheses.alternatives import Variant, variants_of
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import compile_model
 
@@ -39,6 +42,8 @@ def prior_predictive(
 ) -> PriorPredictive:
     """Return the central 68 % of counts drawn from a hypothesis with all parameters drawn from their priors.
 
+    Where backgrounds have alternatives, each is drawn as often as its prior probability says.
+
     Args:
         analysis: everything declared; observed counts are not used.
         hypothesis: the hypothesis' name.
@@ -51,12 +56,26 @@ def prior_predictive(
     Raises:
         InputError: if there is no such hypothesis.
     """
-    model = compile_model(analysis, hypothesis)
+    variants = variants_of(analysis, hypothesis)
     index = [one.name for one in analysis.hypotheses].index(hypothesis)
     source = np.random.SeedSequence(seed, spawn_key=(2, index))
-    counts = np.concatenate(list(pseudo_experiments(model, source, draws)))
+    counts = np.concatenate(
+        [
+            block
+            for variant, (first, last) in zip(variants, _shares(variants, draws), strict=True)
+            for block in pseudo_experiments(
+                compile_model(variant.analysis, hypothesis), source, last - first, first=first
+            )
+        ]
+    )
     low, median, high = np.quantile(counts, [0.16, 0.5, 0.84], axis=0)
     total_low, total_median, total_high = np.quantile(counts.sum(axis=1), [0.16, 0.5, 0.84])
     return PriorPredictive(
         hypothesis, low, median, high, float(total_low), float(total_median), float(total_high)
     )
+
+
+def _shares(variants: Sequence[Variant], draws: int) -> list[tuple[int, int]]:
+    """Return the first and last draw of each variant, in proportion to their prior probabilities."""
+    ends = np.round(np.cumsum([one.prior for one in variants]) * draws).astype(int).tolist()
+    return list(pairwise([0, *ends[:-1], draws]))

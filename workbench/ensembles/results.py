@@ -16,6 +16,7 @@ class Adequacy:
         p_error: its standard error.
         pseudo_experiments: how many were drawn.
         unfinished_fits: how many pseudo-experiments' fits did not converge (counted, kept in).
+        alternative: the alternative of the backgrounds that was judged; empty where there is no doubt.
     """
 
     hypothesis: str
@@ -24,6 +25,7 @@ class Adequacy:
     p_error: float
     pseudo_experiments: int
     unfinished_fits: int
+    alternative: str = ""
 
     @property
     def fails(self) -> bool:

@@ -37,6 +37,7 @@ class Evidence:
         established: True when error, k-hat and the estimators' agreement are all in order.
         reason: why it is not established; empty when it is.
         estimates: every estimator's answer.
+        alternatives: what it is an average of, where its backgrounds have alternatives.
     """
 
     hypothesis: str
@@ -45,6 +46,44 @@ class Evidence:
     established: bool
     reason: str
     estimates: tuple[Estimate, ...]
+    alternatives: tuple[AlternativeEvidence, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class AlternativeEvidence:
+    """The evidence of one alternative, or combination of alternatives, under a hypothesis.
+
+    Attributes:
+        name: the alternative's name.
+        prior: its prior probability given the hypothesis; those of all alternatives add up to 1.
+        evidence: its own evidence.
+        posterior, posterior_error: its probability given the hypothesis and the counts; None where the
+            evidences are not established.
+    """
+
+    name: str
+    prior: float
+    evidence: Evidence
+    posterior: float | None = None
+    posterior_error: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class AlternativeFactor:
+    """The Bayes factor if one alternative were known to hold.
+
+    Attributes:
+        name: the alternative's name.
+        prior: its prior probability.
+        ln_bayes_factor, ln_bayes_factor_error: ln B under it and its numerical error [nats].
+        established: True when both evidences are.
+    """
+
+    name: str
+    prior: float
+    ln_bayes_factor: float | None
+    ln_bayes_factor_error: float | None
+    established: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,6 +125,7 @@ class Comparison:
         posterior_odds, posterior_odds_error: None when not established.
         established: True when both evidences are.
         sensitivity: how ln B changes with the width of each strength prior.
+        alternatives: ln B under each alternative of the backgrounds alone; none where there is no doubt.
     """
 
     hypothesis: str
@@ -97,6 +137,7 @@ class Comparison:
     posterior_odds_error: float | None
     established: bool
     sensitivity: tuple[ScaledPrior, ...] = ()
+    alternatives: tuple[AlternativeFactor, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -121,3 +162,7 @@ class Weighing:
     def established(self) -> bool:
         """Return True when every evidence is established."""
         return all(evidence.established for evidence in self.evidences)
+
+    def evidence_of(self, hypothesis: str) -> Evidence:
+        """Return the evidence of the hypothesis of that name."""
+        return next(one for one in self.evidences if one.hypothesis == hypothesis)

@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.errors import Caution, InputError, Problem, quoted
+from workbench.evidence.averaging import weigh_variants
 from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
@@ -21,6 +22,7 @@ from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
 from workbench.evidence.sampling import Sample, sample
 from workbench.evidence.sensitivity import sensitivities
+from workbench.hypotheses.alternatives import in_doubt
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import Model, compile_model, never_filled
 
@@ -62,8 +64,8 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         closed_forms: False keeps to the numerical estimators even where a closed form holds.
 
     Returns:
-        Evidences with errors and their estimators, comparisons against the first hypothesis, posterior
-        probabilities, and cautions.
+        Evidences with errors and their estimators (averages over the alternatives of the backgrounds, where
+        there are some), comparisons against the first hypothesis, posterior probabilities, and cautions.
 
     Raises:
         InputError: if a region has no observed counts.
@@ -72,6 +74,10 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         R.E. Kass, A.E. Raftery, Bayes factors, J. Am. Stat. Assoc. 90 (1995) 773; from memory. The estimators
         name theirs.
     """
+    if in_doubt(analysis):
+        return weigh_variants(
+            analysis, seed, lambda one, its_seed: weigh(one, seed=its_seed, closed_forms=closed_forms)
+        )
     children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses))
     weighed: list[Weighed] = []
     for hypothesis, child in zip(analysis.hypotheses, children, strict=True):

@@ -7,11 +7,13 @@ Where no asymmetric errors are asked for, iminuit is loaded only if the Newton s
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
 
+from workbench.hypotheses.alternatives import Variant, variants_of
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.covariance import spread
 from workbench.likelihood.findings import findings, unsupported
@@ -43,7 +45,9 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
         asymmetric: also find, for parameters, the errors where the penalised ln likelihood has fallen by 1/2.
 
     Returns:
-        Values, errors, pulls, correlations, expected counts, and how the fit ended.
+        Values, errors, pulls, correlations, expected counts, and how the fit ended. Where backgrounds have
+        alternatives, each is fitted; the one with the largest penalised ln likelihood is returned, the
+        others are kept in it.
 
     Raises:
         InputError: if there is no such hypothesis or a region has no observed counts.
@@ -55,6 +59,9 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
     Source:
         F. James, M. Roos, Comput. Phys. Commun. 10 (1975) 343 for the minimiser; from memory.
     """
+    variants = variants_of(analysis, hypothesis)
+    if len(variants) > 1:
+        return _best_of(variants, hypothesis, asymmetric)
     model = compile_model(analysis, hypothesis)
     counts = model.observed_for("a fit")
     search = searcher(model)
@@ -68,6 +75,16 @@ def fit(analysis: Analysis, hypothesis: str, *, asymmetric: bool = True) -> Fit:
         return findings(model, summit, _ending(True, summit), {})
     summit, found, is_sure = _climb(search, points[0], counts, asymmetric)
     return findings(model, summit, _ending(is_sure or bool(converged[0]), summit), found)
+
+
+def _best_of(variants: Sequence[Variant], hypothesis: str, asymmetric: bool) -> Fit:
+    """Return the best fit of several variants, the fits of the others in it."""
+    fits = [
+        replace(fit(one.analysis, hypothesis, asymmetric=asymmetric), alternative=one.name)
+        for one in variants
+    ]
+    best, *others = sorted(fits, key=lambda one: -one.penalised)
+    return replace(best, others=tuple(others))
 
 
 def _is_smooth(search: Searcher, point: Array, counts: Array) -> bool:

@@ -64,6 +64,8 @@ class Fit:
         expected: (bin,) expected events of the whole hypothesis at the best point, all regions in order.
         by_process: process name to (bin,) expected events.
         notes: sentences on what stands out (flat directions and degenerate pairs by name).
+        alternative: the alternative of the backgrounds that was fitted; empty where there is no doubt.
+        others: the fits of the other alternatives, best first; none where there is no doubt.
     """
 
     hypothesis: str
@@ -75,3 +77,5 @@ class Fit:
     expected: Array
     by_process: dict[str, Array]
     notes: tuple[str, ...] = ()
+    alternative: str = ""
+    others: tuple[Fit, ...] = ()

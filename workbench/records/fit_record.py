@@ -41,6 +41,8 @@ def _fit(fit: Fit) -> dict[str, Any]:
         "expected": fit.expected.tolist(),
         "by_process": {name: events.tolist() for name, events in fit.by_process.items()},
         "notes": list(fit.notes),
+        "alternative": fit.alternative or None,
+        "others": [_fit(other) for other in fit.others],
     }
 
 

@@ -7,7 +7,7 @@ from typing import Any
 
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
-from workbench.evidence.results import Comparison, Evidence, Posterior
+from workbench.evidence.results import AlternativeEvidence, Comparison, Evidence, Posterior
 from workbench.likelihood.results import Fit
 from workbench.records.files import FORMAT
 from workbench.records.outcomes import Origin, WeighOutcome
@@ -54,6 +54,7 @@ def adequacy_entry(adequacy: Adequacy) -> dict[str, Any]:
         "statistic": adequacy.statistic,
         "pseudo_experiments": adequacy.pseudo_experiments,
         "unfinished_fits": adequacy.unfinished_fits,
+        "alternative": adequacy.alternative or None,
     }
 
 
@@ -77,23 +78,43 @@ def _hypothesis(evidence: Evidence, posterior: Posterior, adequacy: Adequacy, fi
         "ln_evidence_error": evidence.error,
         "established": evidence.established,
         "reason": evidence.reason or None,
-        "estimators": [
-            {
-                "name": estimate.name,
-                "ln_evidence": estimate.ln_evidence,
-                "error": estimate.error,
-                "k_hat": estimate.k_hat,
-                "draws": estimate.draws,
-            }
-            for estimate in evidence.estimates
-        ],
+        "estimators": _estimators(evidence),
+        "alternatives": [_alternative(one) for one in evidence.alternatives],
         "adequacy": adequacy_entry(adequacy),
         "fit": {
             "ending": fit.ending.value,
+            "alternative": fit.alternative or None,
             "ln_likelihood": fit.ln_likelihood,
             "parameters": {item.name: {"value": item.value, "error": item.error} for item in fit.fitted},
             "expected": {name: float(events.sum()) for name, events in fit.by_process.items()},
         },
+    }
+
+
+def _estimators(evidence: Evidence) -> list[dict[str, Any]]:
+    return [
+        {
+            "name": estimate.name,
+            "ln_evidence": estimate.ln_evidence,
+            "error": estimate.error,
+            "k_hat": estimate.k_hat,
+            "draws": estimate.draws,
+        }
+        for estimate in evidence.estimates
+    ]
+
+
+def _alternative(one: AlternativeEvidence) -> dict[str, Any]:
+    return {
+        "name": one.name,
+        "prior": one.prior,
+        "posterior": one.posterior,
+        "posterior_error": one.posterior_error,
+        "ln_evidence": one.evidence.ln_evidence,
+        "ln_evidence_error": one.evidence.error,
+        "established": one.evidence.established,
+        "reason": one.evidence.reason or None,
+        "estimators": _estimators(one.evidence),
     }
 
 
@@ -118,5 +139,15 @@ def _comparison(comparison: Comparison) -> dict[str, Any]:
                 "ln_bayes_factor_doubled": item.doubled,
             }
             for item in comparison.sensitivity
+        ],
+        "alternatives": [
+            {
+                "name": one.name,
+                "prior": one.prior,
+                "ln_bayes_factor": one.ln_bayes_factor,
+                "ln_bayes_factor_error": one.ln_bayes_factor_error,
+                "established": one.established,
+            }
+            for one in comparison.alternatives
         ],
     }

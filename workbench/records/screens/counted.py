@@ -73,15 +73,27 @@ def claimed_lines(analysis: Analysis, fits: Sequence[Fit]) -> list[str]:
         start = bins.stop
         lines += ([""] if place else []) + _events_table(analysis, region, fits, bins)
     for fit in fits:
+        if fit.others:
+            lines += bullet(f"Fit of {named(fit.hypothesis)}: with {named(fit.alternative)}, {best_of(fit)}.")
         if fit.ending is not Ending.CONVERGED:
             lines += bullet(f"Fit of {named(fit.hypothesis)}: {fit.ending.value}.")
     return lines + _signal_priors(analysis)
+
+
+def best_of(fit: Fit) -> str:
+    """Return among how many alternatives a fit is the best, in words."""
+    return f"the best of {len(fit.others) + 1} alternatives"
 
 
 def adequacy_lines(adequacies: Sequence[Adequacy]) -> list[str]:
     """Return one line a hypothesis: does it describe the data at all."""
     rows = [[one_line(item.hypothesis), adequacy_number(item), adequacy_verdict(item)] for item in adequacies]
     lines = [*heading("Do the hypotheses describe the data?"), *columns(rows, "lll")]
+    judged = [
+        f"{named(one.alternative)} under {named(one.hypothesis)}" for one in adequacies if one.alternative
+    ]
+    if judged:
+        lines += bullet(f"Judged with the likeliest alternative: {', '.join(judged)}.")
     for item in adequacies:
         if item.unfinished_fits:
             lines += bullet(

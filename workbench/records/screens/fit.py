@@ -8,7 +8,7 @@ from collections.abc import Iterator, Sequence
 from workbench.likelihood.results import Fit, Fitted
 from workbench.records.numbers import fixed, significant, with_sides, with_two_digits
 from workbench.records.outcomes import FitOutcome
-from workbench.records.screens.counted import NONE, counted_lines, title_lines
+from workbench.records.screens.counted import NONE, best_of, counted_lines, title_lines
 from workbench.records.screens.layout import aligned_at, bullet, columns, heading, one_line, paragraph, screen
 
 NOTABLE = 0.2
@@ -43,7 +43,8 @@ def fit_screen(outcome: FitOutcome) -> str:
 
 def fit_lines(fit: Fit) -> list[str]:
     """Return one hypothesis' block: how the fit ended, then a line a parameter."""
-    lines = heading(f"Fit of {one_line(fit.hypothesis)}")
+    under = f", with {one_line(fit.alternative)}: {best_of(fit)}" if fit.others else ""
+    lines = heading(f"Fit of {one_line(fit.hypothesis)}{under}")
     ending = fit.ending.value
     height = f" ln likelihood {fixed(fit.ln_likelihood, 3)}." if math.isfinite(fit.ln_likelihood) else ""
     lines += paragraph(f"{ending[0].upper()}{ending[1:]}.{height}")
@@ -57,7 +58,31 @@ def fit_lines(fit: Fit) -> list[str]:
         lines += ["", *columns([header, *body], "llrr")]
     for note in fit.notes:
         lines += bullet(f"{note[0].upper()}{note[1:].removesuffix('.')}.")
-    return lines
+    return lines + _other_lines(fit)
+
+
+def _other_lines(fit: Fit) -> list[str]:
+    """Return the other alternatives' fits: how far below the best, and what they say of signal parameters."""
+    if not fit.others:
+        return []
+    signals = [item.name for item in fit.fitted if item.role == "signal"]
+    rows = [["alternative", "penalised ln likelihood", "below the best", *map(one_line, signals)]]
+    for one in (fit, *fit.others):
+        heights = [fixed(value, 3) for value in (one.penalised, fit.penalised - one.penalised)]
+        values = {item.name: value_text(item) for item in one.fitted}
+        is_known = math.isfinite(one.penalised)
+        rows.append(
+            [
+                one_line(one.alternative),
+                *(heights if is_known else [NONE, NONE]),
+                *(values.get(name, NONE) for name in signals),
+            ]
+        )
+    for place in range(3, 3 + len(signals)):
+        cells = aligned_at(" ", [row[place] for row in rows[1:]])
+        for row, cell in zip(rows[1:], cells, strict=True):
+            row[place] = cell
+    return ["", *columns(rows, "lrr" + "l" * len(signals))]
 
 
 def correlation_lines(fit: Fit) -> list[str]:

@@ -17,6 +17,7 @@ from workbench.records.numbers import (
     with_errors,
 )
 from workbench.records.outcomes import WeighOutcome
+from workbench.records.screens.alternatives import alternative_lines, with_alternatives
 from workbench.records.screens.counted import (
     NONE,
     adequacy_lines,
@@ -74,15 +75,16 @@ def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
     """Return each hypothesis' evidence by every estimator, side by side, and whether they agree."""
     labels: list[str] = []
     rest: list[list[str]] = []
-    for evidence in evidences:
+    listed = with_alternatives(evidences)
+    for label, evidence in listed:
         for place, estimate in enumerate(evidence.estimates):
-            labels.append(one_line(evidence.hypothesis) if place == 0 else "")
+            labels.append(label if place == 0 else "")
             k_hat = NONE if estimate.k_hat is None else fixed(estimate.k_hat, 2)
             rest.append([estimate.name, k_hat, count(estimate.draws) if estimate.draws else NONE])
         if not evidence.estimates:
-            labels.append(one_line(evidence.hypothesis))
+            labels.append(label)
             rest.append([_NO_ESTIMATE, NONE, NONE])
-    estimates = [estimate for evidence in evidences for estimate in evidence.estimates]
+    estimates = [estimate for _, evidence in listed for estimate in evidence.estimates]
     texts = iter(with_errors([one.ln_evidence for one in estimates], [one.error for one in estimates]))
     values = [NONE if other[0] == _NO_ESTIMATE else next(texts) for other in rest]
     cells = zip(labels, rest, aligned_at(" ±", values), strict=True)
@@ -103,7 +105,8 @@ def comparison_lines(comparison: Comparison, evidences: Sequence[Evidence]) -> l
     lines = heading(f"Odds: {names}")
     ln_factor, ln_odds = comparison.ln_bayes_factor, ln_posterior_odds(comparison)
     if ln_factor is None or ln_odds is None:
-        return lines + _not_established(comparison, evidences)
+        doubts = _not_established(comparison, evidences)
+        return lines + doubts + alternative_lines(comparison, evidences)
     error = comparison.ln_bayes_factor_error or 0.0
     rows = [
         ["ln B", ln_with_error(ln_factor, error)],
@@ -115,7 +118,7 @@ def comparison_lines(comparison: Comparison, evidences: Sequence[Evidence]) -> l
     lines += columns(rows, "ll")
     for item in comparison.sensitivity:
         lines += ["", *_sensitivity_lines(item, comparison, ln_factor)]
-    return lines
+    return lines + alternative_lines(comparison, evidences)
 
 
 def probability_lines(posteriors: Sequence[Posterior]) -> list[str]:
