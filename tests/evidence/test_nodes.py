@@ -31,15 +31,14 @@ def names(integrand: Integrand, indices: tuple[int, ...]) -> list[str]:
 def test_laplace_by_hand() -> None:
     """-H = [[2, 1], [1, 3]], determinant 5: ln 2 pi - ln(5)/2; of the second alone ln(2 pi/3)/2."""
     hessians = -np.array([[[2.0, 1.0], [1.0, 3.0]]])
-    both, second = np.array([0, 1]), np.array([1])
-    assert laplace(hessians, both) == pytest.approx([np.log(2.0 * np.pi) - 0.5 * np.log(5.0)], rel=1e-13)
-    assert laplace(hessians, second) == pytest.approx([0.5 * np.log(2.0 * np.pi / 3.0)], rel=1e-13)
-    assert laplace(hessians, np.array([], dtype=np.intp)) == pytest.approx([0.0])
+    assert laplace(hessians) == pytest.approx([np.log(2.0 * np.pi) - 0.5 * np.log(5.0)], rel=1e-13)
+    assert laplace(hessians[:, 1:, 1:]) == pytest.approx([0.5 * np.log(2.0 * np.pi / 3.0)], rel=1e-13)
+    assert laplace(hessians[:, :0, :0]) == pytest.approx([0.0])
 
 
 def test_laplace_of_what_is_no_maximum_is_not_a_number() -> None:
     with np.errstate(invalid="ignore"):
-        assert np.isnan(laplace(-np.diag([1.0, -2.0])[None], np.array([0, 1])))[0]
+        assert np.isnan(laplace(-np.diag([1.0, -2.0])[None]))[0]
 
 
 def column(inner: Array, ln_height: Array) -> Columns:

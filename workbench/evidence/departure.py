@@ -14,7 +14,6 @@ import numpy.typing as npt
 from workbench.evidence.bending import Bending, bending
 from workbench.evidence.nodes import Columns, Integrand
 from workbench.evidence.ridge import Turned, follow
-from workbench.likelihood.objective import StandardObjective
 
 Array = npt.NDArray[np.float64]
 
@@ -74,14 +73,14 @@ def _bending(
         return None
     centre = columns.points[column, inner]
     block = np.ix_(nuisance, nuisance)
-    objective = StandardObjective(integrand.model)
+    objective = integrand.objective
 
     def hessians_at(offsets: Array) -> Array:
         points = np.repeat(centre[None], len(offsets), axis=0)
         points[:, nuisance] += offsets
         return objective.derivatives(points, integrand.counts)[2][:, block[0], block[1]]
 
-    hessian = columns.hessians[column, inner][block]
+    hessian = columns.hessians[column, inner]
     if np.linalg.eigvalsh(-hessian).min() <= 0.0:
         return None
     bend = bending(hessians_at, hessian)

@@ -72,7 +72,7 @@ def shifted_lattices(
     folded = 1.0 - np.abs(2.0 * ((base[None] + shifts) % 1.0) - 1.0)
     loose = dimensions - spread + lots
     if loose:
-        order = generator.permuted(np.tile(np.arange(points)[None, :, None], (scrambles, 1, loose)), axis=1)
-        rest = (order + generator.random(order.shape)) / points
+        order = generator.random((scrambles, loose, points)).argsort(axis=2)
+        rest = np.swapaxes((order + generator.random(order.shape)) / points, 1, 2)
         folded = np.concatenate([folded, rest], axis=2)
     return np.asarray(np.clip(folded, 1e-12, 1.0 - 1e-12))

@@ -25,7 +25,8 @@ Indices = npt.NDArray[np.intp]
 INNER_NODES = 15
 LEAST_LN_HEIGHT = -1e300  # of a node without a maximum to integrate around
 _FAR_DOWN = 60.0
-_TOLERANCE = 1e-3
+_TOLERANCE = 1e-3  # nats that one more step promises
+_MANY, _ROUGHER = 3000, 1e-2  # where there are thousands of nodes, each carries little
 _ADJUSTMENTS = 8
 _CRAWL = 30  # evaluations a node; three are usual
 _MOST_BATCHES = 300
@@ -41,7 +42,7 @@ class Columns:
         ln_height: (column, inner) ln of the integrand with the nuisance coordinates integrated, the outer
             prior density taken out [nats].
         points: (column, inner, coordinate) where the nuisance coordinates' maximum is.
-        hessians: (column, inner, coordinate, coordinate) Hessian of the ln integrand there.
+        hessians: (column, inner, nuisance, nuisance) Hessian of the ln integrand there.
         converged: (column, inner) True where the maximisation converged.
         has_inner: False when every signal coordinate is an outer one.
         evaluations: how often derivatives were worked out to find all this.
@@ -129,6 +130,11 @@ class Integrand:
         """Return the coordinates that are integrated by Laplace."""
         return np.setdiff1d(np.arange(self.model.size), self.model.signal)
 
+    @cached_property
+    def objective(self) -> StandardObjective:
+        """Return the ln integrand, without derivatives in the signal parameters."""
+        return StandardObjective(self.model, frozenset(int(index) for index in self.model.signal))
+
     def columns(self, outer: Array) -> Columns:
         """Return the nodes at the given outer coordinates.
 
@@ -157,12 +163,19 @@ class Integrand:
 
     def climb(self, starts: Array, moving: Indices) -> Maxima:
         """Return the maxima over some coordinates from (batch, coordinate) starting points."""
-        objective = StandardObjective(self.model)
         flags = np.zeros(self.model.size, dtype=bool)
         flags[moving] = True
         rows = rows_at_once(self.model)
+        tolerance = _TOLERANCE if len(starts) < _MANY else _ROUGHER
         pieces = [
-            maximise(objective, starts[first : first + rows], self.counts, moving=flags, tolerance=_TOLERANCE)
+            maximise(
+                self.objective,
+                starts[first : first + rows],
+                self.counts,
+                moving=flags,
+                tolerance=tolerance,
+                go_on=True,
+            )
             for first in range(0, len(starts), rows)
         ]
         if len(pieces) == 1:
@@ -180,7 +193,12 @@ class Integrand:
         unit = float(prior.median)
         amplitude, information = self.landscape.amplitudes(events)
         return Outlook(
-            starts, prior, amplitude * unit, information / unit**2, self.landscape.absorbed(events) / unit
+            starts,
+            prior,
+            amplitude * unit,
+            information / unit**2,
+            events.sum(axis=1) / unit,
+            self.landscape.absorbed(events) / unit,
         )
 
     def _settled(self, outlook: Outlook, low: Array, high: Array, edge: Array) -> Columns:
@@ -213,7 +231,8 @@ class Integrand:
         found = self.climb(starts.reshape(count * size, -1), self.nuisance)
         outer = list(self.outer)
         taken_out = 0.5 * (found.points[:, outer] ** 2).sum(axis=1) + 0.5 * len(outer) * np.log(2.0 * np.pi)
-        height = found.values + found.gains + taken_out + laplace(found.hessians, self.nuisance)
+        hessians = found.hessians[:, self.nuisance[:, None], self.nuisance[None, :]]
+        height = found.values + found.gains + taken_out + laplace(hessians)
         height = np.where(np.isfinite(height), height, LEAST_LN_HEIGHT)
         shape = (count, size)
         return Columns(
@@ -221,26 +240,24 @@ class Integrand:
             inner,
             height.reshape(shape),
             found.points.reshape(*shape, -1),
-            found.hessians.reshape(*shape, self.model.size, self.model.size),
+            hessians.reshape(*shape, *hessians.shape[1:]),
             found.converged.reshape(shape),
             index is not None,
             found.evaluations,
         )
 
 
-def laplace(hessians: Array, nuisance: Indices) -> Array:
+def laplace(hessians: Array) -> Array:
     """Return (batch,) ln of the Gaussian integral over nuisance coordinates, (d/2) ln 2 pi - ln det(-H)/2.
 
     Args:
-        hessians: (batch, coordinate, coordinate) Hessian of the ln integrand.
-        nuisance: coordinates to integrate.
+        hessians: (batch, nuisance, nuisance) Hessian of the ln integrand.
 
     Returns:
         (batch,) ln integral relative to the maximum [nats]; nan where -H is not positive definite.
     """
-    block = -hessians[:, nuisance[:, None], nuisance[None, :]]
-    sign, ln_det = np.linalg.slogdet(block)
-    return np.where(sign > 0.0, 0.5 * nuisance.size * np.log(2.0 * np.pi) - 0.5 * ln_det, np.nan)
+    sign, ln_det = np.linalg.slogdet(-hessians)
+    return np.where(sign > 0.0, 0.5 * hessians.shape[-1] * np.log(2.0 * np.pi) - 0.5 * ln_det, np.nan)
 
 
 def _adjusted(

@@ -24,6 +24,7 @@ class Outlook:
         starts: (column, coordinate) points with nuisance coordinates at the background's mode.
         prior: the strength's prior.
         best, information: (column,) best strength and its inverse variance.
+        events: (column,) signal events of a unit of strength.
         absorbed: (column, nuisance) change of the nuisance coordinates that a unit of strength replaces.
     """
 
@@ -31,16 +32,26 @@ class Outlook:
     prior: Prior
     best: Array
     information: Array
+    events: Array
     absorbed: Array
 
     def take(self, rows: Indices) -> Outlook:
         """Return some columns."""
         return Outlook(
-            self.starts[rows], self.prior, self.best[rows], self.information[rows], self.absorbed[rows]
+            self.starts[rows],
+            self.prior,
+            self.best[rows],
+            self.information[rows],
+            self.events[rows],
+            self.absorbed[rows],
         )
 
     def range(self) -> tuple[Array, Array, Array]:
-        """Return (column,) ends in standard coordinates that hold a strength parabola, and the edge."""
+        """Return (column,) ends in standard coordinates that hold the integrand, and the edge.
+
+        The strength is foreseen as if its events were counted in one bin, whose background is such that the
+        information is right: a Poisson probability falls less steeply above its top than a parabola.
+        """
         low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
         centre = self.prior.to_standard(np.clip(self.best, low, high))
         slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)
@@ -49,10 +60,10 @@ class Outlook:
         local = centre[:, None] + width[:, None] * np.linspace(-6.0, 6.0, 61)
         wide = edge[:, None] * np.linspace(-1.0, 1.0, 101)
         t = np.sort(np.clip(np.concatenate([local, wide], axis=1), -edge[:, None], edge[:, None]), axis=1)
-        off = self.prior.from_standard(t)[0] - self.best[:, None]
-        # Poisson counts let the strength grow more easily than a parabola at the background does.
-        stiff = np.where(off > 0.0, 0.5, 1.0) * self.information[:, None]
-        depth = 0.5 * stiff * off**2 + 0.5 * t * t
+        behind = self.events**2 / self.information
+        counted = np.maximum(behind + self.best * self.events, 0.0)[:, None]
+        mean = behind[:, None] + self.prior.from_standard(t)[0] * self.events[:, None]
+        depth = mean - counted * np.log(np.maximum(mean, 1e-300)) + 0.5 * t * t
         depth -= depth.min(axis=1, keepdims=True)
         inside = depth < DEEP + 2.0
         first = np.maximum(np.argmax(inside, axis=1) - 1, 0)

@@ -20,14 +20,21 @@ def between(nodes: Array, x: Array) -> tuple[Indices, Array]:
         The index of the node at or below each value and the share of the next one, in [0, 1]; outside the
         nodes the nearest one has all.
     """
-    rows = np.broadcast_to(nodes, (x.size, nodes.shape[-1]))
     last = nodes.shape[-1] - 2
-    below = np.clip((rows <= x[:, None]).sum(axis=1) - 1, 0, max(last, 0))
+    if nodes.ndim == 1:
+        at_or_below = np.searchsorted(nodes, x, side="right")
+    else:
+        at_or_below = (nodes <= x[:, None]).sum(axis=1)
+    below = np.clip(at_or_below - 1, 0, max(last, 0))
     if last < 0:
         return below, np.zeros(x.size)
-    left = np.take_along_axis(rows, below[:, None], 1)[:, 0]
-    right = np.take_along_axis(rows, below[:, None] + 1, 1)[:, 0]
+    left, right = taken(nodes, below), taken(nodes, below + 1)
     return below, np.clip((x - left) / (right - left), 0.0, 1.0)
+
+
+def taken(values: Array, places: Indices) -> Array:
+    """Return one value a draw from (node,) or (draw, node) values."""
+    return values[places] if values.ndim == 1 else values[np.arange(places.size), places]
 
 
 def hat_areas(nodes: Array) -> Array:
@@ -47,16 +54,18 @@ def draw(nodes: Array, heights: Array, u: Array) -> Array:
     Returns:
         (draw,) positions whose distribution function equals u.
     """
-    shape = (u.size, nodes.shape[-1])
-    x, f = np.broadcast_to(nodes, shape), np.broadcast_to(heights, shape)
-    area = 0.5 * (f[:, 1:] + f[:, :-1]) * np.diff(x, axis=1)
-    upto = np.cumsum(area, axis=1)
-    target = u * upto[:, -1]
-    segment = np.minimum((upto < target[:, None]).sum(axis=1), shape[1] - 2)
-    row = np.arange(u.size)
-    rest = target - np.where(segment > 0, upto[row, np.maximum(segment - 1, 0)], 0.0)
-    left, width = x[row, segment], x[row, segment + 1] - x[row, segment]
-    f0, f1 = f[row, segment], f[row, segment + 1]
+    area = 0.5 * (heights[..., 1:] + heights[..., :-1]) * np.diff(nodes, axis=-1)
+    upto = np.cumsum(area, axis=-1)
+    target = u * upto[..., -1]
+    if upto.ndim == 1:
+        passed = np.searchsorted(upto, target, side="left")
+    else:
+        passed = (upto < target[:, None]).sum(axis=1)
+    segment = np.minimum(passed, nodes.shape[-1] - 2)
+    rest = target - np.where(segment > 0, taken(upto, np.maximum(segment - 1, 0)), 0.0)
+    left = taken(nodes, segment)
+    width = taken(nodes, segment + 1) - left
+    f0, f1 = taken(heights, segment), taken(heights, segment + 1)
     root = np.sqrt(np.maximum(f0 * f0 + 2.0 * rest * (f1 - f0) / width, 0.0))
     return np.asarray(left + np.clip(2.0 * rest / np.maximum(f0 + root, 1e-300), 0.0, width))
 

@@ -9,7 +9,6 @@ its tails a little heavier than normal.
 
 from __future__ import annotations
 
-from contextlib import suppress
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import product
@@ -21,8 +20,9 @@ from scipy import special
 from workbench.evidence.axes import Axis, standard
 from workbench.evidence.bending import RidgeMap, TriangularMap, following
 from workbench.evidence.matrices import grouped, upper_roots
-from workbench.evidence.piecewise import between, draw, hat_areas
+from workbench.evidence.piecewise import between, draw, hat_areas, taken
 from workbench.evidence.quadrature import Grid
+from workbench.evidence.responses import responses
 from workbench.evidence.stretching import Stretch, stretch_for
 
 Array = npt.NDArray[np.float64]
@@ -174,15 +174,17 @@ class Proposal:
         for which, axis in enumerate(axes):
             size = axis.nodes.size
             rest = rest.reshape(len(rest), size, -1)
-            heights = np.broadcast_to(rest @ _product_areas(axes[which + 1 :]), (draws, size))
-            padded = np.concatenate([heights[:, :1], heights, heights[:, -1:]], axis=1)
+            heights = rest @ _product_areas(axes[which + 1 :])
+            if len(heights) == 1:  # the same for all draws
+                heights = heights[0]
+            padded = np.concatenate([heights[..., :1], heights, heights[..., -1:]], axis=-1)
             ends = np.concatenate([[0.0], axis.nodes, [1.0]])
             u = cube[:, which]
             p[:, which] = np.where(from_prior, u, draw(ends, padded, u))
             below, share = between(axis.nodes, p[:, which])
             place = below + _chosen(heights, below, share, lots[:, which], from_prior)
             column += place * self._strides[which]
-            rest = np.broadcast_to(rest, (draws, *rest.shape[1:]))[np.arange(draws), place]
+            rest = rest[0, place] if len(rest) == 1 else rest[np.arange(draws), place]
         return p, column
 
     def _draw_inner(self, column: Indices, u: Array, lot: Array, from_prior: Flags) -> tuple[Array, Indices]:
@@ -255,31 +257,21 @@ def propose(grid: Grid) -> Proposal:
     """Return the proposal built on a grid's nodes."""
     integrand, columns = grid.integrand, grid.columns
     nuisance, model = integrand.nuisance, grid.integrand.model
-    hessians = columns.hessians.reshape(-1, model.size, model.size)
     points = columns.points.reshape(-1, model.size)
-    block = -hessians[:, nuisance[:, None], nuisance[None, :]]
-    signal = np.array(
-        [*integrand.outer, *([] if integrand.inner is None else [integrand.inner])], dtype=np.intp
-    )
-    responses = np.zeros((len(points), signal.size, nuisance.size))
-    if nuisance.size and signal.size:
-        cross = hessians[:, nuisance[:, None], signal[None, :]]
-        with suppress(np.linalg.LinAlgError):  # draws are as good without, only their weights less even
-            responses = np.swapaxes(np.linalg.solve(block, cross), 1, 2)
+    block = -columns.hessians.reshape(len(points), nuisance.size, nuisance.size)
+    signal = [*integrand.outer, *([] if integrand.inner is None else [integrand.inner])]
     places = points[:, signal]
     for slot, index in enumerate(integrand.outer):
-        x, slope, _ = model.coordinates[index].prior.from_standard(places[:, slot])
-        places[:, slot] = x
-        responses[:, slot] /= np.maximum(slope, 1e-12)[:, None]
+        places[:, slot] = model.coordinates[index].prior.from_standard(places[:, slot])[0]
     roots = upper_roots(block)
     bend = grid.bending
     if bend is None:
         straight = TriangularMap(np.zeros(3 * (nuisance.size,)))
-        return Proposal(grid, roots, straight, points[:, nuisance], responses, places)
+        return Proposal(grid, roots, straight, points[:, nuisance], responses(grid), places)
     best = int(np.argmax(columns.ln_height))
     turn = np.linalg.solve(roots[best].T, bend.axes.T).T
     return Proposal(
-        grid, turn @ roots, following(bend.third, bend.ridge), points[:, nuisance], responses, places
+        grid, turn @ roots, following(bend.third, bend.ridge), points[:, nuisance], responses(grid), places
     )
 
 
@@ -292,7 +284,6 @@ def _product_areas(axes: tuple[Axis, ...]) -> Array:
 
 def _chosen(heights: Array, below: Indices, share: Array, u: Array, from_prior: Flags) -> Indices:
     """Return 0 or 1: which of two neighbouring nodes a draw takes the rest from."""
-    rows = np.arange(len(below))
-    left = (1.0 - share) * np.where(from_prior, 1.0, heights[rows, below])
-    right = share * np.where(from_prior, 1.0, heights[rows, below + 1])
+    left = (1.0 - share) * np.where(from_prior, 1.0, taken(heights, below))
+    right = share * np.where(from_prior, 1.0, taken(heights, below + 1))
     return np.asarray(u * (left + right) < right, dtype=np.intp)

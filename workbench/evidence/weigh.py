@@ -31,7 +31,7 @@ Array = npt.NDArray[np.float64]
 LARGEST_ERROR = 0.1
 _WANTED_ERROR = 0.005
 _NOWHERE: Mapping[str, float] = {}
-_FIRST_DRAWS = 64
+_FIRST_DRAWS = 128
 _MOST_DRAWS = 2048
 # The spread of weights tells their error where four moments are finite: k below 1/4; k-hat is noisy itself.
 _EVEN_ENOUGH = 0.3

@@ -110,6 +110,7 @@ def _part(
             core=of,
             fixed_core=None if moves else np.asarray(of(constants).value),
             fixed_amplitude=None if scales else float(evaluate(quantity, constants).value),
+            shaping=tuple(coordinates[name] for name in free if name in of_shape or name in found.added),
         )
 
     return Part(

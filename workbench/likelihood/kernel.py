@@ -43,6 +43,102 @@ class Piece:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
+class Place:
+    """Where one part stands among the rows of its region's directions.
+
+    Attributes:
+        piece: the part.
+        row: the row of its events.
+        local, by_bin: the rows of its first derivatives and of its sources that act by bin.
+    """
+
+    piece: Piece
+    row: int
+    local: slice
+    by_bin: slice
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Directions:
+    """The few ways in which the coordinates change the events of one region: dT = mixing @ rows.
+
+    A source that acts on all bins of a part alike moves the events along the part itself, so that hundreds of
+    such sources need no rows of their own.
+
+    Attributes:
+        rows: (batch, row, bin) each part's events, first derivatives, and events times slopes by bin.
+        mixing: (batch, coordinate, row) what each coordinate takes of them.
+        places: where each part stands.
+    """
+
+    rows: Array
+    mixing: Array
+    places: tuple[Place, ...]
+
+    @classmethod
+    def of(cls, pieces: list[Piece], overall: Sources, slopes: Array, size: int) -> Directions:
+        """Return the directions of the parts of one region."""
+        batch, bins = pieces[0].events.shape
+        number = sum(1 + len(piece.local) + piece.slopes.shape[1] for piece in pieces)
+        rows, mixing = np.empty((batch, number, bins)), np.zeros((batch, size, number))
+        places, at = [], 0
+        for piece in pieces:
+            middle = at + 1 + len(piece.local)
+            place = Place(piece, at, slice(at + 1, middle), slice(middle, middle + piece.slopes.shape[1]))
+            rows[:, at] = piece.events
+            mixing[:, overall.indices, at] = slopes[:, :, piece.row]
+            for row, index in enumerate(piece.local, start=at + 1):
+                rows[:, row] = piece.first[row - at - 1]
+                mixing[:, index, row] = 1.0
+            if piece.by_bin is not None:
+                np.multiply(piece.slopes, piece.events[:, None, :], out=rows[:, place.by_bin])
+                mixing[:, piece.by_bin.indices, np.arange(middle, place.by_bin.stop)] = 1.0
+            places.append(place)
+            at = place.by_bin.stop
+        return cls(rows, mixing, tuple(places))
+
+    def contracted(self, t: Array, tt: Array) -> tuple[Array, Array]:
+        """Return the derivatives along the rows of a sum over bins of a function of their events.
+
+        Args:
+            t: (batch, bin) the function's first derivative in the events.
+            tt: (batch, bin) its second derivative.
+
+        Returns:
+            (batch, row) first and (batch, row, row) second derivatives.
+        """
+        first = (self.rows @ t[:, :, None])[..., 0]
+        second = (self.rows * tt[:, None, :]) @ np.swapaxes(self.rows, 1, 2)
+        for place in self.places:
+            second[:, place.row, place.row] += first[:, place.row]
+            for own in (place.local, place.by_bin):
+                second[:, place.row, own] += first[:, own]
+                second[:, own, place.row] += first[:, own]
+            _add_own(place, t, second)
+        return first, second
+
+
+def _add_own(place: Place, t: Array, second: Array) -> None:
+    """Add the second derivatives of one part's stem and of its sources by bin."""
+    piece, start = place.piece, place.local.start
+    for a in range(len(piece.local)):
+        for b in range(len(piece.local)):
+            second[:, start + a, start + b] += np.einsum("ni,ni->n", t, piece.second[a, b])
+        if piece.by_bin is not None:
+            cross = (piece.slopes @ (t * piece.first[a])[:, :, None])[..., 0]
+            second[:, start + a, place.by_bin] += cross
+            second[:, place.by_bin, start + a] += cross
+    if piece.by_bin is None:
+        return
+    weighted = t * piece.events
+    pulled = piece.slopes * weighted[:, None, :]
+    second[:, place.by_bin, place.by_bin] += pulled @ np.swapaxes(piece.slopes, 1, 2)
+    if piece.by_bin.is_bent:
+        own = np.arange(place.by_bin.start, place.by_bin.stop)
+        second[:, own, own] += (piece.bends @ weighted[:, :, None])[..., 0]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class Expansion:
     """All parts of a hypothesis (or all template errors) at a batch of points.
 
@@ -62,37 +158,35 @@ class Expansion:
     def gradient(self, batch: int, bins: int) -> Array:
         """Return (batch, coordinate, bin) first derivatives of the summed events."""
         result = np.zeros((batch, self.size, bins))
-        for piece in self.pieces:
-            self.add_gradient(piece, result[:, :, piece.bins])
+        for pieces in self._by_region():
+            directions = Directions.of(pieces, self.overall, self.slopes, self.size)
+            result[:, :, pieces[0].bins] = directions.mixing @ directions.rows
         return result
 
-    def add_gradient(self, piece: Piece, target: Array) -> None:
-        """Add one part's first derivatives to its own bins of a (batch, coordinate, bin) array."""
-        events = piece.events[:, None, :]
-        if self.overall.indices.size:
-            target[:, self.overall.indices] += self.slopes[:, :, piece.row, None] * events
-        if piece.by_bin is not None:
-            target[:, piece.by_bin.indices] += piece.slopes * events
-        for slot, index in enumerate(piece.local):
-            target[:, index] += piece.first[slot]
+    def contracted(self, t: Array, tt: Array) -> tuple[Array, Array]:
+        """Return the derivatives of a sum over bins of a function of their events.
 
-    def add_curvature(self, weights: Array, hessian: Array) -> None:
-        """Add sum_i w_i d2 events_i, for (batch, bin) weights, to a (batch, coordinate, coordinate) array."""
-        totals = np.empty((len(hessian), len(self.pieces)))
-        for slot, piece in enumerate(self.pieces):
-            weighted = weights[:, piece.bins] * piece.events
-            totals[:, slot] = weighted.sum(axis=1)
-            self._add_piece(piece, weights[:, piece.bins], weighted, hessian)
-        indices = self.overall.indices
-        if not indices.size:
-            return
-        rows = np.array([piece.row for piece in self.pieces])
-        slopes = self.slopes[:, :, rows]
-        hessian[:, indices[:, None], indices[None, :]] += (slopes * totals[:, None, :]) @ np.swapaxes(
-            slopes, 1, 2
-        )
-        if self.overall.is_bent:
-            hessian[:, indices, indices] += (self.bends[:, :, rows] @ totals[:, :, None])[..., 0]
+        Args:
+            t: (batch, bin) the function's first derivative in the events.
+            tt: (batch, bin) its second derivative.
+
+        Returns:
+            (batch, coordinate) sum_i t_i dT_i and (batch, coordinate, coordinate)
+            sum_i (tt_i dT_i dT_i' + t_i d2T_i).
+        """
+        gradient, hessian = np.zeros((len(t), self.size)), np.zeros((len(t), self.size, self.size))
+        for pieces in self._by_region():
+            bins = pieces[0].bins
+            directions = Directions.of(pieces, self.overall, self.slopes, self.size)
+            first, second = directions.contracted(t[:, bins], tt[:, bins])
+            mixing = directions.mixing
+            gradient += (mixing @ first[:, :, None])[..., 0]
+            hessian += mixing @ second @ np.swapaxes(mixing, 1, 2)
+            if self.overall.is_bent:
+                indices, rows = self.overall.indices, [piece.row for piece in pieces]
+                totals = first[:, [place.row for place in directions.places]]
+                hessian[:, indices, indices] += (self.bends[:, :, rows] @ totals[:, :, None])[..., 0]
+        return gradient, hessian
 
     def add_squares(self, weights: Array, hessian: Array) -> Array:
         """Add sum_i w_i d2 V_i of V = sum of squared events to a Hessian, and return V's first derivatives.
@@ -106,44 +200,20 @@ class Expansion:
         """
         tilt = np.zeros((len(weights), self.size, weights.shape[1]))
         for piece in self.pieces:
-            own = np.zeros((len(weights), self.size, piece.events.shape[1]))
-            alone = replace(self, pieces=(piece,))
-            alone.add_gradient(piece, own)
-            tilt[:, :, piece.bins] += 2.0 * piece.events[:, None, :] * own
-            doubled = 2.0 * weights[:, piece.bins]
-            hessian += (own * doubled[:, None, :]) @ np.swapaxes(own, 1, 2)
-            curved = np.zeros_like(weights)
-            curved[:, piece.bins] = doubled * piece.events
-            alone.add_curvature(curved, hessian)
+            alone, bins = replace(self, pieces=(piece,)), piece.bins
+            doubled, curved = 2.0 * weights, np.zeros_like(weights)
+            curved[:, bins] = doubled[:, bins] * piece.events
+            hessian += alone.contracted(curved, doubled)[1]
+            own = alone.gradient(*weights.shape)[:, :, bins]
+            tilt[:, :, bins] += 2.0 * piece.events[:, None, :] * own
         return tilt
 
-    def _add_piece(self, piece: Piece, weights: Array, weighted: Array, hessian: Array) -> None:
-        """Add what one part's stem and its sources by bin contribute, with their cross terms."""
-        everywhere = self.overall.indices
-        slopes = self.slopes[:, :, piece.row]
-        for a, row in enumerate(piece.local):
-            first = weights * piece.first[a]
-            for b, column in enumerate(piece.local):
-                hessian[:, row, column] += np.einsum("ni,ni->n", weights, piece.second[a, b])
-            if everywhere.size:
-                cross = first.sum(axis=1)[:, None] * slopes
-                hessian[:, row, everywhere] += cross
-                hessian[:, everywhere, row] += cross
-            if piece.by_bin is not None:
-                cross = (piece.slopes @ first[:, :, None])[..., 0]
-                hessian[:, row, piece.by_bin.indices] += cross
-                hessian[:, piece.by_bin.indices, row] += cross
-        if piece.by_bin is None:
-            return
-        own = piece.by_bin.indices
-        pulled = piece.slopes * weighted[:, None, :]
-        hessian[:, own[:, None], own[None, :]] += pulled @ np.swapaxes(piece.slopes, 1, 2)
-        if piece.by_bin.is_bent:
-            hessian[:, own, own] += (piece.bends @ weighted[:, :, None])[..., 0]
-        if everywhere.size:
-            mixed = pulled.sum(axis=2)[:, :, None] * slopes[:, None, :]
-            hessian[:, own[:, None], everywhere[None, :]] += mixed
-            hessian[:, everywhere[:, None], own[None, :]] += np.swapaxes(mixed, 1, 2)
+    def _by_region(self) -> list[list[Piece]]:
+        """Return the pieces of each region, which share their bins."""
+        found: dict[int, list[Piece]] = {}
+        for piece in self.pieces:
+            found.setdefault(piece.bins.start, []).append(piece)
+        return list(found.values())
 
 
 def expand(
@@ -182,10 +252,11 @@ _EMPTY = np.zeros((0, 0, 0))
 def _piece(
     row: int, part: Part, stem: Stem, seeds: Seeds, factor: Array, by_bin: tuple[Array, Array]
 ) -> Piece:
-    value, first, second = stem.expanded(seeds)
+    local = seeds.moving(stem.local)
+    value, first, second = stem.expanded(seeds, local)
     events = factor * value
-    count = len(stem.local)
+    count = len(local)
     if count:
         first = np.broadcast_to(factor * first, (count, *events.shape))
         second = np.broadcast_to(factor * second, (count, count, *events.shape))
-    return Piece(row, part.bins, stem.local, part.by_bin, events, first, second, *by_bin)
+    return Piece(row, part.bins, local, part.by_bin, events, first, second, *by_bin)

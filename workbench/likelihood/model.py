@@ -15,8 +15,9 @@ from workbench.likelihood.coordinates import Coordinate, coordinates_of
 from workbench.likelihood.distortions import with_distortion
 from workbench.likelihood.kernel import Expansion, expand
 from workbench.likelihood.laws import bin_ln_probability
+from workbench.likelihood.memory import keep_freed_memory
 from workbench.likelihood.parts import Part, Seeds, Sources
-from workbench.likelihood.slopes import Slopes, negative_binomial_slopes, poisson_slopes
+from workbench.likelihood.slopes import negative_binomial_slopes, poisson_slopes
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
@@ -90,11 +91,12 @@ class Model:
             )
         return self.observed
 
-    def seeds(self, points: Array) -> Seeds:
+    def seeds(self, points: Array, still: frozenset[int] = frozenset()) -> Seeds:
         """Return parameter values and derivatives at standard-normal coordinates.
 
         Args:
             points: (batch, coordinate) standard-normal coordinates.
+            still: parameters whose derivatives are not wanted.
 
         Returns:
             Seeds with (coordinate, batch) arrays.
@@ -103,7 +105,7 @@ class Model:
         for index, coordinate in enumerate(self.coordinates):
             if coordinate.role != "source":
                 x[index], dx[index], ddx[index] = coordinate.prior.from_standard(points[:, index])
-        return Seeds(x, dx, ddx)
+        return Seeds(x, dx, ddx, still)
 
     def natural_seeds(self, points: Array) -> Seeds:
         """Return seeds whose coordinates are the parameters themselves, (batch, coordinate)."""
@@ -182,15 +184,14 @@ class Model:
         total = np.zeros((batch, self.bins)) + self.spare
         for piece in events.pieces:
             total[:, piece.bins] += piece.events
-        slope = events.gradient(batch, self.bins)
         if errors is None and not self.has_template_errors:
             slopes = poisson_slopes(counts, total)
             value = bin_ln_probability(total, None, counts).sum(axis=-1)
-            return value, *_contraction(events, slope, slopes)
-        return self._noisy(events, errors, total, slope, counts)
+            return value, *events.contracted(slopes.t, slopes.tt)
+        return self._noisy(events, errors, total, counts)
 
     def _noisy(
-        self, events: Expansion, errors: Expansion | None, total: Array, slope: Array, counts: Array
+        self, events: Expansion, errors: Expansion | None, total: Array, counts: Array
     ) -> tuple[Array, Array, Array]:
         """Return the derivatives of the negative binomial: T as before, V = sum of squared errors."""
         variance = np.zeros_like(total) + self.spare**2
@@ -198,22 +199,16 @@ class Model:
             variance[:, piece.bins] += piece.events**2
         slopes = negative_binomial_slopes(counts, total, variance)
         value = bin_ln_probability(total, variance, counts).sum(axis=-1)
-        gradient, hessian = _contraction(events, slope, slopes)
+        gradient, hessian = events.contracted(slopes.t, slopes.tt)
         if errors is None:
             return value, gradient, hessian
+        slope = events.gradient(*total.shape)
         tilt = errors.add_squares(slopes.v, hessian)
         gradient += (tilt @ slopes.v[:, :, None])[..., 0]
         cross = (slope * slopes.tv[:, None, :]) @ np.swapaxes(tilt, 1, 2)
         hessian += cross + np.swapaxes(cross, 1, 2)
         hessian += (tilt * slopes.vv[:, None, :]) @ np.swapaxes(tilt, 1, 2)
         return value, gradient, hessian
-
-
-def _contraction(events: Expansion, slope: Array, slopes: Slopes) -> tuple[Array, Array]:
-    gradient = (slope @ slopes.t[:, :, None])[..., 0]
-    hessian = (slope * slopes.tt[:, None, :]) @ np.swapaxes(slope, 1, 2)
-    events.add_curvature(slopes.t, hessian)
-    return gradient, hessian
 
 
 def compile_model(analysis: Analysis, hypothesis: str) -> Model:
@@ -233,6 +228,7 @@ def compile_model(analysis: Analysis, hypothesis: str) -> Model:
 
 
 def _without_spare(analysis: Analysis, hypothesis: str) -> Model:
+    keep_freed_memory()
     coordinates = coordinates_of(analysis, hypothesis)
     held = analysis.held_parameters(hypothesis)
     positions = {coordinate.name: index for index, coordinate in enumerate(coordinates)}

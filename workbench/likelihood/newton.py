@@ -49,6 +49,7 @@ def maximise(
     tolerance: float = 1e-7,
     most: int = 60,
     scale: Array | None = None,
+    go_on: bool = False,
 ) -> Maxima:
     """Return the maxima reached from a batch of starting points.
 
@@ -64,6 +65,8 @@ def maximise(
         tolerance: expected further gain at which a point is final [nats].
         most: iterations at the most.
         scale: (coordinate,) a length for each coordinate, to bound steps; 1 by default.
+        go_on: True takes the last promised step too, without evaluating there; values, gradients and Hessians
+            are those before it.
 
     Returns:
         The maxima; a point that did not converge is the best one found.
@@ -96,6 +99,8 @@ def maximise(
             )
         converged[moved] = (gain[moved] <= tolerance) & np.isfinite(values[moved])
         active = active[~converged[active] & (shrink[active] > 1e-9) & steps[active].any(axis=1)]
+    if go_on:
+        points = np.where(converged[:, None], np.clip(points + steps, box.low, box.high), points)
     gains = np.where(converged, gain, 0.0)
     return Maxima(points, values, gains, gradients, hessians, converged, evaluations)
 

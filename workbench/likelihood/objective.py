@@ -14,7 +14,7 @@ from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
-_CHUNK = 300_000
+_CHUNK = 1_200_000
 _SHORT_OF_AN_END = 1e-6  # in prior standard deviations
 
 
@@ -46,9 +46,14 @@ class StandardObjective:
 
     With t the standard-normal coordinates, x = F^-1(Phi(t)):
         ln p(n | x(t)) - t.t/2 - (d/2) ln 2 pi
+
+    Attributes:
+        model: a hypothesis.
+        still: parameters whose derivatives nobody asks for; the likelihood's come out as 0 there.
     """
 
     model: Model
+    still: frozenset[int] = frozenset()
 
     @property
     def low(self) -> Array:
@@ -67,7 +72,7 @@ class StandardObjective:
 
     def derivatives(self, points: Array, counts: Array) -> tuple[Array, Array, Array]:
         """Return the ln integrand with exact gradient and Hessian."""
-        value, gradient, hessian = self.model.derivatives(self.model.seeds(points), counts)
+        value, gradient, hessian = self.model.derivatives(self.model.seeds(points, self.still), counts)
         diagonal = np.arange(self.model.size)
         hessian[:, diagonal, diagonal] -= 1.0
         return value - _half_square(points), gradient - points, hessian

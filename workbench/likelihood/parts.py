@@ -33,11 +33,35 @@ class Seeds:
 
     Attributes:
         x, dx, ddx: (coordinate, batch) the value and its first two derivatives.
+        still: parameters whose derivatives nobody asks for: none are made, so that theirs come out as 0.
     """
 
     x: Array
     dx: Array
     ddx: Array
+    still: frozenset[int] = frozenset()
+
+    def moving(self, coordinates: tuple[int, ...]) -> tuple[int, ...]:
+        """Return those of some coordinates whose derivatives are asked for."""
+        if not self.still:
+            return coordinates
+        return tuple(index for index in coordinates if index not in self.still)
+
+    def runs(self, coordinates: tuple[int, ...]) -> tuple[Seeds, Indices | None]:
+        """Return seeds with points left out that repeat the one before in some coordinates.
+
+        Returns:
+            The seeds, and how often each of their points stands in a row; None where none repeats.
+        """
+        if not coordinates or self.x.shape[1] < 2:
+            return self, None
+        chosen = self.x[list(coordinates)]
+        starts = np.flatnonzero(np.append(True, (chosen[:, 1:] != chosen[:, :-1]).any(axis=0)))
+        if 2 * starts.size > self.x.shape[1]:
+            return self, None
+        return Seeds(self.x[:, starts], self.dx[:, starts], self.ddx[:, starts], self.still), np.diff(
+            starts, append=self.x.shape[1]
+        )
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -95,6 +119,7 @@ class Stem:
         core: (..., bin) shape integrals or template; (bin,) where it depends on nothing.
         fixed_core: (bin,) the core where it depends on nothing, else None.
         fixed_amplitude: the amplitude where it depends on nothing, else None.
+        shaping: coordinate indices the core depends on.
     """
 
     local: tuple[int, ...]
@@ -104,40 +129,57 @@ class Stem:
     core: Formula
     fixed_core: Array | None
     fixed_amplitude: float | None
+    shaping: tuple[int, ...]
 
     def value(self, seeds: Seeds) -> Array:
         """Return (batch, bin) or (1, bin) events before the sources act."""
         if self.fixed_amplitude is not None and self.fixed_core is not None:
             return self.fixed_amplitude * self.fixed_core[None, :]
-        arguments = self._arguments(seeds, derivatives=False)
-        core = self.core(arguments).value if self.fixed_core is None else self.fixed_core
+        core = self._core(seeds)
         if self.fixed_amplitude is not None:
             return np.atleast_2d(self.fixed_amplitude * core)
-        return np.atleast_2d(self.amplitude(arguments).value[..., None] * core)
+        return np.atleast_2d(self.amplitude(self._arguments(seeds)).value[..., None] * core)
 
-    def expanded(self, seeds: Seeds) -> tuple[Array, Array, Array]:
-        """Return events (batch, bin) with (m, batch, bin) first and (m, m, batch, bin) second derivatives."""
-        if not self.local:
+    def _core(self, seeds: Seeds) -> Array:
+        """Return the (batch, bin) core, or one for all; worked out once for points in a row that share it."""
+        if self.fixed_core is not None:
+            return self.fixed_core
+        distinct, times = seeds.runs(self.shaping)
+        core = self.core(self._arguments(distinct)).value
+        return core if times is None or core.ndim < 2 else np.repeat(core, times, axis=0)
+
+    def expanded(self, seeds: Seeds, local: tuple[int, ...]) -> tuple[Array, Array, Array]:
+        """Return events (batch, bin) with their derivatives in m coordinates.
+
+        Args:
+            seeds: (coordinate, batch) parameter values with derivatives.
+            local: those of the stem's coordinates in which derivatives are wanted.
+
+        Returns:
+            Events, (m, batch, bin) first and (m, m, batch, bin) second derivatives.
+        """
+        if not local:
             return self.value(seeds), _NO_FIRST, _NO_SECOND
-        arguments = self._arguments(seeds, derivatives=True)
+        arguments = self._arguments(seeds, local)
         if self.fixed_amplitude is not None:
             jet = self.core(arguments) * self.fixed_amplitude
-        elif self.fixed_core is not None:
-            jet = self.amplitude(arguments).over_bins() * self.fixed_core
+        elif not any(index in local for index in self.shaping):
+            jet = self.amplitude(arguments).over_bins() * self._core(seeds)
         else:
             jet = self.amplitude(arguments).over_bins() * self.core(arguments)
         return np.atleast_2d(jet.value), jet.first, jet.second
 
-    def _arguments(self, seeds: Seeds, derivatives: bool) -> dict[str, Jet]:
-        """Return the parameters as jets over the local coordinates (constants without derivatives)."""
-        count = len(self.local) if derivatives else 0
+    def _arguments(self, seeds: Seeds, local: tuple[int, ...] = ()) -> dict[str, Jet]:
+        """Return the parameters as jets over some of the local coordinates, as constants in the others."""
+        count = len(local)
         values = {name: Jet.constant(value, count) for name, value in self.held.items()}
-        for slot, (index, name) in enumerate(zip(self.local, self.names, strict=True)):
+        for index, name in zip(self.local, self.names, strict=True):
             x = seeds.x[index]
-            if derivatives:
+            if index in local:
+                slot = local.index(index)
                 values[name] = Jet.variable(x, seeds.dx[index], seeds.ddx[index], slot, count)
             else:
-                values[name] = Jet.constant(x)
+                values[name] = Jet.constant(x, count)
         return values
 
 
