@@ -24,6 +24,9 @@ def responses(grid: Grid) -> Array:
     Returns:
         (column x inner, signal, nuisance) derivatives: in x of the outer coordinates, in the standard
         coordinate of the inner one.
+
+    Source:
+        None, definition (chain rule).
     """
     integrand, columns = grid.integrand, grid.columns
     sizes = [axis.nodes.size for axis in grid.axes]
