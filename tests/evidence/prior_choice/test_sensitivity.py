@@ -19,7 +19,7 @@ from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.hypotheses.file.reading import read_analysis
 from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.hypotheses.priors import Exponential, Fixed, Gamma, Uniform
-from workbench.hypotheses.processes import Contribution, Process
+from workbench.hypotheses.processes import Alternative, Contribution, Process
 from workbench.hypotheses.shapes import Flat
 
 DATA = Path(__file__).parents[3] / "data"
@@ -174,3 +174,37 @@ def test_the_same_seed_gives_the_same_numbers() -> None:
     assert first.bounds == again.bounds
     assert first.scalings == again.scalings
     assert first.families == again.families
+
+
+def doubtful(observed: float) -> Analysis:
+    """Return a count whose known background is 3.8 with probability 2/3, or 6.5."""
+    into = {"on": Contribution(Flat(), YIELD)}
+    levels = tuple(
+        Alternative(name, {"on": Contribution(Flat(), level)}, prior)
+        for name, level, prior in (("low", 3.8, 2.0), ("high", 6.5, 1.0))
+    )
+    return Analysis(
+        "In doubt",
+        regions=(one_bin("on", observed),),
+        parameters=(Parameter("strength", Exponential(1.0)),),
+        processes=(
+            Process("background", "background", {}, alternatives=levels),
+            Process("signal", "signal", into, factors=("strength",)),
+        ),
+    )
+
+
+def test_alternatives_of_a_background_are_averaged_at_every_strength() -> None:
+    """By hand: R = sum of P(k) Poisson(n | b_k + s y) over sum of P(k) Poisson(n | b_k)."""
+    found = prior_sensitivity(doubtful(11))
+    assert found.established
+    curve = found.curve
+    assert curve is not None
+
+    def averaged(s: float) -> float:
+        return float(sum(p * stats.poisson.pmf(11, b + YIELD * s) for p, b in ((2 / 3, 3.8), (1 / 3, 6.5))))
+
+    for s in (0.0, 0.4, 1.3, 2.4):
+        expected = np.log(averaged(s) / averaged(0.0))
+        assert float(curve.at(np.array(s))) == pytest.approx(expected, abs=5e-3)
+    assert "one-alternative" in {caution.code for caution in found.cautions}

@@ -3,17 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from workbench.errors import InputError, Problem, nearest, quoted
+from workbench.evidence.averaging import likeliest
 from workbench.evidence.odds import compare
 from workbench.evidence.prior_choice.power_scaling import Draws, draws_of, power_scaling
 from workbench.evidence.prior_choice.powers import PowerScaling
 from workbench.evidence.results import Comparison, Evidence
-from workbench.evidence.weigh import Weighed, weigh_hypothesis
+from workbench.evidence.weigh import Weighed, weigh, weigh_hypothesis
+from workbench.hypotheses.alternatives import in_doubt, variants_of
 from workbench.hypotheses.analysis import Analysis
+from workbench.hypotheses.hypothesis import Hypothesis
 from workbench.likelihood.coordinates import coordinates_of
 from workbench.likelihood.model import compile_model
 
@@ -27,8 +30,10 @@ class Case:
     Attributes:
         analysis: everything declared.
         strength: the parameter's name.
-        against, weighed: the two hypotheses.
+        against, weighed: the two hypotheses; where backgrounds have alternatives, under the likeliest.
+        evidences: theirs, the first hypothesis' first; averages over the alternatives where there are some.
         comparison: the second against the first.
+        alternative: the alternative that `against` and `weighed` are under; empty without any.
         seeds: where their random numbers came from.
     """
 
@@ -36,13 +41,10 @@ class Case:
     strength: str
     against: Weighed
     weighed: Weighed
+    evidences: tuple[Evidence, Evidence]
     comparison: Comparison
+    alternative: str
     seeds: tuple[np.random.SeedSequence, np.random.SeedSequence]
-
-    @property
-    def evidences(self) -> tuple[Evidence, Evidence]:
-        """Return both evidences, the first hypothesis' first."""
-        return self.against.evidence, self.weighed.evidence
 
     def doubt(self) -> str:
         """Return why one of the evidences is not established; empty when both are."""
@@ -89,20 +91,46 @@ def weighed_case(
     name, strength = _chosen(analysis, hypothesis, parameter)
     names = [one.name for one in analysis.hypotheses]
     children = np.random.SeedSequence(seed).spawn(len(names))
+    if in_doubt(analysis):
+        return _averaged_case(analysis, name, strength, seed, say)
     found: list[Weighed] = []
     for one, child in ((names[0], children[0]), (name, children[names.index(name)])):
         say(f"weighing {one}")
         near: Mapping[str, float] = found[0].grid.mode if found and found[0].grid is not None else {}
         found.append(weigh_hypothesis(compile_model(analysis, one), child, near=near))
     priors = {one.name: one.prior for one in analysis.hypotheses}
-    comparison = compare(found[1].evidence, found[0].evidence, priors[name] / priors[names[0]])
+    evidences = (found[0].evidence, found[1].evidence)
+    comparison = compare(evidences[1], evidences[0], priors[name] / priors[names[0]])
     seeds = (children[0], children[names.index(name)])
-    return Case(analysis, strength, found[0], found[1], comparison, seeds)
+    return Case(analysis, strength, found[0], found[1], evidences, comparison, "", seeds)
+
+
+def _averaged_case(analysis: Analysis, name: str, strength: str, seed: int, say: Say) -> Case:
+    """Weigh averages over the alternatives of backgrounds; the likeliest alternative stands for its parts."""
+    say("weighing every alternative of the backgrounds")
+    weighing = weigh(analysis, seed=seed)
+    first = analysis.hypotheses[0].name
+    evidences = (weighing.evidence_of(first), weighing.evidence_of(name))
+    variant = likeliest(variants_of(analysis, name), evidences[1])
+    say(f"weighing {name} with {variant.name}")
+    plain = replace(variant.analysis, hypotheses=tuple(_pair(variant.analysis, first, name)))
+    if in_doubt(plain):  # what the first hypothesis alone uses
+        plain = likeliest(variants_of(plain), evidences[0]).analysis
+    case = weighed_case(plain, name, strength, seed, say)
+    comparison = next(one for one in weighing.comparisons if one.hypothesis == name)
+    return replace(
+        case, analysis=analysis, evidences=evidences, comparison=comparison, alternative=variant.name
+    )
+
+
+def _pair(analysis: Analysis, first: str, second: str) -> list[Hypothesis]:
+    return [one for one in analysis.hypotheses if one.name in {first, second}]
 
 
 def strengths_of(analysis: Analysis, hypothesis: str) -> tuple[str, ...]:
     """Return the free strengths of a hypothesis, in declaration order."""
-    return tuple(one.name for one in coordinates_of(analysis, hypothesis) if one.is_strength)
+    plain = variants_of(analysis, hypothesis)[0].analysis
+    return tuple(one.name for one in coordinates_of(plain, hypothesis) if one.is_strength)
 
 
 def _chosen(analysis: Analysis, hypothesis: str | None, parameter: str | None) -> tuple[str, str]:

@@ -39,6 +39,12 @@ def examination_cautions(case: Case, curve: StrengthCurve, local: LocalP | None)
             f"Every number here is averaged over the stated prior of {names}; a narrower or wider one "
             "moves all of them.",
         )
+    if case.alternative:
+        yield Caution(
+            "one-alternative",
+            f"Nuisance priors are raised to powers with {quoted(case.alternative)}, the likeliest alternative "
+            "of the backgrounds; every other number is an average over the alternatives.",
+        )
     if not curve.is_ended:
         yield Caution(
             "unbounded-strength",

@@ -83,7 +83,8 @@ def differs_by(analysis: Analysis, hypothesis: str, against: str, strength: str)
     kept = [name for name in second.processes if name not in added]
     used = set(analysis.parameters_used(against)) | set(first.fix)
     held = {name: value for name, value in second.fix.items() if name in used}
-    return sorted(kept) == sorted(first.processes) and held == dict(first.fix)
+    same_shape = first.distortion == second.distortion
+    return sorted(kept) == sorted(first.processes) and held == dict(first.fix) and same_shape
 
 
 def _is_usable(found: Fit) -> bool:

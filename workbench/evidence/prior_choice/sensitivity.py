@@ -76,7 +76,7 @@ def prior_sensitivity(
     if reason:
         return _refused(case, reason, posterior, seed)
     child = np.random.SeedSequence(seed, spawn_key=(len(analysis.hypotheses),))
-    curve = trace(analysis, case.comparison.hypothesis, case.strength, case.against.evidence, child, say)
+    curve = trace(analysis, case.comparison.hypothesis, case.strength, case.evidences[0], child, say)
     declared = _declared(case, curve)
     reason = curve.doubt() or _disagreement(case, declared.by_curve)
     if reason:

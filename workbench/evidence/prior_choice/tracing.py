@@ -8,9 +8,11 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.averaging import averaged
 from workbench.evidence.prior_choice.curve import FLOOR, StrengthCurve, smooth
-from workbench.evidence.results import Evidence
+from workbench.evidence.results import AlternativeEvidence, Evidence
 from workbench.evidence.weigh import weigh_hypothesis
+from workbench.hypotheses.alternatives import variants_of
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import compile_model
 
@@ -38,7 +40,7 @@ class _Probe:
         seed: where the random numbers of every node come from; the same for all, so that the curve is smooth.
         say: told of each node.
         known: the evidences found, by strength.
-        near: where the last one had its mode.
+        near: where the last one had its mode, by alternative of the backgrounds.
     """
 
     analysis: Analysis
@@ -48,20 +50,28 @@ class _Probe:
     seed: np.random.SeedSequence
     say: Say
     known: dict[float, Evidence] = field(default_factory=dict)
-    near: Mapping[str, float] = field(default_factory=dict)
+    near: dict[str, Mapping[str, float]] = field(default_factory=dict)
 
     def ln_ratio(self, strength: float) -> float:
         """Return ln R [nats]; -inf where the evidence is null."""
         if strength not in self.known:
             self.say(f"strength held at {strength:.3g}")
-            analysis = held_at(self.analysis, self.hypothesis, self.strength, strength)
-            seed = np.random.SeedSequence(self.seed.entropy, spawn_key=self.seed.spawn_key)
-            weighed = weigh_hypothesis(compile_model(analysis, self.hypothesis), seed, near=self.near)
-            self.known[strength] = weighed.evidence
-            if weighed.grid is not None:
-                self.near = weighed.grid.mode
+            self.known[strength] = self._evidence(strength)
         value = self.known[strength].ln_evidence
         return float("-inf") if value is None else value - self.base
+
+    def _evidence(self, strength: float) -> Evidence:
+        """Return the evidence with the strength held, averaged over the alternatives of the backgrounds."""
+        analysis = held_at(self.analysis, self.hypothesis, self.strength, strength)
+        parts = []
+        for place, variant in enumerate(variants_of(analysis, self.hypothesis)):
+            seed = np.random.SeedSequence(self.seed.entropy, spawn_key=(*self.seed.spawn_key, place))
+            model = compile_model(variant.analysis, self.hypothesis)
+            weighed = weigh_hypothesis(model, seed, near=self.near.get(variant.name, {}))
+            if weighed.grid is not None:
+                self.near[variant.name] = weighed.grid.mode
+            parts.append(AlternativeEvidence(variant.name, variant.prior, weighed.evidence))
+        return averaged(self.hypothesis, parts)
 
     def nodes(self) -> tuple[Array, Array]:
         """Return the strengths that have an evidence, ascending, with their ln R."""
@@ -70,10 +80,12 @@ class _Probe:
 
 
 def held_at(analysis: Analysis, hypothesis: str, name: str, value: float) -> Analysis:
-    """Return the analysis with one hypothesis only, a parameter of it held at a number."""
-    declared = analysis.hypothesis(hypothesis)
-    held = replace(declared, fix={**declared.fix, name: value})
-    return replace(analysis, hypotheses=(held,))
+    """Return the analysis with a parameter of one hypothesis held at a number."""
+    hypotheses = tuple(
+        replace(one, fix={**one.fix, name: value}) if one.name == hypothesis else one
+        for one in analysis.hypotheses
+    )
+    return replace(analysis, hypotheses=hypotheses)
 
 
 def trace(
