@@ -22,6 +22,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.counts.table": ("Table",),
     "workbench.ensembles.adequacy": ("adequacy",),
     "workbench.evidence.prior_choice.sensitivity": ("prior_sensitivity",),
+    "workbench.evidence.breaking.break_point": ("break_point",),
     "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
     "workbench.hypotheses.bare": ("analysis_from_table",),

@@ -8,6 +8,7 @@ many times their rms.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
@@ -16,7 +17,8 @@ import numpy.typing as npt
 from numpy.polynomial import legendre
 
 from workbench.errors import InputError, Problem, quoted
-from workbench.likelihood.parts import Sources
+from workbench.hypotheses.jets import Jet
+from workbench.likelihood.parts import Sources, Stem
 
 if TYPE_CHECKING:  # the model asks this module for its distortion
     from workbench.likelihood.model import Model
@@ -71,9 +73,7 @@ def region_functions(model: Model, region: str, terms: int) -> tuple[slice, Arra
     Raises:
         InputError: if fewer bins hold background than there are terms.
     """
-    bins = region_bins(model)[region]
-    nominal = nominal_background(model)[bins]
-    filled = int(np.count_nonzero(nominal > 0.0))
+    bins, filled = region_bins(model)[region], filled_bins(model)[region]
     if filled < terms:
         raise InputError(
             Problem(
@@ -84,7 +84,13 @@ def region_functions(model: Model, region: str, terms: int) -> tuple[slice, Arra
                 f"ask for {filled} terms, or leave the region out" if filled else "leave the region out",
             )
         )
-    return bins, smooth_functions(nominal, terms)
+    return bins, smooth_functions(nominal_background(model)[bins], terms)
+
+
+def filled_bins(model: Model) -> dict[str, int]:
+    """Return region to the number of its bins in which background is expected."""
+    nominal = nominal_background(model)
+    return {region: int(np.count_nonzero(nominal[bins])) for region, bins in region_bins(model).items()}
 
 
 def region_bins(model: Model) -> dict[str, slice]:
@@ -128,6 +134,30 @@ def resized(model: Model, factor: float) -> Model:
             by_bin = replace(by_bin, linear=scale * by_bin.linear)
         parts.append(replace(part, by_bin=by_bin))
     return replace(model, parts=tuple(parts))
+
+
+def held_distortion(model: Model, factors: Array) -> Model:
+    """Return the model with every background multiplied by (bin,) factors, as if that were the truth."""
+    parts = tuple(
+        part
+        if model.analysis.process(part.process).is_signal
+        else replace(
+            part,
+            stem=_multiplied(part.stem, factors[part.bins]),
+            error=None if part.error is None else _multiplied(part.error, factors[part.bins]),
+        )
+        for part in model.parts
+    )
+    return replace(model, parts=parts)
+
+
+def _multiplied(stem: Stem, factors: Array) -> Stem:
+    fixed = None if stem.fixed_core is None else stem.fixed_core * factors
+
+    def core(arguments: Mapping[str, Jet]) -> Jet:
+        return stem.core(arguments) * factors
+
+    return replace(stem, core=core, fixed_core=fixed)
 
 
 def _joined(first: Sources | None, second: Sources) -> Sources:

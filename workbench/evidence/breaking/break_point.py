@@ -1,0 +1,239 @@
+"""The break point of an analysis: how wrong its backgrounds must be, smoothly, to take the evidence away."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.evidence.breaking.question import Question, asked
+from workbench.evidence.breaking.results import Breaking, BreakPoint, Distorted
+from workbench.evidence.breaking.search import Target, nearest
+from workbench.evidence.breaking.trials import Anchor, draws_of
+from workbench.evidence.exact import linear_rates
+from workbench.evidence.weigh import Weighed, weigh_hypothesis
+from workbench.hypotheses.analysis import Analysis
+from workbench.likelihood.distortions import held_distortion, nominal_background
+from workbench.likelihood.model import Model
+
+Array = npt.NDArray[np.float64]
+
+DEFAULT_BELOW = 3.0
+DEFAULT_WITHIN = 0.3
+_PRIOR_DRAWS = 2000
+
+
+@np.errstate(all="ignore")  # an impossible point has ln probability -inf
+def break_point(
+    analysis: Analysis,
+    *,
+    below: float = DEFAULT_BELOW,
+    hypothesis: str | None = None,
+    terms: int | None = None,
+    regions: Sequence[str] | None = None,
+    within: float = DEFAULT_WITHIN,
+    seed: int = 1,
+) -> BreakPoint:
+    """Return the smallest smooth distortion of the backgrounds that brings ln B down to a threshold.
+
+    In each region all backgrounds, under both hypotheses, are multiplied by exp(sum of c_k f_k), with the
+    functions that `Distortion` describes. Looked for is the smallest |c|, which is the rms of the relative
+    distortion over the background's events, with ln B(c) at the threshold; c is held, as if the backgrounds
+    were so, while everything declared keeps its uncertainty. What the declared uncertainties can absorb moves
+    ln B little, so that the answer is a distortion that they can't absorb, and that looks like the signal.
+
+    Args:
+        analysis: everything declared, with observed counts.
+        below: the threshold on ln B [nats]; any finite number.
+        hypothesis: the signal hypothesis; None for the first that has a signal.
+        terms: smooth functions in each region, the level counted; None for those of a distortion that the
+            analysis declares, or 3.
+        regions: the regions to distort; None for those of a declared distortion, or all where the hypothesis
+            has both signal and background.
+        within: the largest rms that is looked at; in (0, 1].
+        seed: where every random number comes from.
+
+    Returns:
+        Size under the peak and over all, with errors, shape, and how they compare with the declared
+        uncertainties; how the search ended where there is none.
+
+    Raises:
+        InputError: if there is no such hypothesis or region, a number is out of its range, the hypothesis has
+            no signal or is the first, or a region has no observed counts.
+
+    Limits:
+        A larger number of terms finds smaller distortions: what is smooth is for the reader to say. The
+        smallest is that of the directions tried: the linear response's, each term's, and the signal's
+        likeness.
+
+    Source:
+        None, definition; the search names its sources.
+    """
+    question = asked(analysis, below, hypothesis, terms, regions, within, seed)
+    origin = _declared_pair(question)
+    first = BreakPoint(
+        hypothesis=question.models[0].hypothesis,
+        against=question.models[1].hypothesis,
+        below=below,
+        within=within,
+        terms=max(len(functions) for _, functions in question.regions.values()),
+        ending=Breaking.NOT_ESTABLISHED if origin.reason else Breaking.BELOW_ALREADY,
+        reason=origin.reason,
+        ln_bayes_factor=None if origin.reason else origin.ln_bayes_factor,
+        ln_bayes_factor_error=None if origin.reason else origin.error,
+    )
+    if origin.reason:
+        return first
+    signal = _mean_signal(question, origin)
+    before, after = _stated(question, origin, signal)
+    first = replace(first, stated_before=before, stated_after=after)
+    if origin.ln_bayes_factor <= below:
+        return first
+    return _searched(question, origin, Target(below, float(np.log1p(within))), signal, first)
+
+
+def _searched(
+    question: Question, origin: Anchor, target: Target, signal: Array, first: BreakPoint
+) -> BreakPoint:
+    """Return what the search found, ln B made afresh there with other random numbers."""
+    made = 0
+
+    def make(coefficients: Array, fresh: bool = False) -> Anchor:
+        nonlocal made
+        made += 1
+        return _pair(question, coefficients, origin, fresh=fresh)
+
+    found = nearest(make, origin, target, _ways(question, signal))
+    last = found if found.reason else make(found.coefficients, fresh=True)
+    if last.reason:
+        return replace(first, ending=Breaking.NOT_ESTABLISHED, reason=last.reason, evidences=1 + made)
+    ended = replace(
+        first,
+        ending=Breaking.FOUND if target.is_met(found) else Breaking.NOT_WITHIN,
+        reached=last.ln_bayes_factor,
+        reached_error=last.error,
+        distorted=_distorted(question, last.coefficients, signal),
+        evidences=1 + made,
+    )
+    return _measured(ended, found, last) if ended.ending is Breaking.FOUND else ended
+
+
+def _measured(ended: BreakPoint, found: Anchor, last: Anchor) -> BreakPoint:
+    """Return the answer with its sizes and their errors.
+
+    A threshold that ln B misses by its error moves the distortion along its own direction by error/slope.
+    """
+    size = float(np.linalg.norm(last.coefficients))
+    steepness = abs(float(last.trial(last.coefficients).slope @ last.coefficients)) / size
+    share = float(np.hypot(last.error, found.ln_bayes_factor - ended.below)) / steepness / size
+    rms, under = _rms(ended.distorted), _under_peak(ended.distorted)
+    measured = replace(ended, under_peak=under, rms=rms)
+    return replace(measured, under_peak_error=abs(under) * share, rms_error=rms * share)
+
+
+def _pair(question: Question, coefficients: Array, near: Anchor, *, fresh: bool = False) -> Anchor:
+    """Return the pair of evidences under a distortion, from the same random numbers unless fresh ones."""
+    factors = question.factors(coefficients)
+    made = []
+    for model, seed, before in zip(question.models, question.seeds, near.pair, strict=True):
+        key = (*seed.spawn_key, 1) if fresh else seed.spawn_key
+        child = np.random.SeedSequence(seed.entropy, spawn_key=key)
+        made.append(_weighed(held_distortion(model, factors), child, before))
+    return _anchor(question, coefficients, (made[0], made[1]))
+
+
+def _declared_pair(question: Question) -> Anchor:
+    """Return the pair of evidences without a distortion, as `weigh` makes them."""
+    signal, against = question.models
+    first = _weighed(against, question.seeds[1])
+    second = _weighed(signal, question.seeds[0], first)
+    return _anchor(question, np.zeros(len(question.functions)), (second, first))
+
+
+def _weighed(model: Model, seed: np.random.SeedSequence, before: Weighed | None = None) -> Weighed:
+    """Return a hypothesis' evidence with draws, the evidence itself in closed form where that holds."""
+    near = before.grid.mode if before is not None and before.grid is not None else {}
+    drawn = weigh_hypothesis(model, seed, closed_forms=False, near=near)
+    if model.size == 0 or linear_rates(model) is None:
+        return drawn
+    return replace(drawn, evidence=weigh_hypothesis(model, seed, near=near).evidence)
+
+
+def _anchor(question: Question, coefficients: Array, pair: tuple[Weighed, Weighed]) -> Anchor:
+    functions, bins = question.functions, question.bins
+    if not all(one.evidence.established and (one.sample or not one.model.size) for one in pair):
+        return Anchor(coefficients, functions, pair, ())
+    factors = np.exp(coefficients @ functions)
+    draws = tuple(
+        draws_of(one, model, bins, factors) for one, model in zip(pair, question.models, strict=True)
+    )
+    return Anchor(coefficients, functions, pair, draws)
+
+
+def _mean_signal(question: Question, origin: Anchor) -> Array:
+    """Return (bin,) expected signal in the distorted bins, averaged over the posterior; spare events off."""
+    draws = origin.draws[0]
+    spare = question.models[0].spare[question.bins]
+    weights = np.exp(draws.ln_weights - draws.ln_weights.max())
+    return np.asarray(weights @ (draws.signal - spare) / weights.sum())
+
+
+def _stated(question: Question, origin: Anchor, signal: Array) -> tuple[float, float]:
+    """Return one relative sd of the background under the peak, before and after the counts.
+
+    Before: half of the central 68.27 % of draws from the priors, so that a heavy tail does not decide it.
+    """
+    model = question.models[1]
+    points = np.random.default_rng(question.seeds[1].entropy).standard_normal((_PRIOR_DRAWS, model.size))
+    backgrounds = model.restricted("background", spare=False)
+    drawn = backgrounds.expected(backgrounds.seeds(points))[0][:, question.bins] @ signal
+    nominal = float(nominal_background(model)[question.bins] @ signal)
+    low, high = np.quantile(drawn / nominal, [0.15865, 0.84135])
+    draws = origin.draws[1]
+    weights = np.exp(draws.ln_weights - draws.ln_weights.max())
+    weights /= weights.sum()
+    under = draws.background @ signal / nominal
+    variance = float(weights @ (under - weights @ under) ** 2)
+    return 0.5 * float(high - low), float(np.sqrt(variance))
+
+
+def _ways(question: Question, signal: Array) -> Array:
+    """Return (way, term) unit vectors: the family's likeness of the signal, and each term, up and down."""
+    functions = question.functions
+    likeness = functions @ signal
+    ways = [likeness, *np.eye(len(functions))]
+    lengths = [float(np.linalg.norm(way)) for way in ways]
+    unit = np.array([way / length for way, length in zip(ways, lengths, strict=True) if length > 0.0])
+    return np.concatenate([unit, -unit])
+
+
+def _distorted(question: Question, coefficients: Array, signal: Array) -> tuple[Distorted, ...]:
+    found = []
+    row = column = 0
+    nominal = nominal_background(question.models[1])
+    for name, (bins, functions) in question.regions.items():
+        terms, number = functions.shape
+        own = coefficients[row : row + terms]
+        found.append(
+            Distorted(
+                name,
+                tuple(float(one) for one in own),
+                np.expm1(own @ functions),
+                nominal[bins],
+                signal[column : column + number],
+            )
+        )
+        row, column = row + terms, column + number
+    return tuple(found)
+
+
+def _under_peak(distorted: Sequence[Distorted]) -> float:
+    changed = sum(float((one.signal * one.background) @ one.change) for one in distorted)
+    return changed / sum(float(one.signal @ one.background) for one in distorted)
+
+
+def _rms(distorted: Sequence[Distorted]) -> float:
+    squares = [float(one.background @ one.change**2 / one.background.sum()) for one in distorted]
+    return float(np.sqrt(sum(squares)))
