@@ -17,6 +17,7 @@ from workbench.evidence.mis_modelling import mis_modelling_cautions
 from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
+from workbench.evidence.other_maxima import share_unreached
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
@@ -249,6 +250,9 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
     limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
     if not gap <= limit:
         return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
+    unreached = share_unreached(grid, drawn.ln_evidence)
+    if unreached:
+        return f"another maximum that draws hardly reach holds {unreached:.1%} of the evidence"
     return ""
 
 
