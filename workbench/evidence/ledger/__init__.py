@@ -1,0 +1,1 @@
+"""The ledger: what carries the evidence, by bin, by region and by uncertainty."""
