@@ -77,6 +77,12 @@ class Columns:
         coarse = 2.0 * heights[:, ::2].sum(axis=1) / heights.sum(axis=1) - 1.0
         return np.asarray(coarse**2 + np.maximum(heights[:, 0], heights[:, -1]))
 
+    @property
+    def is_cut(self) -> bool:
+        """Tell whether the highest node stands at an end of its column, so that there is more beyond."""
+        last = self.inner.shape[1] - 1
+        return last > 0 and int(np.argmax(self.ln_height)) % (last + 1) in {0, last}
+
     def take(self, order: Indices) -> Columns:
         """Return some columns, in the given order."""
         return Columns(

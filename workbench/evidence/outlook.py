@@ -14,6 +14,7 @@ Indices = npt.NDArray[np.intp]
 
 DEEP = 6.0  # nats below its top at which a column may end
 _EDGE = 8.3
+_FARTHEST = 34.0  # a standard coordinate is a number up to 38
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -53,6 +54,8 @@ class Outlook:
         information is right: a Poisson probability falls less steeply above its top than a parabola.
         """
         low, high = (float(end) for end in self.prior.quantile(np.array([1e-8, 1.0 - 1e-8])))
+        if np.isinf(self.prior.support[1]):  # counts may ask for more than the prior had ever expected
+            high = float(self.prior.from_standard(_FARTHEST)[0])
         centre = self.prior.to_standard(np.clip(self.best, low, high))
         slope = np.maximum(self.prior.from_standard(centre)[1], 1e-12)
         width = np.clip(1.0 / (np.sqrt(self.information) * slope), 1e-9, 1.0)

@@ -250,6 +250,15 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
     limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
     if not gap <= limit:
         return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
+    return _overlooked(grid, drawn)
+
+
+def _overlooked(grid: Grid, drawn: Sample) -> str:
+    """Return what both estimators may have left out although they agree; empty where there is nothing."""
+    if grid.columns.is_cut:
+        return (
+            "counts and the strength's prior are too far apart: the integrand still rises where numbers end"
+        )
     unreached = share_unreached(grid, drawn.ln_evidence)
     if unreached:
         return f"another maximum that draws hardly reach holds {unreached:.1%} of the evidence"
