@@ -24,6 +24,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.evidence.prior_choice.sensitivity": ("prior_sensitivity",),
     "workbench.evidence.breaking.break_point": ("break_point",),
     "workbench.evidence.ledger.ledger": ("ledger",),
+    "workbench.evidence.backgrounds": ("backgrounds",),
     "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
     "workbench.hypotheses.bare": ("analysis_from_table",),

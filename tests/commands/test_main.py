@@ -36,7 +36,7 @@ def ending_with(monkeypatch: pytest.MonkeyPatch, error: BaseException) -> None:
     [
         ([], "nothing after the program's name", "oddsbench weigh FILE, or oddsbench --help"),
         (["wiegh", "a.toml"], '"wiegh"', 'write "weigh"'),
-        (["--jsn"], '"--jsn"', "use one of: check, fit, weigh"),
+        (["--jsn"], '"--jsn"', f"use one of: {', '.join(sorted(COMMANDS))}"),
         (["weigh"], "no FILE", "oddsbench weigh FILE, or --help"),
         (["weigh", "a.toml", "--jsn"], '"--jsn"', 'write "--json"'),
         (["weigh", "a.toml", "--sed=3"], '"--sed"', 'write "--seed"'),

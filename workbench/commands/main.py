@@ -25,6 +25,10 @@ COMMANDS = {
         "what an input says, what its priors predict, whether anything fits",
     ),
     "fit": ("workbench.commands.fit", "maximum likelihood of each hypothesis, with errors and pulls"),
+    "backgrounds": (
+        "workbench.commands.backgrounds",
+        "alternatives of the backgrounds: their evidences, and the signal that each would fake",
+    ),
 }
 
 ABOUT = """\
@@ -106,7 +110,7 @@ def _about(flag: str) -> int:
 
         print_text(f"oddsbench {__version__}\n", sys.stdout)
         return DONE
-    commands = "\n".join(f"  {name:<8}{summary}" for name, (_, summary) in COMMANDS.items())
+    commands = "\n".join(f"  {name:<13}{summary}" for name, (_, summary) in COMMANDS.items())
     print_text(ABOUT.format(commands=commands), sys.stdout)
     return DONE
 

@@ -5,10 +5,11 @@ from __future__ import annotations
 import io
 from typing import TYPE_CHECKING
 
+from workbench.plots.backgrounds import draw_backgrounds, inches_for
 from workbench.plots.counts import draw_counts
 from workbench.plots.odds import draw_odds
 from workbench.plots.palette import LIGHT, Palette
-from workbench.records.outcomes import WeighOutcome
+from workbench.records.outcomes import BackgroundsOutcome, WeighOutcome
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -38,6 +39,20 @@ def weighing_page(outcome: WeighOutcome, palette: Palette = LIGHT) -> Figure:
         draw_odds(axes, comparison, outcome.adequacies, weighing.evidences, palette, place)
     for place, region in enumerate(regions, start=len(comparisons)):
         draw_counts(parts[place], outcome.analysis, region.name, outcome.fits, palette)
+    return page
+
+
+def backgrounds_page(outcome: BackgroundsOutcome, palette: Palette = LIGHT) -> Figure:
+    """Return a figure with the alternatives of the backgrounds.
+
+    Args:
+        outcome: what `backgrounds` found.
+        palette: the theme's colours.
+    """
+    from matplotlib.figure import Figure
+
+    page = Figure(figsize=(WIDTH, inches_for(outcome.found)), facecolor=palette.paper)
+    draw_backgrounds(page, outcome.found, palette)
     return page
 
 

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from workbench.ensembles.predictive import PriorPredictive
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
+from workbench.evidence.backgrounds import Backgrounds
 from workbench.evidence.results import Comparison, Weighing
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Fit
@@ -65,6 +66,20 @@ class FitOutcome:
     analysis: Analysis
     origin: Origin
     fits: tuple[Fit, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class BackgroundsOutcome:
+    """What `backgrounds` found."""
+
+    analysis: Analysis
+    origin: Origin
+    found: Backgrounds
+
+    @property
+    def cautions(self) -> tuple[Caution, ...]:
+        """Return what reading and comparing warned of, each once."""
+        return tuple(dict.fromkeys((*self.analysis.cautions, *self.found.cautions)))
 
 
 def spread_of_ln_bayes_factor(comparison: Comparison) -> tuple[float, float] | None:

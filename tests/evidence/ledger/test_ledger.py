@@ -48,9 +48,7 @@ def test_one_bin_decides_when_the_odds_turn_or_most_of_the_weight_goes() -> None
     assert not decides(account(2.0, 0.9), part(0.9))
     assert decides(account(-2.0, -1.1), part(-1.1))
     assert not decides(account(2.0, -3.0), part(-3.0))  # without it, more of the same
-    assert decides(
-        account(4.0, 1.5, prior_odds=0.05), part(1.5)
-    )  # odds of 2.7 : 1 turn into 1 : 1.6
+    assert decides(account(4.0, 1.5, prior_odds=0.05), part(1.5))  # odds of 2.7 : 1 turn into 1 : 1.6
     assert not decides(account(0.5, 0.4), part(0.4))  # nothing to decide
     assert not decides(account(2.0, None), part(None))
 
