@@ -9,7 +9,7 @@ import numpy.typing as npt
 import pytest
 from scipy import special
 
-from workbench.evidence.bending import Bending, bending, following
+from workbench.evidence.bending import Bending, bending, following, partial_bending
 
 Array = npt.NDArray[np.float64]
 
@@ -70,6 +70,25 @@ def test_derivatives_of_a_polynomial_of_fourth_degree_are_exact() -> None:
     assert found.third == pytest.approx(mixed, abs=1e-7)
     expected = 2.0 * fourth + 4.0 * np.diag(np.diag(fourth))
     assert found.fourth == pytest.approx(expected[np.ix_(place, place)], abs=1e-7)
+
+
+def test_gradients_give_the_same_third_derivatives_as_hessians() -> None:
+    """Rates in mixed-up log coordinates, of which every pair is looked at."""
+    shapes, mixing = np.array([15.0, 40.0, 100.0]), STRETCH @ TURN
+    hessians_at, hessian, *_ = log_gammas(shapes, mixing)
+    back = np.linalg.inv(mixing)
+
+    def gradients_at(offsets: Array) -> Array:
+        return np.asarray((shapes - shapes * np.exp(offsets @ back.T)) @ back)
+
+    whole, part = bending(hessians_at, hessian), partial_bending(gradients_at, hessian)
+    size = np.abs(whole.third).max()
+    assert part.axes == pytest.approx(whole.axes)
+    assert part.third == pytest.approx(whole.third, abs=0.05 * size)
+    assert part.third != pytest.approx(0.8 * whole.third, abs=0.05 * size)
+    assert np.diag(part.fourth) == pytest.approx(np.diag(whole.fourth), abs=0.1 * np.abs(whole.fourth).max())
+    assert part.ln_correction == 0.0
+    assert part.doubt > 0.0
 
 
 def test_whitened_axes_make_the_hessian_minus_one() -> None:

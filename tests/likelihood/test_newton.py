@@ -66,6 +66,18 @@ def test_a_parabola_takes_one_step() -> None:
     assert found.converged.all()
 
 
+def test_going_on_takes_the_last_promised_step_without_a_look() -> None:
+    """On a parabola the promise is kept: the step ends at the maximum."""
+    bowl = Bowl(M, np.array([0.5, -0.5]), -FREE, FREE)
+    start = np.array([[0.0, 0.0]])
+    there = maximise(bowl, start, NO_COUNTS, tolerance=1.0)
+    beyond = maximise(bowl, start, NO_COUNTS, tolerance=1.0, go_on=True)
+    np.testing.assert_array_equal(there.points, start)
+    np.testing.assert_allclose(beyond.points, bowl.centre[None], atol=1e-12)
+    assert beyond.evaluations == 1
+    np.testing.assert_allclose(beyond.values + beyond.gains, [0.0], atol=1e-12)
+
+
 def test_a_maximum_outside_the_box_is_met_at_its_edge() -> None:
     """By hand: at x = 1 the best y is where 0.9 (1 - 3) + (y - 0) = 0, so 1.8."""
     bowl = Bowl(M, np.array([3.0, 0.0]), np.array([-1.0, -9.0]), np.array([1.0, 9.0]))

@@ -11,7 +11,7 @@ the bulk and not the point.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -25,6 +25,7 @@ _STEP = 1.5
 _NEGLIGIBLE = 0.02
 _BEYOND = 0.55
 _LARGEST_LOG_SCALE = 0.7
+_MOST_BENT = 12  # directions of which all pairs are looked at
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -37,12 +38,15 @@ class Bending:
         third: (nuisance, nuisance, nuisance) K_abc.
         fourth: (nuisance, nuisance) K_aabb.
         ridge: nodes along the first direction, where third derivatives do not describe it; else None.
+        is_partial: True where most derivatives of three different directions, and the mixed fourth ones, are
+            not known and left at 0.
     """
 
     axes: Array
     third: Array
     fourth: Array
     ridge: Ridge | None = None
+    is_partial: bool = False
 
     @property
     def outward(self) -> Array:
@@ -67,7 +71,8 @@ class Bending:
         """Return the same with one direction moved to the front."""
         order = np.array([direction, *(i for i in range(len(self.axes)) if i != direction)])
         third = self.third[np.ix_(order, order, order)]
-        return Bending(self.axes[order], third, self.fourth[np.ix_(order, order)], self.ridge)
+        fourth = self.fourth[np.ix_(order, order)]
+        return replace(self, axes=self.axes[order], third=third, fourth=fourth)
 
     @property
     def ln_correction(self) -> float:
@@ -80,12 +85,17 @@ class Bending:
             (1995) 749; from memory. In one dimension K_4/8 + 5 K_3^2/24.
         """
         along = 0.0 if self.ridge is None else self.ridge.ln_correction
-        return along + float(sum(self._terms))
+        return along if self.is_partial else along + float(sum(self._terms))
 
     @property
     def doubt(self) -> float:
-        """Return what later orders may add: a third of the size of this one, more once it is large."""
+        """Return what later orders may add: a third of the size of this one, more once it is large.
+
+        Where this one is not known in full, its parts mostly cancel, and Laplace stands without.
+        """
         size = sum(abs(term) for term in self._terms)
+        if self.is_partial:
+            return 0.3 * size
         along = 0.0 if self.ridge is None else self.ridge.error
         return along + float(size * (0.3 + 0.5 * min(1.0, size)))
 
@@ -126,6 +136,52 @@ def bending(hessians_at: Callable[[Array], Array], hessian: Array) -> Bending:
     bend = np.einsum("caa->ca", up + down) + 2.0
     fourth = bend / _STEP**2
     return Bending((vectors * np.sqrt(values)).T, third, 0.5 * (fourth + fourth.T))
+
+
+def partial_bending(gradients_at: Callable[[Array], Array], hessian: Array) -> Bending:
+    """Return as much of the departure at a maximum as gradients tell, for when Hessians cost too much.
+
+    Second differences of gradients along a direction j are K_jjk for all k. Among the directions that bend
+    most, differences along their sums give K_abk too:
+
+        K_(a+b)(a+b)k = K_aak + K_bbk + 2 K_abk
+
+    Args:
+        gradients_at: (point, nuisance) offsets from the maximum to (point, nuisance) gradients there.
+        hessian: (nuisance, nuisance) Hessian at the maximum; negative definite.
+
+    Returns:
+        What is known of the third and fourth derivatives in whitened coordinates.
+
+    Source:
+        None, definition; central differences of exact gradients.
+    """
+    values, vectors = np.linalg.eigh(-hessian)
+    size = len(values)
+    outward = vectors / np.sqrt(values)
+
+    def differences(directions: Array) -> tuple[Array, Array]:
+        offsets = _STEP * directions @ outward.T
+        around = gradients_at(np.concatenate([offsets, -offsets])) @ outward
+        up, down = around[: len(directions)], around[len(directions) :]
+        return (up + down) / _STEP**2, (up - down) / (2.0 * _STEP)
+
+    squares, slopes = differences(np.eye(size))
+    third = np.zeros((size, size, size))
+    each = np.arange(size)
+    third[each, each, :] = third[each, :, each] = squares
+    third[:, each, each] = squares.T
+    fourth = np.diag(6.0 / _STEP**2 * (np.diag(slopes) + 1.0))
+    bends = np.sqrt((squares**2).sum(axis=0) + (squares**2).sum(axis=1))
+    chosen = np.argsort(bends)[::-1][:_MOST_BENT]
+    a, b = (index[np.triu_indices(chosen.size, 1)] for index in np.meshgrid(chosen, chosen, indexing="ij"))
+    pairs = np.zeros((a.size, size))
+    pairs[np.arange(a.size), a] = pairs[np.arange(a.size), b] = 1.0
+    mixed = 0.5 * (differences(pairs)[0] - squares[a] - squares[b])
+    for one, other in ((a, b), (b, a)):
+        third[one, other, :] = third[one, :, other] = mixed
+        third[:, one, other] = mixed.T
+    return Bending((vectors * np.sqrt(values)).T, third, fourth, is_partial=True)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -179,11 +235,12 @@ class TriangularMap:
 
     def _conditional(self, y: Array, k: int) -> tuple[Array | float, Array | float]:
         """Return the mean and ln scale of coordinate k given those before it."""
-        if k == 0 or not self.third[k, :k, : k + 1].any():
+        relevant = np.flatnonzero(self.third[k, :k, : k + 1].any(axis=1))
+        if relevant.size == 0:
             return 0.0, 0.0
-        before = y[:, :k]
-        mean = 0.5 * ((before @ self.third[k, :k, :k]) * before).sum(axis=1)
-        ln_scale = 0.5 * (before @ self.third[k, k, :k])
+        before = y[:, relevant]
+        mean = 0.5 * ((before @ self.third[k, relevant[:, None], relevant]) * before).sum(axis=1)
+        ln_scale = 0.5 * (before @ self.third[k, k, relevant])
         return mean, np.clip(ln_scale, -_LARGEST_LOG_SCALE, _LARGEST_LOG_SCALE)
 
 

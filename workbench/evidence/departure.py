@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.bending import Bending, bending
+from workbench.evidence.bending import Bending, bending, partial_bending
 from workbench.evidence.nodes import Columns, Integrand
 from workbench.evidence.ridge import Turned, follow
 
@@ -19,6 +19,7 @@ Array = npt.NDArray[np.float64]
 
 _EVERY = 2
 _SHARE = 0.01
+_MOST_WITH_HESSIANS = 40
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -75,14 +76,22 @@ def _bending(
     block = np.ix_(nuisance, nuisance)
     objective = integrand.objective
 
-    def hessians_at(offsets: Array) -> Array:
+    def placed(offsets: Array) -> Array:
         points = np.repeat(centre[None], len(offsets), axis=0)
         points[:, nuisance] += offsets
-        return objective.derivatives(points, integrand.counts)[2][:, block[0], block[1]]
+        return points
+
+    def hessians_at(offsets: Array) -> Array:
+        return objective.derivatives(placed(offsets), integrand.counts)[2][:, block[0], block[1]]
+
+    def gradients_at(offsets: Array) -> Array:
+        return objective.gradient(placed(offsets), integrand.counts)[:, nuisance]
 
     hessian = columns.hessians[column, inner]
     if np.linalg.eigvalsh(-hessian).min() <= 0.0:
         return None
+    if nuisance.size > _MOST_WITH_HESSIANS:
+        return partial_bending(gradients_at, hessian)
     bend = bending(hessians_at, hessian)
     if not (along_ridge or bend.is_beyond_third_order):
         return bend

@@ -22,7 +22,7 @@ _DEEP = 14.0
 _FAR = 40.0
 _ROUNDS = 8
 _TOLERANCE = 1e-4
-_LARGEST = 24
+MOST_FOLLOWED = 24  # nuisance coordinates, of which the others are maximised along a ridge
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -132,7 +132,7 @@ def follow(turned: Turned, counts: Array, curve: Array) -> Ridge | None:
         Nodes that reach down by 14 nats on both sides.
     """
     size = turned.nuisance.size
-    if size > _LARGEST:
+    if size > MOST_FOLLOWED:
         return None
     low, high = -6.0, 6.0
     moving = np.ones(size, dtype=bool)

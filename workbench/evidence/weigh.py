@@ -21,7 +21,8 @@ from workbench.evidence.other_maxima import share_unreached
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
-from workbench.evidence.sampling import Sample, sample
+from workbench.evidence.ridge import MOST_FOLLOWED
+from workbench.evidence.sampling import Sample, sampled
 from workbench.evidence.sensitivity import sensitivities
 from workbench.hypotheses.alternatives import in_doubt
 from workbench.hypotheses.analysis import Analysis
@@ -30,10 +31,7 @@ from workbench.likelihood.model import Model, compile_model, never_filled
 Array = npt.NDArray[np.float64]
 
 LARGEST_ERROR = 0.1
-_WANTED_ERROR = 0.005
 _NOWHERE: Mapping[str, float] = {}
-_FIRST_DRAWS = 128
-_MOST_DRAWS = 2048
 # The spread of weights tells their error where four moments are finite: k below 1/4; k-hat is noisy itself.
 _EVEN_ENOUGH = 0.3
 
@@ -181,30 +179,19 @@ def _unmanageable(model: Model, what: str) -> Weighed:
 
 def _estimated(model: Model, grid: Grid, seed: np.random.SeedSequence, near: Mapping[str, float]) -> Weighed:
     """Return the two estimators' answer, made once more along a ridge where that helps."""
-    drawn = _sampled(grid, seed)
+    drawn = sampled(grid, seed)
     first = Weighed(model, _agreed(model, grid, drawn), grid, drawn)
     has_ridge = grid.bending is None or grid.bending.ridge is not None
-    is_hopeless = not drawn.k_hat < np.inf
+    is_hopeless = not drawn.k_hat < np.inf or grid.integrand.nuisance.size > MOST_FOLLOWED
     if has_ridge or is_hopeless or (first.evidence.established and drawn.k_hat < _EVEN_ENOUGH):
         return first
     again = integrate(model, grid.integrand.counts, near, along_ridge=True)
     if again is None:
         return first
-    redrawn = _sampled(again, seed)
+    redrawn = sampled(again, seed)
     second = Weighed(model, _agreed(model, again, redrawn), again, redrawn)
     is_better = redrawn.k_hat < drawn.k_hat or not first.evidence.established
     return second if second.evidence.established and is_better else first
-
-
-def _sampled(grid: Grid, seed: np.random.SeedSequence) -> Sample:
-    """Return the sampling pass, doubled until its error is small."""
-    draws = _FIRST_DRAWS
-    drawn = sample(grid, seed, draws)
-    while draws < _MOST_DRAWS and drawn.error > _WANTED_ERROR:
-        more = np.random.SeedSequence(seed.entropy, spawn_key=(*seed.spawn_key, draws))
-        drawn = sample(grid, more, draws, drawn)
-        draws *= 2
-    return drawn
 
 
 def _exactly(model: Model, value: float) -> Evidence:

@@ -63,6 +63,13 @@ class Model:
         return any(part.error is not None for part in self.parts) or bool(self.spare.any())
 
     @cached_property
+    def effort(self) -> int:
+        """Return how many products one point takes: bins, and bins times sources that act by bin."""
+        widths = [part.bins.stop - part.bins.start for part in self.parts]
+        sources = [0 if part.by_bin is None else part.by_bin.indices.size for part in self.parts]
+        return sum(width * (1 + number) for width, number in zip(widths, sources, strict=True))
+
+    @cached_property
     def names(self) -> tuple[str, ...]:
         """Return the coordinates' names in order."""
         return tuple(coordinate.name for coordinate in self.coordinates)

@@ -10,11 +10,13 @@ import numpy.typing as npt
 
 from workbench.hypotheses.quantities import parameters_of
 from workbench.hypotheses.shapes.family import AnalyticShape
+from workbench.likelihood.gradients import gradient
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
-_CHUNK = 1_200_000
+_CHUNK = 1_200_000  # numbers at once where derivatives are made
+_VALUES = 400_000  # and where they are not: arrays that fit a core's cache
 _SHORT_OF_AN_END = 1e-6  # in prior standard deviations
 
 
@@ -76,6 +78,15 @@ class StandardObjective:
         diagonal = np.arange(self.model.size)
         hessian[:, diagonal, diagonal] -= 1.0
         return value - _half_square(points), gradient - points, hessian
+
+    def gradient(self, points: Array, counts: Array) -> Array:
+        """Return the (batch, coordinate) gradient of the ln integrand."""
+        rows = rows_at_once(self.model) if self.model.has_template_errors else values_at_once(self.model)
+        found = [
+            gradient(self.model, self.model.seeds(points[first : first + rows], self.still), counts)
+            for first in range(0, len(points), rows)
+        ]
+        return np.concatenate(found) - points
 
 
 def _half_square(points: Array) -> Array:
@@ -162,4 +173,4 @@ def rows_at_once(model: Model) -> int:
 
 def values_at_once(model: Model) -> int:
     """Return how many points to evaluate together where no derivatives are made."""
-    return max(1, 4 * _CHUNK // max(1, model.bins))
+    return max(1, _VALUES // max(1, model.bins))

@@ -98,6 +98,13 @@ class Sources:
         slopes = self.linear + first.T[:, :, None] * self.bend
         return factors, slopes, second.T[:, :, None] * self.bend
 
+    def pulls(self, x: Array, weighted: Array) -> Array:
+        """Return (batch, source) sums over rows of (batch, row) weights times slopes of the ln factors."""
+        pulled = weighted @ self.linear.T
+        if self.is_bent:
+            pulled = pulled + curvature(x[self.indices]).first.T * (weighted @ self.bend.T)
+        return np.asarray(pulled)
+
 
 def _power(exponent: Array) -> Array:
     """Return e to the power, held at a huge number whose square, times a count, is still finite."""
