@@ -25,6 +25,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.evidence.breaking.break_point": ("break_point",),
     "workbench.evidence.ledger.ledger": ("ledger",),
     "workbench.evidence.backgrounds": ("backgrounds",),
+    "workbench.evidence.updating_ratio": ("scan",),
     "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
     "workbench.hypotheses.bare": ("analysis_from_table",),

@@ -1,0 +1,211 @@
+"""The updating ratio averaged over priors: over some of its parameters, or over all, which is a Bayes factor.
+
+Cells between which a prior's probability is exact stand where R changes or the prior does; R counts with its
+value in the middle of each.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import numpy.typing as npt
+from scipy import special
+
+from workbench.evidence.ratio.panels import Panels
+from workbench.evidence.ratio.strengths import Strengths, between
+from workbench.evidence.ratio.surface import Surface
+from workbench.hypotheses.priors import Fixed, Prior
+
+Array = npt.NDArray[np.float64]
+
+OUTSIDE = 1e-4  # of a prior's probability may lie outside a range
+_TAIL = 1e-6
+_STEPS = 3  # between strength nodes
+_QUANTILES = 48  # of a strength's prior
+_PANEL_CELLS = 18
+_PRIOR_CELLS = 256
+_PEAK_CELLS = 96
+_KEPT_NODES = 61
+
+
+def outside(prior: Prior, low: float, high: float) -> float:
+    """Return the probability of a prior outside a range.
+
+    Args:
+        prior: a prior.
+        low: lower end of the range.
+        high: upper end.
+    """
+    if isinstance(prior, Fixed):
+        return float(not low <= prior.value <= high)
+    t = prior.to_standard(np.array([low, high]))
+    return float(special.ndtr(t[0]) + special.ndtr(-t[1]))
+
+
+def averaged_over_strength(surface: Surface, strengths: Strengths, prior: Prior) -> tuple[Array, Array]:
+    """Return (column,) ln of R averaged over the last strength, and its error [nats].
+
+    Args:
+        surface: ln R.
+        strengths: its strength nodes.
+        prior: a prior that does not reach outside its range.
+    """
+    if isinstance(prior, Fixed):
+        place = strengths.place(np.full((len(surface.ln_ratio), 1), prior.value))
+        return between(surface.ln_ratio, place)[:, 0], between(surface.error, place, 2)[:, 0]
+    low, high = _inside(prior.support, (strengths.low, strengths.high))
+    quantiles = prior.quantile(_levels(_QUANTILES))
+    own = strengths.refined(_STEPS)
+    both = np.concatenate([own, np.broadcast_to(quantiles, (len(own), quantiles.size))], axis=1)
+    walls = np.sort(np.clip(both, low, high), axis=1)
+    walls[:, 0], walls[:, -1] = low, high
+    middle = 0.5 * (walls[:, 1:] + walls[:, :-1])
+    place = strengths.place(middle)
+    heights = between(surface.ln_ratio, place, 4) + ln_masses(prior, quantiles, walls)
+    top = heights.max(axis=1, keepdims=True)
+    weights = np.exp(heights - top)
+    total = weights.sum(axis=1)
+    errors = (weights * between(surface.error, place, 2)).sum(axis=1) / total
+    return top[:, 0] + np.log(total), errors
+
+
+def _inside(ends: tuple[float, float], limits: tuple[float, float]) -> tuple[float, float]:
+    low, high = (min(max(end, limits[0]), limits[1]) for end in ends)
+    return low, high
+
+
+def ln_masses(prior: Prior, quantiles: Array, walls: Array) -> Array:
+    """Return (column, cell) ln probabilities between walls, adding up to 1 in each column.
+
+    Between neighbouring quantiles the probability is known; cells there share it by density times width.
+
+    Args:
+        prior: a prior.
+        quantiles: (level,) values that the levels of `_levels` of it lie below.
+        walls: (column, cell + 1) ascending, the quantiles among them.
+    """
+    width = np.diff(walls, axis=1)
+    middle = 0.5 * (walls[:, 1:] + walls[:, :-1])
+    with np.errstate(all="ignore"):
+        share = np.where(width > 0.0, np.exp(prior.ln_density(middle)) * width, 0.0)
+        known = np.diff(_levels(quantiles.size), prepend=0.0, append=1.0)
+        group = np.searchsorted(quantiles, middle) + known.size * np.arange(len(walls))[:, None]
+        whole = np.bincount(group.ravel(), share.ravel(), minlength=known.size * len(walls))
+        mass = share * (np.tile(known, len(walls)) / whole)[group]
+        mass = np.nan_to_num(mass, nan=0.0, posinf=0.0)
+        return np.asarray(np.log(np.maximum(mass / mass.sum(axis=1, keepdims=True), 1e-300)))
+
+
+def _levels(number: int) -> Array:
+    """Return (level,) probabilities, evenly spaced but for a millionth at both ends."""
+    return np.linspace(_TAIL, 1.0 - _TAIL, number)
+
+
+def averaged_along(panels: Panels, values: Array, errors: Array, prior: Prior) -> tuple[Array, Array]:
+    """Return ln R averaged over one parameter, and its error.
+
+    Args:
+        panels: nodes along it.
+        values: (node, ...) ln R [nats].
+        errors: (node, ...) its error [nats].
+        prior: a prior that does not reach outside the panels.
+
+    Returns:
+        (...) ln of the average, and its error [nats].
+    """
+    if isinstance(prior, Fixed):
+        x = np.array([prior.value])
+        return panels.between(values, x)[0], _linear(panels, errors, x)[0]
+    quantiles = prior.quantile(_levels(_PRIOR_CELLS + 1))
+    walls = _walls(panels, values, prior, quantiles)
+    x = 0.5 * (walls[1:] + walls[:-1])
+    masses = ln_masses(prior, quantiles, walls[None])[0]
+    heights = panels.between(values, x) + masses.reshape(-1, *(1,) * (values.ndim - 1))
+    top = heights.max(axis=0)
+    weights = np.exp(heights - top)
+    total = weights.sum(axis=0)
+    return top + np.log(total), (weights * _linear(panels, errors, x)).sum(axis=0) / total
+
+
+def _walls(panels: Panels, values: Array, prior: Prior, quantiles: Array) -> Array:
+    """Return (cell + 1,) ascending walls: close in every panel, over the prior, and closest where R peaks."""
+    low, high = _inside(prior.support, panels.range)
+    steps = np.arange(_PANEL_CELLS) / _PANEL_CELLS
+    inside = (panels.edges[:-1, None] + np.diff(panels.edges)[:, None] * steps).ravel()
+    walls = [inside, quantiles]
+    profile = values.reshape(len(values), -1).max(axis=1)
+    nodes = panels.nodes
+    for top in range(1, len(nodes) - 1):
+        sharp = 2.0 * profile[top] - profile[top - 1] - profile[top + 1]
+        if profile[top] >= profile.max() - 20.0 and sharp > 1.0:
+            reach = max(nodes[top + 1] - nodes[top], nodes[top] - nodes[top - 1])
+            walls.append(np.linspace(nodes[top] - reach, nodes[top] + reach, _PEAK_CELLS + 1))
+    found = np.unique(np.concatenate(walls))
+    return np.concatenate([[low], found[(found > low) & (found < high)], [high]])
+
+
+def _linear(panels: Panels, errors: Array, x: Array) -> Array:
+    """Return (point, ...) errors between nodes, linearly."""
+    nodes = panels.nodes
+    below = np.clip(np.searchsorted(nodes, x, side="right") - 1, 0, len(nodes) - 2)
+    share = np.clip((x - nodes[below]) / (nodes[below + 1] - nodes[below]), 0.0, 1.0)
+    share = share.reshape(-1, *(1,) * (errors.ndim - 1))
+    return np.asarray(errors[below] * (1.0 - share) + errors[below + 1] * share)
+
+
+def averaged(surface: Surface, priors: dict[str, Prior]) -> Surface:
+    """Return the surface over the parameters without a prior, averaged over those with one.
+
+    Args:
+        surface: ln R over its parameters.
+        priors: by parameter, for those to average over.
+
+    Returns:
+        A surface over the others; without any parameters left its single node is ln B.
+
+    Source:
+        None, definition: the average of R over a prior.
+    """
+    strengths = surface.strengths
+    if strengths is not None and strengths.name in priors:
+        values, errors = averaged_over_strength(surface, strengths, priors[strengths.name])
+        surface = Surface(surface.panels, None, values[:, None], errors[:, None])
+    elif strengths is not None and any(one.name in priors for one in surface.panels):
+        surface = _aligned(surface, strengths, [one.name in priors for one in surface.panels])
+    values, errors = (one.reshape(*surface.shape, -1) for one in (surface.ln_ratio, surface.error))
+    kept = surface.panels
+    for one in surface.panels:
+        axis = kept.index(one)
+        if one.name in priors:
+            values, errors = np.moveaxis(values, axis, 0), np.moveaxis(errors, axis, 0)
+            values, errors = averaged_along(one, values, errors, priors[one.name])
+            kept = (*kept[:axis], *kept[axis + 1 :])
+    rows = int(np.prod([one.nodes.size for one in kept]))
+    left = surface.strengths
+    if left is not None and len(left.offset) != rows:
+        left = left.take(np.unique(_groups(surface, kept), return_index=True)[1])
+    return Surface(kept, left, values.reshape(rows, -1), errors.reshape(rows, -1))
+
+
+def _groups(surface: Surface, kept: tuple[Panels, ...]) -> npt.NDArray[np.intp]:
+    """Return (column,) index of each column among the columns of the kept panels."""
+    index = np.indices(surface.shape).reshape(len(surface.shape), -1)
+    found = np.zeros(index.shape[1], dtype=np.intp)
+    for axis, one in enumerate(surface.panels):
+        if one in kept:
+            found = found * one.nodes.size + index[axis]
+    return found
+
+
+def _aligned(surface: Surface, strengths: Strengths, is_averaged: list[bool]) -> Surface:
+    """Return the surface with the same strength nodes in all columns that are averaged with each other."""
+    kept = tuple(one for one, gone in zip(surface.panels, is_averaged, strict=True) if not gone)
+    groups = _groups(surface, kept)
+    tops = surface.ln_ratio.max(axis=1)
+    order = np.lexsort((-tops, groups))
+    best = order[np.unique(groups[order], return_index=True)[1]]
+    common: Strengths = replace(strengths.take(best[groups]), number=_KEPT_NODES, known=None)
+    place = strengths.place(common.nodes)
+    values, errors = between(surface.ln_ratio, place), between(surface.error, place, 2)
+    return Surface(surface.panels, common, values, errors)
