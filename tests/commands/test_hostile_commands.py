@@ -26,6 +26,7 @@ FILES = [
     ROOT / "data" / "sorrel" / "sorrel.toml",
     ROOT / "data" / "tarn" / "tarn.toml",
     ROOT / "data" / "skerry" / "skerry-fixed-mass.toml",
+    ROOT / "data" / "dunlin" / "dunlin.toml",
     ROOT / "data" / "skerry" / "counts.csv",
 ]
 NUMBER = re.compile(r'(?<![\w."-])-?\d+(?:\.\d+)?(?:e-?\d+)?(?![\w"])')
@@ -136,6 +137,20 @@ def test_weighing_a_mutated_file_ends_calmly(
     code, out = answer(capsys, words + ["--json"] * as_json)
     if as_json and code < 2:
         assert json.loads(out, parse_constant=refuse_constant)["command"] == "weigh"
+
+
+@given(changes, st.booleans())
+@settings(
+    max_examples=40, derandomize=True, deadline=None, database=None, suppress_health_check=list(HealthCheck)
+)
+def test_comparing_backgrounds_of_a_mutated_file_ends_calmly(
+    folder: Path, capsys: pytest.CaptureFixture[str], made: list[tuple[object, ...]], as_json: bool
+) -> None:
+    doubted = next(place for place, path in enumerate(FILES) if path.stem == "dunlin")
+    words = ["backgrounds", str(hostile_file(folder, doubted, made))]
+    code, out = answer(capsys, words + ["--json"] * as_json)
+    if as_json and code < 2:
+        assert json.loads(out, parse_constant=refuse_constant)["command"] == "backgrounds"
 
 
 @given(st.integers(0, len(FILES) - 1), changes, st.sampled_from(["check", "fit"]), st.booleans())

@@ -104,7 +104,8 @@ def fake_lines(found: Backgrounds) -> list[str]:
         texts = aligned_at(" ±", [row[column] for row in rows[1:]])
         for row, text in zip(rows[1:], texts, strict=True):
             row[column] = text
-    return [*lines, "", *columns(rows, "llrllr"), *_places(found.fakes)]
+    table = [line for line in columns(rows, "llrllr") if line.strip()]  # below a long name nothing stands
+    return [*lines, "", *table, *_places(found.fakes)]
 
 
 def _strength_texts(one: FakedStrength | None) -> list[str]:
