@@ -29,6 +29,10 @@ COMMANDS = {
         "workbench.commands.backgrounds",
         "alternatives of the backgrounds: their evidences, and the signal that each would fake",
     ),
+    "breakpoint": (
+        "workbench.commands.breakpoint",
+        "how wrong the background must be, smoothly, to take the evidence away",
+    ),
 }
 
 ABOUT = """\
@@ -110,7 +114,8 @@ def _about(flag: str) -> int:
 
         print_text(f"oddsbench {__version__}\n", sys.stdout)
         return DONE
-    commands = "\n".join(f"  {name:<13}{summary}" for name, (_, summary) in COMMANDS.items())
+    widest = max(map(len, COMMANDS))
+    commands = "\n".join(f"  {name:<{widest}}  {summary}" for name, (_, summary) in COMMANDS.items())
     print_text(ABOUT.format(commands=commands), sys.stdout)
     return DONE
 

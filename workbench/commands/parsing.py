@@ -102,6 +102,28 @@ def whole_number(option: str, lowest: int, highest: int) -> Callable[[str], int]
     return read
 
 
+def number(option: str) -> Callable[[str], float]:
+    """Return a reader of a finite number, for argparse's `type`.
+
+    Args:
+        option: the option's name, for the problem.
+    """
+
+    def read(text: str) -> float:
+        try:
+            value = float(text)
+        except ValueError:
+            value = math.nan
+        if not is_workable(value):
+            expected = "a number, such as 3 or -0.5"
+            raise InputError(
+                Problem(f"{option} is not a number", option, quoted(text), expected, f"{option} 3")
+            )
+        return value
+
+    return read
+
+
 def relative_size(option: str) -> Callable[[str], float]:
     """Return a reader of a relative uncertainty, for argparse's `type`.
 

@@ -7,8 +7,8 @@ from pathlib import Path
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
 from workbench.errors import InputError, Problem, quoted
-from workbench.plots.page import KINDS, backgrounds_page, picture_bytes, weighing_page
-from workbench.records.outcomes import BackgroundsOutcome, WeighOutcome
+from workbench.plots.page import KINDS, backgrounds_page, break_point_page, picture_bytes, weighing_page
+from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, WeighOutcome
 
 
 def refuse_other_kinds(option: str, name: str) -> None:
@@ -54,6 +54,19 @@ def save_backgrounds(outcome: BackgroundsOutcome, name: str) -> None:
         InputError: if it can't be written.
     """
     write_bytes_atomically(Path(name), picture_bytes(backgrounds_page(outcome), _kind(name)))
+
+
+def save_break_point(outcome: BreakPointOutcome, name: str) -> None:
+    """Draw a break point's distortion into a file, whole or not at all.
+
+    Args:
+        outcome: what `breakpoint` found.
+        name: the file.
+
+    Raises:
+        InputError: if it can't be written.
+    """
+    write_bytes_atomically(Path(name), picture_bytes(break_point_page(outcome), _kind(name)))
 
 
 def _kind(name: str) -> str:

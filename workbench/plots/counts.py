@@ -60,7 +60,7 @@ def draw_counts(
     upper.tick_params(labelbottom=False)
     upper.set_title(_title(analysis, region), loc="left", color=palette.ink, fontsize=11)
     _draw_excess(lower, region, curves, palette)
-    lower.set_xlabel(_axis(region), color=palette.ink)
+    lower.set_xlabel(axis_words(region), color=palette.ink)
     _name_marks(
         upper, region, [fit.hypothesis for fit in fits], [curve / per_width for curve in curves], palette
     )
@@ -277,6 +277,7 @@ def _title(analysis: Analysis, region: Region) -> str:
     return typeset("  ·  ".join(parts))
 
 
-def _axis(region: Region) -> str:
+def axis_words(region: Region) -> str:
+    """Return what a region's axis measures, with its unit, typeset."""
     name = (region.observable or region.name).replace("$", r"\$")
     return typeset(f"{name} [{region.unit}]") if region.unit else name

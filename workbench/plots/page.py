@@ -7,9 +7,10 @@ from typing import TYPE_CHECKING
 
 from workbench.plots.backgrounds import draw_backgrounds, inches_for
 from workbench.plots.counts import draw_counts
+from workbench.plots.distortion import draw_break_point_words, draw_distortion
 from workbench.plots.odds import draw_odds
 from workbench.plots.palette import LIGHT, Palette
-from workbench.records.outcomes import BackgroundsOutcome, WeighOutcome
+from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, WeighOutcome
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -18,6 +19,8 @@ KINDS = ("png", "svg", "pdf")
 WIDTH = 9.0
 _ODDS_HEIGHT = 3.2
 _COUNTS_HEIGHT = 5.2
+_WORDS_HEIGHT = 1.0
+_DISTORTION_HEIGHT = 3.6
 
 
 def weighing_page(outcome: WeighOutcome, palette: Palette = LIGHT) -> Figure:
@@ -53,6 +56,26 @@ def backgrounds_page(outcome: BackgroundsOutcome, palette: Palette = LIGHT) -> F
 
     page = Figure(figsize=(WIDTH, inches_for(outcome.found)), facecolor=palette.paper)
     draw_backgrounds(page, outcome.found, palette)
+    return page
+
+
+def break_point_page(outcome: BreakPointOutcome, palette: Palette = LIGHT) -> Figure:
+    """Return a figure with the distortion that was found, one region below the other.
+
+    Args:
+        outcome: what `breakpoint` found.
+        palette: the theme's colours.
+    """
+    from matplotlib.figure import Figure
+
+    found = outcome.found
+    regions = [(outcome.analysis.region(one.region), one) for one in found.distorted]
+    heights = [_WORDS_HEIGHT, *[_DISTORTION_HEIGHT] * len(regions)]
+    page = Figure(figsize=(WIDTH, sum(heights)), facecolor=palette.paper)
+    parts = page.subfigures(len(heights), 1, height_ratios=heights, squeeze=False)[:, 0]
+    draw_break_point_words(parts[0].add_axes((0.09, 0.0, 0.85, 1.0)), found, palette)
+    for part, (region, distorted) in zip(parts[1:], regions, strict=True):
+        draw_distortion(part.add_axes((0.09, 0.18, 0.72, 0.70)), region, distorted, palette)
     return page
 
 

@@ -9,6 +9,7 @@ from workbench.ensembles.predictive import PriorPredictive
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
 from workbench.evidence.backgrounds import Backgrounds
+from workbench.evidence.breaking.results import BreakPoint
 from workbench.evidence.results import Comparison, Weighing
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Fit
@@ -80,6 +81,15 @@ class BackgroundsOutcome:
     def cautions(self) -> tuple[Caution, ...]:
         """Return what reading and comparing warned of, each once."""
         return tuple(dict.fromkeys((*self.analysis.cautions, *self.found.cautions)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class BreakPointOutcome:
+    """What `breakpoint` found."""
+
+    analysis: Analysis
+    origin: Origin
+    found: BreakPoint
 
 
 def spread_of_ln_bayes_factor(comparison: Comparison) -> tuple[float, float] | None:

@@ -7,10 +7,11 @@ from collections.abc import Sequence
 
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution, quoted
+from workbench.evidence.breaking.results import Breaking, BreakPoint
 from workbench.evidence.results import Comparison
 from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.likelihood.coordinates import coordinates_of
-from workbench.records.numbers import with_error
+from workbench.records.numbers import as_written, trimmed, with_error
 
 FAILS_BELOW = 0.01
 
@@ -52,6 +53,32 @@ def ln_posterior_odds(comparison: Comparison) -> float | None:
     if not comparison.established or comparison.ln_bayes_factor is None:
         return None
     return comparison.ln_bayes_factor + math.log(comparison.prior_odds)
+
+
+def threshold_text(found: BreakPoint) -> str:
+    """Return the threshold of a break point as text: 3, or ln 20 to four decimals."""
+    return as_written(round(found.below, 4))
+
+
+def break_point_words(found: BreakPoint) -> str:
+    """Return the answer of a break point in one sentence.
+
+    Args:
+        found: the break point of two established evidences.
+    """
+    goal = f"bring ln B down to {threshold_text(found)}"
+    if found.ending is Breaking.BELOW_ALREADY:
+        return f"ln B is not above {threshold_text(found)} to begin with: there is nothing to break."
+    if found.under_peak is None:
+        return (
+            f"No smooth distortion of {found.terms} terms within {as_written(100.0 * found.within)} % "
+            f"(rms over the background) is enough to {goal}."
+        )
+    side = "too low" if found.under_peak > 0.0 else "too high"
+    return (
+        f"Backgrounds that are declared {side} by {trimmed(100.0 * abs(found.under_peak), 2)} % under the "
+        f"peak, and smoothly wrong elsewhere, are enough to {goal}."
+    )
 
 
 def usual_cautions(analysis: Analysis, comparisons: Sequence[Comparison]) -> tuple[Caution, ...]:

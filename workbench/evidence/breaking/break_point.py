@@ -10,7 +10,7 @@ import numpy.typing as npt
 
 from workbench.evidence.breaking.question import Question, asked
 from workbench.evidence.breaking.results import Breaking, BreakPoint, Distorted
-from workbench.evidence.breaking.search import Target, nearest
+from workbench.evidence.breaking.search import Target, nearest, stepped
 from workbench.evidence.breaking.trials import Anchor, draws_of
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.weigh import Weighed, weigh_hypothesis
@@ -23,6 +23,7 @@ Array = npt.NDArray[np.float64]
 DEFAULT_BELOW = 3.0
 DEFAULT_WITHIN = 0.3
 _PRIOR_DRAWS = 2000
+_AGAIN = 4  # pairs of evidences that the answer and its error are made from
 
 
 @np.errstate(all="ignore")  # an impossible point has ln probability -inf
@@ -97,48 +98,68 @@ def break_point(
 def _searched(
     question: Question, origin: Anchor, target: Target, signal: Array, first: BreakPoint
 ) -> BreakPoint:
-    """Return what the search found, ln B made afresh there with other random numbers."""
-    made = 0
+    """Return what the search found, made again there with other random numbers."""
+    made = 1
 
-    def make(coefficients: Array, fresh: bool = False) -> Anchor:
+    def make(coefficients: Array, again: int = 0) -> Anchor:
         nonlocal made
         made += 1
-        return _pair(question, coefficients, origin, fresh=fresh)
+        return _pair(question, coefficients, origin, again)
 
     found = nearest(make, origin, target, _ways(question, signal))
-    last = found if found.reason else make(found.coefficients, fresh=True)
-    if last.reason:
-        return replace(first, ending=Breaking.NOT_ESTABLISHED, reason=last.reason, evidences=1 + made)
+    is_met = not found.reason and target.is_met(found)
+    fresh = [make(found.coefficients, again) for again in range(1, _AGAIN + 1)] if is_met else []
+    if any(one.reason for one in (found, *fresh)):
+        reason = next(one.reason for one in (found, *fresh) if one.reason)
+        return replace(first, ending=Breaking.NOT_ESTABLISHED, reason=reason, evidences=made)
+    places = np.array([stepped(one, target) for one in fresh] or [found.coefficients])
+    place = places.mean(axis=0)
+    last = make(place, _AGAIN + 1)
     ended = replace(
         first,
-        ending=Breaking.FOUND if target.is_met(found) else Breaking.NOT_WITHIN,
-        reached=last.ln_bayes_factor,
-        reached_error=last.error,
-        distorted=_distorted(question, last.coefficients, signal),
-        evidences=1 + made,
+        ending=Breaking.NOT_ESTABLISHED if last.reason else Breaking.FOUND if is_met else Breaking.NOT_WITHIN,
+        reason=last.reason,
+        reached=None if last.reason else last.ln_bayes_factor,
+        reached_error=None if last.reason else last.error,
+        distorted=() if last.reason else _distorted(question, place, signal),
+        evidences=made,
     )
-    return _measured(ended, found, last) if ended.ending is Breaking.FOUND else ended
+    return _measured(question, ended, places, last, signal) if ended.ending is Breaking.FOUND else ended
 
 
-def _measured(ended: BreakPoint, found: Anchor, last: Anchor) -> BreakPoint:
+def _measured(
+    question: Question, ended: BreakPoint, places: Array, last: Anchor, signal: Array
+) -> BreakPoint:
     """Return the answer with its sizes and their errors.
 
-    A threshold that ln B misses by its error moves the distortion along its own direction by error/slope.
+    The errors come from the spread of the places that independent pairs of evidences lead to, and are at
+    least what the error of their ln B moves the distortion along its own direction, error/slope.
     """
-    size = float(np.linalg.norm(last.coefficients))
-    steepness = abs(float(last.trial(last.coefficients).slope @ last.coefficients)) / size
-    share = float(np.hypot(last.error, found.ln_bayes_factor - ended.below)) / steepness / size
-    rms, under = _rms(ended.distorted), _under_peak(ended.distorted)
-    measured = replace(ended, under_peak=under, rms=rms)
-    return replace(measured, under_peak_error=abs(under) * share, rms_error=rms * share)
+    place = places.mean(axis=0)
+    size = float(np.linalg.norm(place))
+    steepness = abs(float(last.trial(place).slope @ place)) / size
+    runs = float(np.sqrt(len(places)))
+    least = last.error / runs / steepness / size
+    others = [_distorted(question, one, signal) for one in places]
+    under, rms = _under_peak(ended.distorted), _rms(ended.distorted)
+    spread_under, spread_rms = (
+        float(np.std([measure(one) for one in others], ddof=1)) / runs for measure in (_under_peak, _rms)
+    )
+    return replace(
+        ended,
+        under_peak=under,
+        under_peak_error=max(spread_under, least * abs(under)),
+        rms=rms,
+        rms_error=max(spread_rms, least * rms),
+    )
 
 
-def _pair(question: Question, coefficients: Array, near: Anchor, *, fresh: bool = False) -> Anchor:
-    """Return the pair of evidences under a distortion, from the same random numbers unless fresh ones."""
+def _pair(question: Question, coefficients: Array, near: Anchor, again: int = 0) -> Anchor:
+    """Return the pair of evidences under a distortion; each `again` has random numbers of its own."""
     factors = question.factors(coefficients)
     made = []
     for model, seed, before in zip(question.models, question.seeds, near.pair, strict=True):
-        key = (*seed.spawn_key, 1) if fresh else seed.spawn_key
+        key = (*seed.spawn_key, again) if again else seed.spawn_key
         child = np.random.SeedSequence(seed.entropy, spawn_key=key)
         made.append(_weighed(held_distortion(model, factors), child, before))
     return _anchor(question, coefficients, (made[0], made[1]))

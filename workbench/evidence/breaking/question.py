@@ -69,7 +69,7 @@ def asked(
     seed: int,
 ) -> Question:
     """Return what `break_point` was asked, compiled, or refuse it with everything that is wrong."""
-    name = _signal_hypothesis(analysis) if hypothesis is None else analysis.hypothesis(hypothesis).name
+    name = signal_hypothesis(analysis) if hypothesis is None else analysis.hypothesis(hypothesis).name
     declared = next((one.distortion for one in analysis.hypotheses if one.distortion is not None), None)
     is_said = terms is not None or declared is not None
     number = terms if terms is not None else declared.terms if declared is not None else DEFAULT_TERMS
@@ -93,7 +93,7 @@ def asked(
     return Question(models, (children[names.index(name)], children[0]), functions)
 
 
-def _signal_hypothesis(analysis: Analysis) -> str:
+def signal_hypothesis(analysis: Analysis) -> str:
     """Return the first hypothesis, but for the first of all, that has a signal."""
     for one in analysis.hypotheses[1:]:
         if any(process.is_signal for process in analysis.processes_of(one.name)):

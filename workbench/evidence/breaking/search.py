@@ -24,7 +24,7 @@ _MOST_ANCHORS = 14
 _MOST_STEPS = 60
 _SHORTEST = 1.0 / 1024.0
 _HALVINGS = 40
-_SETTLED = 0.01  # of the distortion's size
+_SETTLED = 0.004  # of the distortion's size
 _SAME = 1e-5
 _CLOSE = 0.003  # nats above the threshold that count as at it
 _INSIDE = 0.93  # of the size found, where other directions are tried
@@ -110,7 +110,7 @@ def _descended(make: Callable[[Array], Anchor], start: Anchor, target: Target) -
     """Return where steps from a pair of evidences end, made by the engine again as often as needed."""
     anchor = start
     for _ in range(_MOST_ANCHORS):
-        place = _stepped(anchor, target)
+        place = stepped(anchor, target)
         moved = _size(place - anchor.coefficients)
         if moved <= _SETTLED * _size(place) and (
             target.is_met(anchor) or _size(place) > (1.0 - _SETTLED) * target.within
@@ -124,8 +124,16 @@ def _descended(make: Callable[[Array], Anchor], start: Anchor, target: Target) -
     return anchor
 
 
-def _stepped(anchor: Anchor, target: Target) -> Array:
-    """Return where the draws of one pair of evidences lead."""
+def stepped(anchor: Anchor, target: Target) -> Array:
+    """Return where the draws of one pair of evidences lead.
+
+    Args:
+        anchor: the pair, under some distortion.
+        target: threshold and range.
+
+    Returns:
+        (term,) the smallest distortion that meets the threshold as far as the draws tell, or where they end.
+    """
     here = anchor.trial(anchor.coefficients)
     here = _crossing(anchor, here, here, target)
     for _ in range(_MOST_STEPS):
