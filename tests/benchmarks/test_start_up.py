@@ -18,7 +18,7 @@ from pathlib import Path
 import pytest
 from pytest_benchmark.fixture import BenchmarkFixture
 
-from tests.benchmarks.timing import in_turns, report, timed
+from tests.benchmarks.timing import in_turns, report, timed_by_clock
 
 ROOT = Path(__file__).parents[2]
 LIBRARIES = "import numpy, scipy.special, scipy.optimize, iminuit"
@@ -45,7 +45,7 @@ def run_python(*words: str) -> Start:
     environment = {key: value for key, value in os.environ.items() if key not in threads}
     environment["PYTHONPATH"] = str(ROOT)
     before = resource.getrusage(resource.RUSAGE_CHILDREN)
-    wall = timed(
+    wall = timed_by_clock(
         lambda: subprocess.run(
             [sys.executable, *words], check=True, capture_output=True, cwd=ROOT, env=environment
         )
