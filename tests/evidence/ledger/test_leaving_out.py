@@ -18,6 +18,7 @@ from workbench.evidence.ledger.bridge import Bridge, bridge, rungs_of
 from workbench.evidence.ledger.changes import reweighted
 from workbench.evidence.ledger.leaving_out import leave_out
 from workbench.evidence.ledger.ledger import ledger
+from workbench.evidence.ledger.members import members_of
 from workbench.evidence.ledger.results import AFRESH, EXACT, REWEIGHTED
 from workbench.evidence.ledger.without import without
 from workbench.evidence.weigh import weigh_hypothesis
@@ -128,7 +129,8 @@ def test_without_each_bin_the_evidence_is_what_quadrature_sums(name: str, *, is_
     model, draws = of(name)
     evidence = weigh_hypothesis(model, np.random.SeedSequence(2)).evidence
     groups = [*singles(4), np.array([True, True, False, False])]
-    found = leave_out(model, evidence, None if is_afresh else draws, groups, np.random.SeedSequence(3))
+    members = members_of(enumerated.analysis(), evidence)
+    found = leave_out(members, evidence, None if is_afresh else draws, groups, np.random.SeedSequence(3))
     for group, one in zip(groups, found, strict=True):
         kept = tuple(int(index) for index in np.flatnonzero(~group))
         exact = enumerated.ln_probability(name, kept)

@@ -7,6 +7,7 @@ draws of the mixture of all these laws. With the prior among them the weights of
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -80,6 +81,36 @@ class Bridge:
             np.concatenate(each, axis=2).reshape(bins, -1),
             self.is_exact,
         )
+
+
+def mixed(bridges: Sequence[Bridge], priors: Sequence[float]) -> Bridge:
+    """Return the draws of several models as those of their average.
+
+        p(n_A) = sum over models k of P(k) p_k(n_A)
+
+    Args:
+        bridges: the draws of each model, over the same bins.
+        priors: P(k), adding up to 1.
+
+    Returns:
+        All draws, scramble after scramble; the draws themselves where there is only one model.
+
+    Source:
+        None, definition.
+    """
+    if len(bridges) == 1:
+        return bridges[0]
+    draws = sum(one.draws for one in bridges)
+    base = [
+        (one.ln_base + np.log(prior * draws / one.draws)).reshape(SCRAMBLES, -1)
+        for one, prior in zip(bridges, priors, strict=True)
+    ]
+    bins = len(bridges[0].ln_bins)
+    each = [one.ln_bins.reshape(bins, SCRAMBLES, -1) for one in bridges]
+    is_exact = all(one.is_exact for one in bridges)
+    return Bridge(
+        np.concatenate(base, axis=1).ravel(), np.concatenate(each, axis=2).reshape(bins, -1), is_exact
+    )
 
 
 def powers_for(bins: int) -> tuple[float, ...]:

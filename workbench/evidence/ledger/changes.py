@@ -12,7 +12,6 @@ from workbench.evidence.ledger.results import AFRESH, EXACT, REWEIGHTED
 from workbench.evidence.pareto import k_hat, largest_allowed
 from workbench.evidence.results import Evidence
 from workbench.evidence.sampling import SCRAMBLES
-from workbench.evidence.weigh import Weighed
 
 Array = npt.NDArray[np.float64]
 
@@ -46,11 +45,11 @@ def unchanged(evidence: Evidence) -> Changed:
     return Changed(evidence.ln_evidence, evidence.error, 0.0, 0.0, EXACT)
 
 
-def afresh(evidence: Evidence, other: Weighed) -> Changed:
+def afresh(evidence: Evidence, other: Evidence) -> Changed:
     """Return a change from an evidence made afresh, None in all numbers where it is not established."""
-    way = EXACT if other.sample is None and other.evidence.error == 0.0 else AFRESH
-    value, error, before = other.evidence.ln_evidence, other.evidence.error or 0.0, evidence.ln_evidence
-    if value is None or before is None or not other.evidence.established:
+    way = EXACT if evidence.error == 0.0 and other.error == 0.0 else AFRESH
+    value, error, before = other.ln_evidence, other.error or 0.0, evidence.ln_evidence
+    if value is None or before is None or not other.established:
         return Changed(None, None, None, None, way)
     return Changed(value, error, before - value, float(np.hypot(error, evidence.error or 0.0)), way)
 

@@ -2,31 +2,28 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 
 import numpy as np
 import numpy.typing as npt
 
 from workbench.evidence.ledger.bridge import Bridge
 from workbench.evidence.ledger.changes import Changed, afresh, reweighted
+from workbench.evidence.ledger.members import Member, average
 from workbench.evidence.ledger.without import without
 from workbench.evidence.results import Evidence
 from workbench.evidence.weigh import weigh_hypothesis
-from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 Flags = npt.NDArray[np.bool_]
 
-_NOWHERE: Mapping[str, float] = {}
-
 
 def leave_out(
-    model: Model,
+    members: Sequence[Member],
     evidence: Evidence,
     drawn: Bridge | None,
     groups: Sequence[Flags],
     seed: np.random.SeedSequence,
-    near: Mapping[str, float] = _NOWHERE,
 ) -> list[Changed]:
     """Return what ln evidence is without each group of bins.
 
@@ -36,12 +33,11 @@ def leave_out(
     afresh, and judged as every evidence is. What has a closed form keeps it.
 
     Args:
-        model: the compiled hypothesis.
+        members: the hypothesis' alternatives.
         evidence: its evidence.
         drawn: its weighted draws; None where there are none.
         groups: (bin,) flags of the bins that are left out together.
         seed: where the random numbers of fresh evidences come from.
-        near: standard coordinates by name that fresh evidences start from.
 
     Returns:
         One answer a group.
@@ -49,14 +45,23 @@ def leave_out(
     Source:
         Leave-one-out importance sampling: A.E. Gelfand, D.K. Dey, H. Chang (1992); from memory.
     """
-    is_exact = any(one.name == "closed form" for one in evidence.estimates)
+    is_exact = evidence.error == 0.0
     found = []
     for group, child in zip(groups, seed.spawn(len(groups)), strict=True):
         answer = None if drawn is None or is_exact else _reweighted(evidence, drawn, group)
-        if answer is None:
-            answer = afresh(evidence, weigh_hypothesis(without(model, group), child, near=near))
-        found.append(answer)
+        found.append(answer or afresh(evidence, _without(members, evidence, group, child)))
     return found
+
+
+def _without(
+    members: Sequence[Member], evidence: Evidence, group: Flags, seed: np.random.SeedSequence
+) -> Evidence:
+    children = seed.spawn(len(members))
+    others = [
+        weigh_hypothesis(without(one.model, group), child, near=one.near).evidence
+        for one, child in zip(members, children, strict=True)
+    ]
+    return average(evidence, members, others)
 
 
 @np.errstate(all="ignore")  # a draw that can't fill a bin has ln probability -inf

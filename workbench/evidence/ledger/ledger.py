@@ -5,21 +5,16 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
-import numpy.typing as npt
 
 from workbench.errors import InputError, Problem, nearest, quoted
 from workbench.evidence.ledger.accounts import account_of
 from workbench.evidence.ledger.orders import random_orders
-from workbench.evidence.ledger.places import Place, bins_of, regions_of
+from workbench.evidence.ledger.places import bins_of, regions_of
 from workbench.evidence.ledger.reading import deciding_cautions
 from workbench.evidence.ledger.results import Ledger
-from workbench.evidence.ledger.sides import Side, side_of
-from workbench.evidence.results import Evidence
+from workbench.evidence.ledger.sides import side_of
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis
-from workbench.likelihood.model import compile_model
-
-Indices = npt.NDArray[np.intp]
 
 BY = ("bins", "regions", "uncertainties")
 ORDERS = 64
@@ -72,7 +67,9 @@ def ledger(
     passes = random_orders(len(bins), orders, for_orders)
     groups = (bins if "bins" in by else [], regions if "regions" in by else [])
     sides = {
-        one.hypothesis: _side(analysis, one, groups, "uncertainties" in by, passes, child)
+        one.hypothesis: side_of(
+            analysis, one, groups, passes, child, with_uncertainties="uncertainties" in by
+        )
         for one, child in zip(weighing.evidences, children, strict=True)
         if one.hypothesis in concerned
     }
@@ -80,20 +77,6 @@ def ledger(
         account_of(one, sides[one.hypothesis], sides[one.against], bins, regions, by) for one in wanted
     )
     return Ledger(weighing, accounts, seed, deciding_cautions(accounts))
-
-
-def _side(
-    analysis: Analysis,
-    evidence: Evidence,
-    groups: tuple[Sequence[Place], Sequence[Place]],
-    with_uncertainties: bool,
-    passes: Indices,
-    seed: np.random.SeedSequence,
-) -> Side:
-    model = compile_model(analysis, evidence.hypothesis)
-    if not evidence.established:
-        return Side(model, evidence)
-    return side_of(model, evidence, groups, passes, seed, with_uncertainties=with_uncertainties)
 
 
 def _refuse(analysis: Analysis, hypothesis: str | None, by: Sequence[str], orders: int) -> None:
