@@ -24,6 +24,7 @@ COMMANDS = {
         "workbench.commands.check",
         "what an input says, what its priors predict, whether anything fits",
     ),
+    "ledger": ("workbench.commands.ledger", "what carries the evidence: by bin, region and uncertainty"),
     "fit": ("workbench.commands.fit", "maximum likelihood of each hypothesis, with errors and pulls"),
     "backgrounds": (
         "workbench.commands.backgrounds",

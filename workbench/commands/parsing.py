@@ -124,6 +124,30 @@ def number(option: str) -> Callable[[str], float]:
     return read
 
 
+def one_of(option: str, known: Sequence[str]) -> Callable[[str], str]:
+    """Return a reader of one of several words, for argparse's `type`.
+
+    Args:
+        option: the option's name, for the problem.
+        known: the words allowed.
+    """
+
+    def read(text: str) -> str:
+        if text not in known:
+            raise InputError(
+                Problem(
+                    f"{option} is none of its choices",
+                    option,
+                    quoted(text),
+                    "one of: " + ", ".join(known),
+                    nearest(text, known),
+                )
+            )
+        return text
+
+    return read
+
+
 def relative_size(option: str) -> Callable[[str], float]:
     """Return a reader of a relative uncertainty, for argparse's `type`.
 

@@ -7,8 +7,9 @@ from pathlib import Path
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
 from workbench.errors import InputError, Problem, quoted
+from workbench.plots.ledger_page import ledger_page
 from workbench.plots.page import KINDS, backgrounds_page, break_point_page, picture_bytes, weighing_page
-from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, WeighOutcome
+from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, LedgerOutcome, WeighOutcome
 
 
 def refuse_other_kinds(option: str, name: str) -> None:
@@ -67,6 +68,19 @@ def save_break_point(outcome: BreakPointOutcome, name: str) -> None:
         InputError: if it can't be written.
     """
     write_bytes_atomically(Path(name), picture_bytes(break_point_page(outcome), _kind(name)))
+
+
+def save_ledger(outcome: LedgerOutcome, name: str) -> None:
+    """Draw counts, their weights and the uncertainties into a file, whole or not at all.
+
+    Args:
+        outcome: what `ledger` found.
+        name: the file.
+
+    Raises:
+        InputError: if it can't be written.
+    """
+    write_bytes_atomically(Path(name), picture_bytes(ledger_page(outcome), _kind(name)))
 
 
 def _kind(name: str) -> str:

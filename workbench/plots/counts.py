@@ -47,19 +47,44 @@ def draw_counts(
     Returns:
         The axes of the counts and of the excess.
     """
+    upper, lower = draw_above(figure, analysis, region_name, fits, palette)
+    bins = _bins_of(analysis, region_name)
+    _draw_excess(lower, analysis.region(region_name), [fit.expected[bins] for fit in fits], palette)
+    return upper, lower
+
+
+def draw_above(
+    figure: FigureBase,
+    analysis: Analysis,
+    region_name: str,
+    fits: Sequence[Fit],
+    palette: Palette = LIGHT,
+    below: float = 1.0,
+) -> tuple[Axes, Axes]:
+    """Draw one region's counts with every hypothesis' fit, above empty axes along the same observable.
+
+    Args:
+        figure: a figure or subfigure, drawn on as a whole.
+        analysis: the analysis.
+        region_name: which region.
+        fits: one a hypothesis, in file order.
+        palette: the theme's colours.
+        below: height of the empty axes, in thirds of that of the counts.
+
+    Returns:
+        The axes of the counts and the empty ones.
+    """
     region = analysis.region(region_name)
     bins = _bins_of(analysis, region_name)
     curves = [fit.expected[bins] for fit in fits]
     per_width, label = _scale(region)
-    upper, lower = _panels(figure, region, palette)
-    binning = region.table.binning
-    _draw_curves(upper, binning, [curve / per_width for curve in curves], palette)
+    upper, lower = _panels(figure, region, palette, below)
+    _draw_curves(upper, region.table.binning, [curve / per_width for curve in curves], palette)
     _set_heights(upper, region, curves, per_width)
     _draw_points(upper, region, per_width, palette)
     upper.set_ylabel(label, color=palette.ink)
     upper.tick_params(labelbottom=False)
     upper.set_title(_title(analysis, region), loc="left", color=palette.ink, fontsize=11)
-    _draw_excess(lower, region, curves, palette)
     lower.set_xlabel(axis_words(region), color=palette.ink)
     _name_marks(
         upper, region, [fit.hypothesis for fit in fits], [curve / per_width for curve in curves], palette
@@ -67,9 +92,9 @@ def draw_counts(
     return upper, lower
 
 
-def _panels(figure: FigureBase, region: Region, palette: Palette) -> tuple[Axes, Axes]:
+def _panels(figure: FigureBase, region: Region, palette: Palette, below: float) -> tuple[Axes, Axes]:
     grid = figure.add_gridspec(
-        2, 1, height_ratios=(3, 1), hspace=0.08, left=0.09, right=0.81, top=0.90, bottom=0.13
+        2, 1, height_ratios=(3, below), hspace=0.08, left=0.09, right=0.81, top=0.90, bottom=0.13
     )
     upper = figure.add_subplot(grid[0])
     lower = figure.add_subplot(grid[1], sharex=upper)

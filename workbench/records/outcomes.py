@@ -10,6 +10,7 @@ from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution
 from workbench.evidence.backgrounds import Backgrounds
 from workbench.evidence.breaking.results import BreakPoint
+from workbench.evidence.ledger.results import Ledger
 from workbench.evidence.results import Comparison, Weighing
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Fit
@@ -48,6 +49,23 @@ class WeighOutcome:
     def cautions(self) -> tuple[Caution, ...]:
         """Return what reading and weighing warned of, each once."""
         return tuple(dict.fromkeys((*self.analysis.cautions, *self.weighing.cautions)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class LedgerOutcome:
+    """What `ledger` found; fits and adequacies are one a hypothesis, in file order."""
+
+    analysis: Analysis
+    origin: Origin
+    ledger: Ledger
+    adequacies: tuple[Adequacy, ...]
+    fits: tuple[Fit, ...]
+
+    @property
+    def cautions(self) -> tuple[Caution, ...]:
+        """Return what reading, weighing and the ledger warned of, each once."""
+        weighing = self.ledger.weighing
+        return tuple(dict.fromkeys((*self.ledger.cautions, *self.analysis.cautions, *weighing.cautions)))
 
 
 @dataclass(frozen=True, slots=True, eq=False)

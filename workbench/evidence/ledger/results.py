@@ -79,6 +79,14 @@ class Hold:
 
 
 @dataclass(frozen=True, slots=True)
+class Sum:
+    """A sum of shares with its one standard error [nats]."""
+
+    value: float
+    error: float
+
+
+@dataclass(frozen=True, slots=True)
 class Shares:
     """How the shares were made.
 
@@ -91,8 +99,10 @@ class Shares:
             where nothing was drawn, as in the next two.
         least_effective: the smallest at any step of any pass.
         k_hat: Pareto shape of the weights where a typical pass has its fewest effective draws.
-        established: True when draws, shapes and the agreement with ln B are all in order.
+        established: True when draws, errors and the agreement with ln B are all in order.
         reason: why it is not; empty when it is.
+        rest: what all bins but the k heaviest add up to, k = 0, 1, 2, ..., at most 32; empty where not
+            established. Their shares' errors are not independent, so that these can't be had from those.
     """
 
     orders: int
@@ -104,6 +114,7 @@ class Shares:
     k_hat: float | None
     established: bool
     reason: str
+    rest: tuple[Sum, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

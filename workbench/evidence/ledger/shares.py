@@ -8,7 +8,7 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.evidence.ledger.chain import Chain, sampling_errors
-from workbench.evidence.ledger.results import Shares
+from workbench.evidence.ledger.results import Shares, Sum
 from workbench.evidence.results import Comparison
 
 Array = npt.NDArray[np.float64]
@@ -16,6 +16,7 @@ Flags = npt.NDArray[np.bool_]
 
 _LARGEST_ERROR = 0.1
 _FEWEST_EFFECTIVE = 10.0
+_MOST_SUMS = 32
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -79,8 +80,23 @@ def split(comparison: Comparison, chain: Chain | None, against: Chain | None) ->
     )
     largest = max(_sampling_error(shaken[:, :, [one]].sum(axis=2)) for one in range(pairs.shape[1]))
     reason = _doubt(how, comparison, largest)
-    judged = replace(how, total=None, total_error=None, established=False, reason=reason) if reason else how
-    return Split(pairs, shaken, judged)
+    if reason:
+        failed = replace(how, total=None, total_error=None, established=False, reason=reason)
+        return Split(pairs, shaken, failed)
+    apart = Split(pairs, shaken, how)
+    return replace(apart, how=replace(how, rest=_rest(apart)))
+
+
+def _rest(apart: Split) -> tuple[Sum, ...]:
+    """Return what all bins but the k heaviest add up to."""
+    light_first = np.argsort(np.abs(apart.pairs.mean(axis=0)), kind="stable")
+    bins, found = light_first.size, []
+    for heaviest in range(min(bins, _MOST_SUMS) + 1):
+        flags = np.zeros(bins, dtype=bool)
+        flags[light_first[: bins - heaviest]] = True
+        value, from_orders, from_draws = apart.share(flags)
+        found.append(Sum(value, float(np.hypot(from_orders, from_draws))))
+    return tuple(found)
 
 
 def _doubt(how: Shares, comparison: Comparison, largest_error: float) -> str:
