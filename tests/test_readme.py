@@ -123,6 +123,17 @@ def test_the_backgrounds_that_are_shown_are_what_the_program_prints(
     assert strays(shown, now) == []
 
 
+def test_the_ledger_that_is_shown_is_what_the_program_prints(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (shown,) = [screen for words, screen in commands() if words[1] == "ledger"]
+    again = run(["ledger", "data/skerry/skerry.toml"], capsys, monkeypatch)
+    now = again[again.index("What carries the evidence") : again.index("\n\nCautions")] + "\n"
+    without_bars = [re.sub(r" +[+−]+ *$", "", text, flags=re.MULTILINE) for text in (shown, now)]
+    assert without_numbers(without_bars[0].removeprefix("...\n")) == without_numbers(without_bars[1])
+    assert strays(shown, now) == []
+
+
 def test_the_error_that_is_shown_is_what_the_program_says(
     capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
 ) -> None:

@@ -132,6 +132,8 @@ def uncertainty_lines(account: Account) -> list[str]:
             ]
         )
     lines = columns(rows, "lrrrr")
+    if any(hold.frozen is None or hold.doubled is None for hold in shown):
+        lines += paragraph("–: not established, or a prior without a width.")
     rest = order[len(shown) :]
     if rest:
         most = max(hold.reach(value) for hold in rest)
