@@ -199,7 +199,9 @@ def bin_ln_probability(expected: Array, variance: Array | None, counts: Array) -
     """
     if counts.max(initial=0.0) < _LARGEST_PLAIN_COUNT:
         with np.errstate(divide="ignore"):
-            logs = np.where(counts > 0.0, np.log(expected), 0.0)
+            logs = np.log(expected)
+        if not expected.all():  # 0 counted where 0 is expected is certain
+            logs = np.where(counts > 0.0, logs, 0.0)
         plain = counts * logs - expected - special.gammaln(counts + 1.0)
     else:
         plain = ln_poisson(counts, expected)
