@@ -113,6 +113,16 @@ def test_the_worked_example_is_what_the_program_prints(
         assert after == pytest.approx(before, rel=0.02)
 
 
+def test_the_priors_that_are_shown_are_what_the_program_prints(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (shown,) = [screen for words, screen in commands() if words[1] == "priors"]
+    again = run(["priors", "data/skerry/skerry.toml"], capsys, monkeypatch)
+    now = again[again.index('The prior of "strength"') : again.index("\n\nCautions")] + "\n"
+    assert without_numbers(shown.removeprefix("...\n")) == without_numbers(now)
+    assert strays(shown, now) == []
+
+
 def test_the_backgrounds_that_are_shown_are_what_the_program_prints(
     capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
 ) -> None:

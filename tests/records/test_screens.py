@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 
 from tests.records import hand_built as hand
+from tests.records import hand_built_priors as hand_priors
 from workbench.evidence.results import Evidence
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.hypothesis import Hypothesis
@@ -18,6 +19,7 @@ from workbench.records.outcomes import FitOutcome, WeighOutcome
 from workbench.records.screens.check import check_screen
 from workbench.records.screens.fit import fit_screen, value_text
 from workbench.records.screens.layout import WIDEST, columns, plain_ascii, wide_columns
+from workbench.records.screens.priors import priors_screen
 from workbench.records.screens.weigh import weigh_screen
 
 EXPECTED = Path(__file__).parents[1] / "expected"
@@ -33,6 +35,11 @@ SCREENS: dict[str, Callable[[], str]] = {
     "check": lambda: check_screen(hand.checked()),
     "check-planning": lambda: check_screen(replace(hand.checked(()), analysis=planned())),
     "fit": lambda: fit_screen(hand.fitted()),
+    "priors": lambda: priors_screen(hand_priors.examined()),
+    "priors-against": lambda: priors_screen(hand_priors.examined(hand_priors.examination(4.0))),
+    "priors-not-established": lambda: priors_screen(hand_priors.examined(hand_priors.unestablished())),
+    "priors-ascii": lambda: plain_ascii(priors_screen(hand_priors.examined())),
+    "priors-neither-fits": lambda: priors_screen(hand_priors.examined(fails=True)),
     "fit-not-converged": lambda: fit_screen(unfinished()),
 }
 

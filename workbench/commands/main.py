@@ -34,6 +34,7 @@ COMMANDS = {
         "workbench.commands.breakpoint",
         "how wrong the background must be, smoothly, to take the evidence away",
     ),
+    "priors": ("workbench.commands.priors", "what the choice of priors does to the Bayes factor"),
 }
 
 ABOUT = """\

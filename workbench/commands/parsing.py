@@ -148,6 +148,33 @@ def one_of(option: str, known: Sequence[str]) -> Callable[[str], str]:
     return read
 
 
+def probability_between(option: str) -> Callable[[str], float]:
+    """Return a reader of a probability that is neither 0 nor 1, for argparse's `type`.
+
+    Args:
+        option: the option's name, for the problem.
+    """
+
+    def read(text: str) -> float:
+        try:
+            number = float(text)
+        except ValueError:
+            number = math.nan
+        if not 1e-12 <= number <= 1.0 - 1e-12:
+            raise InputError(
+                Problem(
+                    f"{option} is not a probability between 0 and 1",
+                    option,
+                    quoted(text),
+                    "a number above 0 and below 1; 0.99 is ninety-nine per cent",
+                    f"{option} 0.99",
+                )
+            )
+        return number
+
+    return read
+
+
 def relative_size(option: str) -> Callable[[str], float]:
     """Return a reader of a relative uncertainty, for argparse's `type`.
 

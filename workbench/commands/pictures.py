@@ -9,7 +9,14 @@ from workbench.counts.files import write_bytes_atomically
 from workbench.errors import InputError, Problem, quoted
 from workbench.plots.ledger_page import ledger_page
 from workbench.plots.page import KINDS, backgrounds_page, break_point_page, picture_bytes, weighing_page
-from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, LedgerOutcome, WeighOutcome
+from workbench.plots.priors_page import priors_page
+from workbench.records.outcomes import (
+    BackgroundsOutcome,
+    BreakPointOutcome,
+    LedgerOutcome,
+    PriorsOutcome,
+    WeighOutcome,
+)
 
 
 def refuse_other_kinds(option: str, name: str) -> None:
@@ -81,6 +88,11 @@ def save_ledger(outcome: LedgerOutcome, name: str) -> None:
         InputError: if it can't be written.
     """
     write_bytes_atomically(Path(name), picture_bytes(ledger_page(outcome), _kind(name)))
+
+
+def save_priors(outcome: PriorsOutcome, name: str) -> None:
+    """Draw what priors do into a file, whole or not at all; see `save_weighed`."""
+    write_bytes_atomically(Path(name), picture_bytes(priors_page(outcome), _kind(name)))
 
 
 def _kind(name: str) -> str:

@@ -56,11 +56,30 @@ class Palette:
         """Return how the second hypothesis is drawn."""
         return self.hypotheses[1]
 
+    def steps(self, number: int, place: int = 1) -> tuple[str, ...]:
+        """Return steps of lightness of one hypothesis' hue, from nearly paper to its words' colour.
+
+        Args:
+            number: how many.
+            place: the hypothesis' place in file order.
+        """
+        far, near = self.hypothesis(place).words, self.paper
+        shares = [0.04 + 0.96 * step / max(number - 1, 1) for step in range(number)]
+        return tuple(_mixed(near, far, share) for share in shares)
+
     def hypothesis(self, place: int) -> Stroke:
         """Return how a hypothesis is drawn; those beyond the palette start again at the second."""
         if place < len(self.hypotheses):
             return self.hypotheses[place]
         return self.hypotheses[1 + (place - 1) % (len(self.hypotheses) - 1)]
+
+
+def _mixed(first: str, second: str, share: float) -> str:
+    parts = [
+        round((1.0 - share) * int(first[at : at + 2], 16) + share * int(second[at : at + 2], 16))
+        for at in (1, 3, 5)
+    ]
+    return "#" + "".join(f"{part:02x}" for part in parts)
 
 
 LIGHT = Palette(

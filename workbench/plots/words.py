@@ -142,6 +142,19 @@ def spread(wanted: Sequence[float], sizes: Sequence[float], low: float, high: fl
     return centres
 
 
+def text_height(axes: Axes, points: float) -> float:
+    """Return how much of the y axis a line of words takes, room between lines included.
+
+    Args:
+        axes: with a straight y axis and its limits set.
+        points: the words' size [points].
+    """
+    low, high = axes.get_ylim()
+    figure = axes.get_figure(root=True)
+    pixels = points * 1.35 * (figure.dpi if figure is not None else 100.0) / 72.0
+    return pixels / float(axes.get_window_extent().height) * (high - low)
+
+
 def overlaps(texts: Sequence[Text], gap: float = 6.0) -> bool:
     """Tell whether any two neighbouring texts come nearer than a gap [pixels]; given from left to right."""
     ends = [extent(text) for text in texts]

@@ -12,7 +12,7 @@ from workbench.counts.files import read_bytes, text_of, write_text_atomically
 from workbench.errors import InputError, Problem
 
 FORMAT = 1
-COMMANDS = ("weigh", "check", "fit", "backgrounds", "breakpoint", "ledger")
+COMMANDS = ("weigh", "check", "fit", "backgrounds", "breakpoint", "ledger", "priors")
 
 
 def record_text(record: Mapping[str, Any], *, only_ascii: bool = False) -> str:

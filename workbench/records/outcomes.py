@@ -11,6 +11,7 @@ from workbench.errors import Caution
 from workbench.evidence.backgrounds import Backgrounds
 from workbench.evidence.breaking.results import BreakPoint
 from workbench.evidence.ledger.results import Ledger
+from workbench.evidence.prior_choice.results import PriorSensitivity
 from workbench.evidence.results import Comparison, Weighing
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Fit
@@ -108,6 +109,21 @@ class BreakPointOutcome:
     analysis: Analysis
     origin: Origin
     found: BreakPoint
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class PriorsOutcome:
+    """What `priors` found; adequacies are those of the two hypotheses compared, the other one's first."""
+
+    analysis: Analysis
+    origin: Origin
+    found: PriorSensitivity
+    adequacies: tuple[Adequacy, ...]
+
+    @property
+    def cautions(self) -> tuple[Caution, ...]:
+        """Return what reading and examining warned of, each once."""
+        return tuple(dict.fromkeys((*self.analysis.cautions, *self.found.cautions)))
 
 
 def spread_of_ln_bayes_factor(comparison: Comparison) -> tuple[float, float] | None:

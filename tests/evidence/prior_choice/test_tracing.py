@@ -28,7 +28,7 @@ def text_of(prior: Prior) -> str:
 
 
 def traced(analysis: Analysis) -> StrengthCurve:
-    return trace(analysis, BOTH, "strength", weigh(analysis).evidences[0], SEED)
+    return trace(analysis, BOTH, "strength", weigh(analysis).evidences[0], SEED, is_nested=True)
 
 
 @pytest.mark.parametrize(("observed", "background"), [(0, 2.5), (1, 0.3), (9, 3.8), (14, 20.0), (400, 300.0)])

@@ -42,8 +42,8 @@ def examination_cautions(case: Case, curve: StrengthCurve, local: LocalP | None)
     if case.alternative:
         yield Caution(
             "one-alternative",
-            f"Nuisance priors are raised to powers with {quoted(case.alternative)}, the likeliest alternative "
-            "of the backgrounds; every other number is an average over the alternatives.",
+            f"Nuisance priors are raised to powers with {quoted(case.alternative)}, the likeliest "
+            "alternative of the backgrounds; every other number is an average over the alternatives.",
         )
     if not curve.is_ended:
         yield Caution(

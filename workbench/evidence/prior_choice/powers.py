@@ -11,7 +11,7 @@ class Driver(enum.Enum):
 
     DATA = "data-driven"
     PRIOR = "prior-driven"
-    BOTH = "prior and data alike"
+    BOTH = "both"
     CONFLICT = "in conflict"
     FLAT = "flat prior"
 

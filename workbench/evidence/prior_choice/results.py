@@ -13,7 +13,7 @@ from workbench.evidence.prior_choice.bounds import Bound
 from workbench.evidence.prior_choice.curve import StrengthCurve
 from workbench.evidence.prior_choice.local_p import LocalP
 from workbench.evidence.prior_choice.powers import PowerScaling
-from workbench.evidence.prior_choice.verdicts import Crossing, NeededPrior
+from workbench.evidence.prior_choice.verdicts import Crossing, FamilyCurve, NeededPrior
 from workbench.evidence.results import Comparison, Evidence
 
 Array = npt.NDArray[np.float64]
@@ -34,20 +34,6 @@ class DeclaredPrior:
     family: str
     mean: float
     by_curve: Average
-
-
-@dataclass(frozen=True, slots=True)
-class FamilyCurve:
-    """ln B against the mean of one family's members.
-
-    Attributes:
-        name, words: the family.
-        averages: ln B, one a mean.
-    """
-
-    name: str
-    words: str
-    averages: tuple[Average, ...]
 
 
 @dataclass(frozen=True, slots=True, eq=False)

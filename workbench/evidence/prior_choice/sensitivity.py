@@ -19,12 +19,18 @@ from workbench.evidence.prior_choice.bounds import (
 from workbench.evidence.prior_choice.case import Case, weighed_case
 from workbench.evidence.prior_choice.cautions import examination_cautions
 from workbench.evidence.prior_choice.curve import StrengthCurve
-from workbench.evidence.prior_choice.families import families
-from workbench.evidence.prior_choice.local_p import LocalP, local_p
+from workbench.evidence.prior_choice.families import Family, families
+from workbench.evidence.prior_choice.local_p import LocalP, differs_by, local_p
 from workbench.evidence.prior_choice.reference import events_of, reference_family
-from workbench.evidence.prior_choice.results import DeclaredPrior, FamilyCurve, PriorSensitivity
+from workbench.evidence.prior_choice.results import DeclaredPrior, PriorSensitivity
 from workbench.evidence.prior_choice.tracing import trace
-from workbench.evidence.prior_choice.verdicts import Crossing, NeededPrior, crossings, needed_prior
+from workbench.evidence.prior_choice.verdicts import (
+    Crossing,
+    FamilyCurve,
+    NeededPrior,
+    crossings,
+    needed_prior,
+)
 from workbench.hypotheses.analysis import Analysis
 
 Array = npt.NDArray[np.float64]
@@ -76,7 +82,9 @@ def prior_sensitivity(
     if reason:
         return _refused(case, reason, posterior, seed)
     child = np.random.SeedSequence(seed, spawn_key=(len(analysis.hypotheses),))
-    curve = trace(analysis, case.comparison.hypothesis, case.strength, case.evidences[0], child, say)
+    name = case.comparison.hypothesis
+    is_nested = differs_by(analysis, name, case.comparison.against, case.strength)
+    curve = trace(analysis, name, case.strength, case.evidences[0], child, is_nested, say)
     declared = _declared(case, curve)
     reason = curve.doubt() or _disagreement(case, declared.by_curve)
     if reason:
@@ -89,9 +97,10 @@ def _examined(
 ) -> PriorSensitivity:
     model, strength = case.weighed.model, case.strength
     means = _means(curve, declared.mean)
+    made = families(reference_family(model, strength, float(means[-1])))
     curves = tuple(
         FamilyCurve(one.name, one.words, tuple(average(curve, one.member(float(mean))) for mean in means))
-        for one in families(reference_family(model, strength, float(means[-1])))
+        for one in made
     )
     say("local p-value")
     comparison = case.comparison
@@ -109,7 +118,7 @@ def _examined(
         families=curves,
         bounds=bounds,
         local=local,
-        crossings=_crossings(curves, means),
+        crossings=_crossings(curve, made, curves, means),
         posterior=posterior,
         needed=_needed(case, bounds, posterior),
         scalings=case.power_scalings(say),
@@ -184,13 +193,20 @@ def _bounds(curve: StrengthCurve, local: LocalP | None) -> Iterator[Bound]:
         yield Bound("p-value", float(ln_largest_from_p(local.p)), 0.0)
 
 
-def _crossings(curves: tuple[FamilyCurve, ...], means: Array) -> dict[str, tuple[Crossing, ...]]:
-    return {
-        scale.name: tuple(
-            crossing for one in curves for crossing in crossings(one.name, means, one.averages, scale)
-        )
-        for scale in SCALES
-    }
+def _crossings(
+    curve: StrengthCurve, made: tuple[Family, ...], curves: tuple[FamilyCurve, ...], means: Array
+) -> dict[str, tuple[Crossing, ...]]:
+    found: dict[str, tuple[Crossing, ...]] = {}
+    for scale in SCALES:
+        of_scale: list[Crossing] = []
+        for family, known in zip(made, curves, strict=True):
+
+            def at(mean: float, family: Family = family) -> Average:
+                return average(curve, family.member(mean))
+
+            of_scale += crossings(family.name, means, known.averages, scale, at)
+        found[scale.name] = tuple(of_scale)
+    return found
 
 
 def _needed(case: Case, bounds: tuple[Bound, ...], posterior: float) -> tuple[NeededPrior, ...]:

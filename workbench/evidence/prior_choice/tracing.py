@@ -94,6 +94,7 @@ def trace(
     strength: str,
     against: Evidence,
     seed: np.random.SeedSequence,
+    is_nested: bool,
     say: Say = lambda _: None,
 ) -> StrengthCurve:
     """Return ln R of a strength from 0 to where it is below the floor.
@@ -107,12 +108,15 @@ def trace(
         strength: the parameter's name.
         against: the evidence that R is taken against; it has a value.
         seed: where every random number comes from.
+        is_nested: True where the hypothesis at strength 0 is the other one, so that R is 1 there.
         say: told how it goes on.
 
     Returns:
         The curve, with nodes also at its largest R.
     """
     probe = _Probe(analysis, hypothesis, strength, against.ln_evidence or 0.0, seed, say)
+    if is_nested:
+        probe.known[0.0] = replace(against, error=0.0)
     is_ended = _spread(probe, float(analysis.parameter(strength).prior.median))
     between = _refine(probe)
     strengths, ln_ratio = probe.nodes()
