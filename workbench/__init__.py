@@ -59,6 +59,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.hypotheses.uncertainties": ("Effect", "Uncertainty"),
     "workbench.hypotheses.file.writing": ("write_analysis",),
     "workbench.likelihood.fit": ("fit",),
+    "workbench.records.scan_reading": ("read_scan",),
 }
 _HOME_OF = {name: home for home, names in _HOMES.items() for name in names}
 

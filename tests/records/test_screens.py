@@ -11,6 +11,7 @@ import pytest
 
 from tests.records import hand_built as hand
 from tests.records import hand_built_priors as hand_priors
+from tests.records import hand_scans as scans
 from workbench.evidence.results import Evidence
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.hypothesis import Hypothesis
@@ -20,6 +21,8 @@ from workbench.records.screens.check import check_screen
 from workbench.records.screens.fit import fit_screen, value_text
 from workbench.records.screens.layout import WIDEST, columns, plain_ascii, wide_columns
 from workbench.records.screens.priors import priors_screen
+from workbench.records.screens.reading import reading_screen
+from workbench.records.screens.scan import scan_screen
 from workbench.records.screens.weigh import weigh_screen
 
 EXPECTED = Path(__file__).parents[1] / "expected"
@@ -34,6 +37,15 @@ SCREENS: dict[str, Callable[[], str]] = {
     "weigh-ascii": lambda: plain_ascii(weigh_screen(hand.weighed())),
     "check": lambda: check_screen(hand.checked()),
     "check-planning": lambda: check_screen(replace(hand.checked(()), analysis=planned())),
+    "scan": lambda: scan_screen(scans.outcome()),
+    "scan-ascii": lambda: plain_ascii(scan_screen(scans.outcome(scans.over_mass()))),
+    "scan-over-mass": lambda: scan_screen(scans.outcome(scans.over_mass())),
+    "scan-over-strength": lambda: scan_screen(scans.outcome(scans.over_strength())),
+    "scan-not-established": lambda: scan_screen(scans.outcome(scans.unestablished())),
+    "scan-nowhere": lambda: scan_screen(scans.outcome(scans.nowhere())),
+    "reprior": lambda: reading_screen(scans.reading()),
+    "reprior-averaged": lambda: reading_screen(scans.reading(scans.over_mass(), {})),
+    "reprior-not-established": lambda: reading_screen(scans.reading(scans.unestablished())),
     "fit": lambda: fit_screen(hand.fitted()),
     "priors": lambda: priors_screen(hand_priors.examined()),
     "priors-against": lambda: priors_screen(hand_priors.examined(hand_priors.examination(4.0))),

@@ -26,6 +26,7 @@ COMMANDS = {
     ),
     "ledger": ("workbench.commands.ledger", "what carries the evidence: by bin, region and uncertainty"),
     "fit": ("workbench.commands.fit", "maximum likelihood of each hypothesis, with errors and pulls"),
+    "scan": ("workbench.commands.scan", "updating ratio along signal parameters, free of their priors"),
     "backgrounds": (
         "workbench.commands.backgrounds",
         "alternatives of the backgrounds: their evidences, and the signal that each would fake",

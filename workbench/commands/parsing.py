@@ -37,7 +37,7 @@ class Parser(argparse.ArgumentParser):
             raise InputError(self._incomplete(error)) from error
         if strangers:
             raise InputError(*(self._stranger(word) for word in strangers))
-        if found.file is None:
+        if found.file is None and getattr(found, "reprior", None) is None:
             raise InputError(
                 Problem("No file was named", self.prog, "no FILE", "one file", f"{self.prog} FILE, or --help")
             )

@@ -7,16 +7,22 @@ from pathlib import Path
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
 from workbench.errors import InputError, Problem, quoted
+from workbench.evidence.ratio.reading import profile, sheet, shown_values
 from workbench.plots.ledger_page import ledger_page
 from workbench.plots.page import KINDS, backgrounds_page, break_point_page, picture_bytes, weighing_page
 from workbench.plots.priors_page import priors_page
+from workbench.plots.scan_page import scan_page
 from workbench.records.outcomes import (
     BackgroundsOutcome,
     BreakPointOutcome,
     LedgerOutcome,
     PriorsOutcome,
+    ScanOutcome,
     WeighOutcome,
 )
+
+_POINTS = 801
+_MOST_PARAMETERS = 2
 
 
 def refuse_other_kinds(option: str, name: str) -> None:
@@ -93,6 +99,33 @@ def save_ledger(outcome: LedgerOutcome, name: str) -> None:
 def save_priors(outcome: PriorsOutcome, name: str) -> None:
     """Draw what priors do into a file, whole or not at all; see `save_weighed`."""
     write_bytes_atomically(Path(name), picture_bytes(priors_page(outcome), _kind(name)))
+
+
+def save_scan(outcome: ScanOutcome, name: str) -> None:
+    """Draw an updating ratio into a file, whole or not at all.
+
+    Args:
+        outcome: what `scan` found.
+        name: the file.
+
+    Raises:
+        InputError: if it can't be written, R is known nowhere, or there are more than two parameters.
+    """
+    found = outcome.found
+    if len(found.over) > _MOST_PARAMETERS:
+        raise InputError(
+            Problem(
+                "A picture of more than two parameters",
+                "--picture",
+                ", ".join(quoted(one) for one in found.over),
+                "one or two parameters",
+                "name them with --over: the others are averaged over their stated priors",
+            )
+        )
+    read = (
+        sheet(found) if len(found.over) == _MOST_PARAMETERS else profile(found, shown_values(found, _POINTS))
+    )
+    write_bytes_atomically(Path(name), picture_bytes(scan_page(found, read), _kind(name)))
 
 
 def _kind(name: str) -> str:

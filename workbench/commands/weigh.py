@@ -14,6 +14,7 @@ from workbench.commands.inputs import (
     refuse_planning,
 )
 from workbench.commands.parsing import Parser
+from workbench.commands.reprior import add_reprior_options, read_again, refuse_priors_alone
 from workbench.commands.terminal import Progress
 from workbench.ensembles.adequacy import adequacy
 from workbench.evidence.weigh import weigh
@@ -29,11 +30,15 @@ def add_options(parser: Parser) -> None:
     add_seed_option(parser)
     add_pseudo_experiments_option(parser)
     add_histogram_options(parser)
+    add_reprior_options(parser)
     parser.add_argument("--picture", metavar="FILE", help="draw odds and counts into a .png, .svg or .pdf")
 
 
 def run(options: argparse.Namespace) -> int:
     """Weigh the hypotheses and return the exit code: 0, or 1 when an evidence is not established."""
+    if options.reprior is not None:
+        return read_again(options)
+    refuse_priors_alone(options)
     refuse_unwritable("--output", options.output)
     if options.picture is not None:
         from workbench.commands.pictures import refuse_other_kinds

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import re
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
@@ -12,7 +13,8 @@ from workbench.counts.files import read_bytes, text_of, write_text_atomically
 from workbench.errors import InputError, Problem
 
 FORMAT = 1
-COMMANDS = ("weigh", "check", "fit", "backgrounds", "breakpoint", "ledger", "priors")
+_ROW = re.compile(r"\[\n(?:\s*(?:-?\d[\d.eE+-]*|null),?\n)+\s*\]")  # numbers, one a line: put on one line
+COMMANDS = ("weigh", "check", "fit", "scan", "reprior", "backgrounds", "breakpoint", "ledger", "priors")
 
 
 def record_text(record: Mapping[str, Any], *, only_ascii: bool = False) -> str:
@@ -22,7 +24,8 @@ def record_text(record: Mapping[str, Any], *, only_ascii: bool = False) -> str:
         record: what `weigh_record`, `check_record` or `fit_record` made.
         only_ascii: True to escape every other character, for a terminal that can't show it.
     """
-    return json.dumps(_finite(record), indent=1, ensure_ascii=only_ascii, allow_nan=False) + "\n"
+    text = json.dumps(_finite(record), indent=1, ensure_ascii=only_ascii, allow_nan=False)
+    return _ROW.sub(lambda row: " ".join(row[0].split()).replace("[ ", "[").replace(" ]", "]"), text) + "\n"
 
 
 def write_record(record: Mapping[str, Any], path: str | Path) -> None:

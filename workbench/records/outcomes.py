@@ -12,8 +12,10 @@ from workbench.evidence.backgrounds import Backgrounds
 from workbench.evidence.breaking.results import BreakPoint
 from workbench.evidence.ledger.results import Ledger
 from workbench.evidence.prior_choice.results import PriorSensitivity
+from workbench.evidence.ratio.results import Average, Scan
 from workbench.evidence.results import Comparison, Weighing
 from workbench.hypotheses.analysis import Analysis
+from workbench.hypotheses.priors import Prior
 from workbench.likelihood.results import Fit
 
 
@@ -86,6 +88,37 @@ class FitOutcome:
     analysis: Analysis
     origin: Origin
     fits: tuple[Fit, ...]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class ScanOutcome:
+    """What `scan` found."""
+
+    analysis: Analysis
+    origin: Origin
+    found: Scan
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class ReadingOutcome:
+    """What another prior makes of a saved scan.
+
+    Attributes:
+        record: the record's file as the user gave it.
+        record_digest: the record's own digest.
+        title, file: the title of the analysis that was scanned, and its file.
+        found: the scan.
+        asked: the priors that the reader gave, by parameter.
+        average: the Bayes factor under them.
+    """
+
+    record: str
+    record_digest: str
+    title: str
+    file: str
+    found: Scan
+    asked: Mapping[str, Prior]
+    average: Average
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from workbench.ensembles.results import Adequacy
 from workbench.errors import Caution, quoted
 from workbench.evidence.breaking.results import Breaking, BreakPoint
+from workbench.evidence.ratio.results import Scan
 from workbench.evidence.results import Comparison
 from workbench.hypotheses.analysis import Analysis, Parameter
 from workbench.likelihood.coordinates import coordinates_of
@@ -145,6 +146,60 @@ def _look_elsewhere(analysis: Analysis, comparisons: Sequence[Comparison], stren
         "The place of the signal is taken as known beforehand; if these data suggested it, the odds are too "
         "high.",
     )
+
+
+def scan_cautions(found: Scan) -> tuple[Caution, ...]:
+    """Return what holds for every updating ratio, worded for this one.
+
+    Args:
+        found: the scan.
+    """
+    peak = Caution(
+        "peak",
+        "R at its peak is no Bayes factor: that place was chosen by these counts. A Bayes factor is the "
+        "average of R over a prior stated before looking.",
+    )
+    return (peak, *_ratio_cautions(found))
+
+
+def reading_cautions(found: Scan) -> tuple[Caution, ...]:
+    """Return what holds for a Bayes factor under priors that a reader brings.
+
+    Args:
+        found: the scan that they are applied to.
+    """
+    chosen = Caution(
+        "chosen-prior",
+        "A prior narrowed onto the peak of R after seeing it gives odds that are too high: bring one that "
+        "was defended before looking at these counts.",
+    )
+    return (chosen, *_ratio_cautions(found))
+
+
+def _ratio_cautions(found: Scan) -> tuple[Caution, ...]:
+    cautions = []
+    if found.averaged:
+        names = " and ".join(f"{quoted(name)} ({prior.text()})" for name, prior in found.averaged.items())
+        cautions.append(
+            Caution(
+                "averaged",
+                f"R holds under the stated prior of {names}, which it is averaged over. Only over all signal "
+                "parameters is it free of their priors.",
+            )
+        )
+    cautions += [
+        Caution(
+            "nuisance-priors",
+            "Priors of nuisance parameters, uncertainties included, are part of R and stay as stated.",
+        ),
+        Caution("numerical", "Every ± is numerical only."),
+        Caution(
+            "review",
+            "Odds are one input to a claim of discovery; the decision belongs to the collaboration's own "
+            "review.",
+        ),
+    ]
+    return tuple(cautions)
 
 
 def prior_words(parameter: Parameter) -> str:

@@ -21,8 +21,8 @@ Array = npt.NDArray[np.float64]
 
 OUTSIDE = 1e-4  # of a prior's probability may lie outside a range
 _TAIL = 1e-6
-_STEPS = 3  # between strength nodes
-_QUANTILES = 48  # of a strength's prior
+_STEPS = 2  # between strength nodes
+_QUANTILES = 40  # of a strength's prior
 _PANEL_CELLS = 18
 _PRIOR_CELLS = 256
 _PEAK_CELLS = 96

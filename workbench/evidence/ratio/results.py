@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
+import numpy.typing as npt
 
 from workbench.errors import InputError, Problem, quoted
 from workbench.evidence.ratio.averages import averaged
@@ -14,6 +15,9 @@ from workbench.evidence.ratio.reaching import refuse_outside
 from workbench.evidence.ratio.surface import Surface
 from workbench.hypotheses.priors import Prior
 
+Array = npt.NDArray[np.float64]
+
+_STEPS, _ROUNDS, _CLOSER = 21, 5, 0.3  # in the search for the peak between nodes
 _RULE = 1e-3  # nats by which averages over cells may be off, of any surface
 
 
@@ -159,17 +163,30 @@ class Scan:
 
     @property
     def peak(self) -> tuple[dict[str, float], float, float]:
-        """Return the node where R is largest, ln R there and its error [nats]."""
-        return self._node(int(np.argmax(self.known.ln_ratio)))
-
-    @property
-    def lowest(self) -> tuple[dict[str, float], float, float]:
-        """Return the node where R is smallest, ln R there and its error [nats]."""
-        return self._node(int(np.argmin(self.known.ln_ratio)))
-
-    def _node(self, index: int) -> tuple[dict[str, float], float, float]:
+        """Return where R is largest, ln R there and its error [nats]."""
         surface = self.known
-        place = np.unravel_index(index, surface.ln_ratio.shape)
-        values = dict(zip(surface.names, surface.nodes[place].tolist(), strict=True))
-        ordered = {name: values[name] for name in self.over}
-        return ordered, float(surface.ln_ratio[place]), float(surface.error[place])
+        place = np.unravel_index(int(np.argmax(surface.ln_ratio)), surface.ln_ratio.shape)
+        best, reach = surface.nodes[place], self._spacing(place)
+        low, high = np.array(list(surface.ranges.values())).T
+        steps = np.linspace(-1.0, 1.0, _STEPS)
+        for _ in range(_ROUNDS):
+            for axis in range(best.size):
+                points = np.repeat(best[None], _STEPS, axis=0)
+                points[:, axis] = np.clip(best[axis] + reach[axis] * steps, low[axis], high[axis])
+                best = points[int(np.argmax(surface.at(points)[0]))]
+            reach = reach * _CLOSER
+        ln_ratio, error = surface.at(best[None])
+        values = dict(zip(surface.names, best.tolist(), strict=True))
+        return {name: values[name] for name in self.over}, float(ln_ratio[0]), float(error[0])
+
+    def _spacing(self, place: tuple[np.intp, ...]) -> Array:
+        """Return (parameter,) distance to the neighbouring nodes of one."""
+        surface = self.known
+        found = []
+        for one, value in zip(surface.panels, surface.outer[place[0]], strict=True):
+            away = np.abs(one.nodes - value)
+            found.append(float(away[away > 0.0].min()) * 2.0)
+        if surface.strengths is not None:
+            nodes = surface.strengths.nodes[place[0]]
+            found.append(float(np.abs(np.diff(nodes))[max(int(place[1]) - 1, 0) : int(place[1]) + 1].max()))
+        return np.array(found)
