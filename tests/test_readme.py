@@ -94,7 +94,11 @@ def test_a_command_that_is_shown_has_the_options_that_it_is_given(words: list[st
     if command in COMMANDS:
         parser = Parser(prog=command)
         import_module(COMMANDS[command][0]).add_options(parser)
-        assert (ROOT / parser.understand(rest).file).is_file()
+        options = parser.understand(rest)
+        if getattr(options, "reprior", None) is None:
+            assert (ROOT / options.file).is_file()
+        else:  # a record that a command shown above it keeps
+            assert options.reprior in {word for others, _ in commands() for word in others[2:-1]}
 
 
 def test_the_worked_example_is_what_the_program_prints(
@@ -121,6 +125,25 @@ def test_the_priors_that_are_shown_are_what_the_program_prints(
     now = again[again.index('The prior of "strength"') : again.index("\n\nCautions")] + "\n"
     assert without_numbers(shown.removeprefix("...\n")) == without_numbers(now)
     assert strays(shown, now) == []
+
+
+def test_the_scan_that_is_shown_is_what_the_program_prints(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+) -> None:
+    shown = [screen for words, screen in commands() if words[1] == "scan"]
+    again = run(["scan", "data/skerry/skerry.toml", "--over", "mass"], capsys, monkeypatch)
+    now = again[again.index("Updating ratio R") : again.index("\n\nCautions")] + "\n"
+    without_bars = [re.sub(r"(?m) *[█◂]*│█* *", "", text) for text in (shown[0], now)]
+    assert without_numbers(without_bars[0].removeprefix("...\n")) == without_numbers(without_bars[1])
+    assert strays(shown[0], now) == []
+    kept = str(tmp_path / "skerry-scan.json")
+    run(["scan", "data/skerry/skerry.toml", "--output", kept], capsys, monkeypatch)
+    ((words, shown_reading),) = [(words, text) for words, text in commands() if "--reprior" in words]
+    reading = run([kept if word == "skerry-scan.json" else word for word in words[1:]], capsys, monkeypatch)
+    after = reading[reading.index("Priors") : reading.index("\n\nCautions")] + "\n"
+    before = shown_reading[shown_reading.index("Priors") :]
+    assert without_numbers(before) == without_numbers(after)
+    assert strays(before, after) == []
 
 
 def test_the_backgrounds_that_are_shown_are_what_the_program_prints(

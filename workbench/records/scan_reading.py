@@ -54,6 +54,9 @@ def read_scan(path: str | Path) -> Scan:
 
     Raises:
         InputError: if the file is no record of a scan, or was changed after it was written.
+
+    Source:
+        None, definition.
     """
     return read_saved_scan(path).scan
 
