@@ -67,6 +67,7 @@ def test_what_cannot_be_done_is_refused_with_2(
         (broken.break_point(), 0),
         (broken.not_within(), 0),
         (broken.below_already(), 0),
+        (broken.not_settled(), 1),
         (broken.not_established(), 1),
     ],
 )

@@ -76,3 +76,10 @@ def not_established() -> BreakPoint:
         None,
         None,
     )
+
+
+def not_settled() -> BreakPoint:
+    """Return a search that ran out of steps."""
+    reason = '"resonance": no end within 43 pairs of evidences; ask for a smaller range'
+    given = replace(below_already(), ending=Breaking.NOT_SETTLED, below=3.0, reason=reason)
+    return replace(given, evidences=43)

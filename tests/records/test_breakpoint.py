@@ -22,6 +22,7 @@ SCREENS: dict[str, Callable[[], str]] = {
     "breakpoint": lambda: breakpoint_screen(broken.outcome()),
     "breakpoint-not-within": lambda: breakpoint_screen(broken.outcome(broken.not_within())),
     "breakpoint-below-already": lambda: breakpoint_screen(broken.outcome(broken.below_already())),
+    "breakpoint-not-settled": lambda: breakpoint_screen(broken.outcome(broken.not_settled())),
     "breakpoint-not-established": lambda: breakpoint_screen(broken.outcome(broken.not_established())),
 }
 
@@ -61,7 +62,9 @@ def test_the_record_has_its_keys_and_is_read_back(tmp_path: Path) -> None:
     assert read_record(tmp_path / "b.json") == json.loads(record_text(record))
 
 
-@pytest.mark.parametrize("found", [broken.not_within(), broken.below_already(), broken.not_established()])
+@pytest.mark.parametrize(
+    "found", [broken.not_within(), broken.below_already(), broken.not_settled(), broken.not_established()]
+)
 def test_what_was_not_found_is_null(found: BreakPoint) -> None:
     record = breakpoint_record(broken.outcome(found))
     assert record["under_peak"] is None

@@ -13,7 +13,6 @@ from workbench.commands.terminal import Progress
 from workbench.errors import InputError, Problem
 from workbench.evidence.breaking.break_point import DEFAULT_BELOW, DEFAULT_WITHIN, break_point
 from workbench.evidence.breaking.question import signal_hypothesis
-from workbench.evidence.breaking.results import Breaking
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.distortion import DEFAULT_TERMS, MOST_TERMS
 from workbench.records.breakpoint_record import breakpoint_record
@@ -59,7 +58,7 @@ def add_options(parser: Parser) -> None:
 
 
 def run(options: argparse.Namespace) -> int:
-    """Find the break point and return the exit code: 0, or 1 when an evidence is not established."""
+    """Find the break point and return the exit code: 0, or 1 when there is no established answer."""
     refuse_unwritable("--output", options.output)
     if options.picture is not None:
         from workbench.commands.pictures import refuse_other_kinds
@@ -72,7 +71,7 @@ def run(options: argparse.Namespace) -> int:
         save_break_point(outcome, options.picture)
     cautions = outcome.analysis.cautions
     deliver(options, lambda: breakpoint_screen(outcome), lambda: breakpoint_record(outcome), cautions)
-    return 1 if outcome.found.ending is Breaking.NOT_ESTABLISHED else 0
+    return 0 if outcome.found.ending.is_answer else 1
 
 
 def _found(options: argparse.Namespace) -> BreakPointOutcome:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from workbench.counts.region import Region
-from workbench.evidence.breaking.results import Breaking, BreakPoint, Distorted
+from workbench.evidence.breaking.results import BreakPoint, Distorted
 from workbench.plots.counts import axis_words, runs
 from workbench.plots.frame import clean_axes
 from workbench.plots.palette import LIGHT, Palette
@@ -33,7 +33,7 @@ def draw_break_point_words(axes: Axes, found: BreakPoint, palette: Palette = LIG
     axes.set_axis_off()
     axes.figure.set_facecolor(palette.paper)
     axes.set(xlim=(0.0, 1.0), ylim=(0.0, 1.0))
-    if found.ending is Breaking.NOT_ESTABLISHED:
+    if not found.ending.is_answer:
         sentences = ["not established: no break point is given", found.reason]
     else:
         sentences = [break_point_words(found)]

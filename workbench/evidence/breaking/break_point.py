@@ -8,15 +8,14 @@ from dataclasses import replace
 import numpy as np
 import numpy.typing as npt
 
+from workbench.errors import quoted
+from workbench.evidence.breaking.pairs import declared_pair, pair_at
 from workbench.evidence.breaking.question import Question, asked
 from workbench.evidence.breaking.results import Breaking, BreakPoint, Distorted
-from workbench.evidence.breaking.search import Target, nearest, stepped
-from workbench.evidence.breaking.trials import Anchor, draws_of
-from workbench.evidence.exact import linear_rates
-from workbench.evidence.weigh import Weighed, weigh_hypothesis
+from workbench.evidence.breaking.search import Target, is_settled, nearest, onward
+from workbench.evidence.breaking.trials import Anchor
 from workbench.hypotheses.analysis import Analysis
-from workbench.likelihood.distortions import held_distortion, nominal_background
-from workbench.likelihood.model import Model
+from workbench.likelihood.distortions import nominal_background
 
 Array = npt.NDArray[np.float64]
 
@@ -73,7 +72,7 @@ def break_point(
         None, definition; the search names its sources.
     """
     question = asked(analysis, below, hypothesis, terms, regions, within, seed)
-    origin = _declared_pair(question)
+    origin = declared_pair(question)
     first = BreakPoint(
         hypothesis=question.models[0].hypothesis,
         against=question.models[1].hypothesis,
@@ -104,7 +103,7 @@ def _searched(
     def make(coefficients: Array, again: int = 0) -> Anchor:
         nonlocal made
         made += 1
-        return _pair(question, coefficients, origin, again)
+        return pair_at(question, coefficients, origin, again)
 
     found = nearest(make, origin, target, _ways(question, signal))
     is_met = not found.reason and target.is_met(found)
@@ -112,7 +111,12 @@ def _searched(
     if any(one.reason for one in (found, *fresh)):
         reason = next(one.reason for one in (found, *fresh) if one.reason)
         return replace(first, ending=Breaking.NOT_ESTABLISHED, reason=reason, evidences=made)
-    places = np.array([stepped(one, target) for one in fresh] or [found.coefficients])
+    if not is_met and not is_settled(found, target):
+        reason = (
+            f"{quoted(first.hypothesis)}: no end within {made} pairs of evidences; ask for a smaller range"
+        )
+        return replace(first, ending=Breaking.NOT_SETTLED, reason=reason, evidences=made)
+    places = np.array([onward(one, target) for one in fresh] or [found.coefficients])
     place = places.mean(axis=0)
     last = make(place, _AGAIN + 1)
     ended = replace(
@@ -137,7 +141,7 @@ def _measured(
     """
     place = places.mean(axis=0)
     size = float(np.linalg.norm(place))
-    steepness = abs(float(last.trial(place).slope @ place)) / size
+    steepness = abs(float(_slope_at(last) @ place)) / size
     runs = float(np.sqrt(len(places)))
     least = last.error / runs / steepness / size
     others = [_distorted(question, one, signal) for one in places]
@@ -154,43 +158,9 @@ def _measured(
     )
 
 
-def _pair(question: Question, coefficients: Array, near: Anchor, again: int = 0) -> Anchor:
-    """Return the pair of evidences under a distortion; each `again` has random numbers of its own."""
-    factors = question.factors(coefficients)
-    made = []
-    for model, seed, before in zip(question.models, question.seeds, near.pair, strict=True):
-        key = (*seed.spawn_key, again) if again else seed.spawn_key
-        child = np.random.SeedSequence(seed.entropy, spawn_key=key)
-        made.append(_weighed(held_distortion(model, factors), child, before))
-    return _anchor(question, coefficients, (made[0], made[1]))
-
-
-def _declared_pair(question: Question) -> Anchor:
-    """Return the pair of evidences without a distortion, as `weigh` makes them."""
-    signal, against = question.models
-    first = _weighed(against, question.seeds[1])
-    second = _weighed(signal, question.seeds[0], first)
-    return _anchor(question, np.zeros(len(question.functions)), (second, first))
-
-
-def _weighed(model: Model, seed: np.random.SeedSequence, before: Weighed | None = None) -> Weighed:
-    """Return a hypothesis' evidence with draws, the evidence itself in closed form where that holds."""
-    near = before.grid.mode if before is not None and before.grid is not None else {}
-    drawn = weigh_hypothesis(model, seed, closed_forms=False, near=near)
-    if model.size == 0 or linear_rates(model) is None:
-        return drawn
-    return replace(drawn, evidence=weigh_hypothesis(model, seed, near=near).evidence)
-
-
-def _anchor(question: Question, coefficients: Array, pair: tuple[Weighed, Weighed]) -> Anchor:
-    functions, bins = question.functions, question.bins
-    if not all(one.evidence.established and (one.sample or not one.model.size) for one in pair):
-        return Anchor(coefficients, functions, pair, ())
-    factors = np.exp(coefficients @ functions)
-    draws = tuple(
-        draws_of(one, model, bins, factors) for one, model in zip(pair, question.models, strict=True)
-    )
-    return Anchor(coefficients, functions, pair, draws)
+def _slope_at(anchor: Anchor) -> Array:
+    here = anchor.trial(anchor.coefficients)
+    return here.slope if here.is_reliable else anchor.tilt()
 
 
 def _mean_signal(question: Question, origin: Anchor) -> Array:

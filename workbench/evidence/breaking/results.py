@@ -17,7 +17,13 @@ class Breaking(Enum):
     FOUND = "a distortion of this size brings ln B down to the threshold"
     BELOW_ALREADY = "ln B is below the threshold without any distortion"
     NOT_WITHIN = "no smooth distortion within the range brings ln B below the threshold"
+    NOT_SETTLED = "the search came to no end: the counts are too many for how far a distortion may go"
     NOT_ESTABLISHED = "an evidence on the way is not established"
+
+    @property
+    def is_answer(self) -> bool:
+        """Tell whether the question is answered, with a break point or with the word that there is none."""
+        return self not in {Breaking.NOT_SETTLED, Breaking.NOT_ESTABLISHED}
 
 
 @dataclass(frozen=True, slots=True, eq=False)

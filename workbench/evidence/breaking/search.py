@@ -11,7 +11,7 @@ until |c|^2/2 + kappa max(0, ln B - threshold) falls.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -20,16 +20,21 @@ from workbench.evidence.breaking.trials import Anchor, Trial
 
 Array = npt.NDArray[np.float64]
 
-_MOST_ANCHORS = 14
+_MOST_ANCHORS = 20
 _MOST_STEPS = 60
 _SHORTEST = 1.0 / 1024.0
 _HALVINGS = 40
 _SETTLED = 0.004  # of the distortion's size
+_ARRIVED = 5e-4  # of the size of the goal
 _SAME = 1e-5
 _CLOSE = 0.003  # nats above the threshold that count as at it
 _INSIDE = 0.93  # of the size found, where other directions are tried
 _DOUBTFUL = 1.0  # nats above the threshold at which another direction is made by the engine
 _LEAST_SLOPE = 1e-9
+_CLOSE_BY = 0.2  # of the size; a shorter step is not doubted
+_SHORTER = 3  # times that a long step is halved where it went wrong
+_NEAR = 0.05  # of the size, that a settled search would still step
+_PROMISE = 0.05  # nats that it would still gain
 
 
 @dataclass(frozen=True, slots=True)
@@ -110,18 +115,67 @@ def _descended(make: Callable[[Array], Anchor], start: Anchor, target: Target) -
     """Return where steps from a pair of evidences end, made by the engine again as often as needed."""
     anchor = start
     for _ in range(_MOST_ANCHORS):
-        place = stepped(anchor, target)
+        place = onward(anchor, target)
         moved = _size(place - anchor.coefficients)
-        if moved <= _SETTLED * _size(place) and (
-            target.is_met(anchor) or _size(place) > (1.0 - _SETTLED) * target.within
-        ):
+        is_at_edge = _size(place) > (1.0 - _SETTLED) * target.within
+        if moved <= _SETTLED * _size(place) and (target.is_met(anchor) or is_at_edge):
             break
         if moved <= _SAME:
             break
-        anchor = make(place)
+        further = make(place)
+        for _ in range(_SHORTER):
+            if moved <= _CLOSE_BY * _size(place) or not _is_worse(further, anchor, target):
+                break
+            place = 0.5 * (place + anchor.coefficients)
+            further = make(place)
+        anchor = further
         if anchor.reason:
             break
     return anchor
+
+
+def _is_worse(further: Anchor, anchor: Anchor, target: Target) -> bool:
+    """Tell whether a long step went past where ln B is lowest, or to where nothing is established."""
+    if further.reason:
+        return True
+    return further.ln_bayes_factor > max(anchor.ln_bayes_factor, target.below)
+
+
+def onward(anchor: Anchor, target: Target) -> Array:
+    """Return where to make the next pair of evidences.
+
+    Args:
+        anchor: the last pair.
+        target: threshold and range.
+
+    Returns:
+        (term,) where its draws lead; where they don't reach half of the way, the goal of the linear response.
+    """
+    here = anchor.trial(anchor.coefficients)
+    if here.is_reliable:
+        place = stepped(anchor, target)
+        way = _size(_goal(here, target) - here.coefficients)
+        if _size(place - here.coefficients) >= 0.5 * way or way <= _SETTLED * _size(here.coefficients):
+            return place
+    else:
+        here = replace(here, slope=anchor.tilt())
+    return here.coefficients if _size(here.slope) < _LEAST_SLOPE else _goal(here, target)
+
+
+def is_settled(anchor: Anchor, target: Target) -> bool:
+    """Tell whether a pair of evidences is where the search wanted to end, and not where it ran out of steps.
+
+    Args:
+        anchor: the pair.
+        target: threshold and range.
+
+    Returns:
+        True where the next step would be short, or where what it promises is nothing.
+    """
+    here = anchor.trial(anchor.coefficients)
+    step = onward(anchor, target) - here.coefficients
+    slope = here.slope if here.is_reliable else anchor.tilt()
+    return _size(step) <= _NEAR * _size(here.coefficients) or float(-slope @ step) <= _PROMISE
 
 
 def stepped(anchor: Anchor, target: Target) -> Array:
@@ -141,7 +195,7 @@ def stepped(anchor: Anchor, target: Target) -> Array:
         if steepness < _LEAST_SLOPE:
             break
         goal = _goal(here, target)
-        if _size(goal - here.coefficients) < _SAME * max(_size(goal), target.within * 0.01):
+        if _size(goal - here.coefficients) < _ARRIVED * max(_size(goal), target.within * 0.01):
             break
         rate = 4.0 * max(_size(here.coefficients), _size(goal)) / steepness
         if _size(goal) >= target.within * (1.0 - 1e-9):

@@ -10,6 +10,7 @@ draws carry the ratio; their effective number says how far it can be trusted.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -26,9 +27,11 @@ from workbench.likelihood.slopes import negative_binomial_slopes, poisson_slopes
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 
-_MOST_NUMBERS = 20_000_000  # draws times bins that are kept
+_MOST_NUMBERS = 2_000_000  # draws times bins that are kept, so that a trial takes milliseconds
+_LEAST_DRAWS = 500
 _NEGLIGIBLE = 30.0  # nats below the largest weight
 _LEAST_EFFECTIVE = 60.0
+_LARGEST_NOISE = 0.15  # of a slope
 NO_DRAWS = "its posterior was not drawn from"
 
 
@@ -40,13 +43,30 @@ class Trial:
         coefficients: (term,) c.
         ln_bayes_factor: ln B [nats].
         slope: (term,) its derivatives [nats].
-        is_reliable: True when enough draws carry it.
+        is_reliable: True when enough draws carry it, and its slope stands out of their noise.
     """
 
     coefficients: Array
     ln_bayes_factor: float
     slope: Array
     is_reliable: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Carried:
+    """What draws say of one hypothesis under another distortion.
+
+    Attributes:
+        change: of ln Z [nats].
+        slope: (term,) derivatives of ln Z [nats].
+        noise: one standard error of the slope, all terms together [nats].
+        is_carried: True when enough draws carry it.
+    """
+
+    change: float
+    slope: Array
+    noise: float
+    is_carried: bool
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -69,10 +89,8 @@ class Draws:
     counts: Array
     at: Array
 
-    def moved(self, factors: Array, functions: Array) -> tuple[float, Array, bool]:
-        """Return the change of ln Z from the anchor's distortion, its slope, and if enough draws carry it.
-
-        A hypothesis without coordinates is one draw, and exact.
+    def moved(self, factors: Array, functions: Array) -> Carried:
+        """Return the change of ln Z from the anchor's distortion; one draw without coordinates is exact.
 
         Args:
             factors: (bin,) what multiplies the backgrounds.
@@ -89,8 +107,11 @@ class Draws:
         else:
             slopes = negative_binomial_slopes(self.counts, expected, variance)
             pulled = slopes.t * background + 2.0 * slopes.v * factors**2 * self.noise_background
+        slope = functions @ (weights @ pulled)
+        off = pulled @ functions.T - slope
+        noise = float(np.sqrt(np.sum((weights[:, None] * off) ** 2)))
         is_carried = weights.size == 1 or float(np.sum(weights**2)) * _LEAST_EFFECTIVE <= 1.0
-        return change, functions @ (weights @ pulled), is_carried
+        return Carried(change, slope, noise, is_carried)
 
     def expected(self, factors: Array) -> tuple[Array, Array | None]:
         """Return (draw, bin) expected events under a distortion, and their variance with template errors."""
@@ -109,12 +130,15 @@ class Anchor:
         functions: (term, bin) the smooth functions, at the distorted bins.
         pair: the signal hypothesis and the one that it is compared with.
         draws: their draws; empty where an evidence is not established.
+        tilt: returns (term,) derivatives of ln B from differences of quadratures, for where counts are so
+            many that draws tell them poorly.
     """
 
     coefficients: Array
     functions: Array
     pair: tuple[Weighed, Weighed]
     draws: tuple[Draws, ...]
+    tilt: Callable[[], Array]
 
     @property
     def reason(self) -> str:
@@ -142,12 +166,11 @@ class Anchor:
     def trial(self, coefficients: Array) -> Trial:
         """Return ln B under another distortion, carried there by the draws."""
         factors = np.exp(coefficients @ self.functions)
-        (up, slope_up, carried), (down, slope_down, against) = (
-            one.moved(factors, self.functions) for one in self.draws
-        )
-        moved = self.ln_bayes_factor + up - down
-        is_carried = (carried and against) or np.array_equal(coefficients, self.coefficients)
-        return Trial(coefficients, moved, slope_up - slope_down, bool(is_carried and np.isfinite(moved)))
+        up, down = (one.moved(factors, self.functions) for one in self.draws)
+        moved, slope = self.ln_bayes_factor + up.change - down.change, up.slope - down.slope
+        is_carried = (up.is_carried and down.is_carried) or np.array_equal(coefficients, self.coefficients)
+        is_clear = np.hypot(up.noise, down.noise) <= _LARGEST_NOISE * np.linalg.norm(slope)
+        return Trial(coefficients, moved, slope, bool(is_carried and is_clear and np.isfinite(moved)))
 
 
 def draws_of(weighed: Weighed, undistorted: Model, bins: Indices, factors: Array) -> Draws:
@@ -166,7 +189,8 @@ def draws_of(weighed: Weighed, undistorted: Model, bins: Indices, factors: Array
     points = np.zeros((1, 0)) if sample is None else sample.points
     ln_weights = np.zeros(len(points)) if sample is None else sample.ln_weights
     kept = np.flatnonzero(ln_weights > ln_weights.max() - _NEGLIGIBLE)
-    stride = max(1, -(-kept.size * bins.size // _MOST_NUMBERS))
+    most = max(_LEAST_DRAWS, _MOST_NUMBERS // bins.size)
+    stride = -(-kept.size // most)
     kept = kept[::stride]
     background, noise_background = _expected(undistorted, "background", points[kept], bins)
     signal, noise_signal = _expected(undistorted, "signal", points[kept], bins)

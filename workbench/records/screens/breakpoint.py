@@ -35,8 +35,8 @@ def breakpoint_screen(outcome: BreakPointOutcome) -> str:
     for note in outcome.origin.notes:
         lines += paragraph(note)
     lines += heading(f"Break point: {one_line(found.hypothesis)} against {one_line(found.against)}")
-    if found.ending is Breaking.NOT_ESTABLISHED:
-        closing = "Without two established evidences there is nothing to break."
+    if not found.ending.is_answer:
+        closing = f"In short: {found.ending.value}."
         lines += framed("NOT ESTABLISHED: NO BREAK POINT IS GIVEN", [found.reason + ".", closing])
     else:
         lines += _sizes(outcome)
