@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 import numpy as np
@@ -99,7 +100,7 @@ def examination(
         means=means,
         families=curves,
         bounds=bounds,
-        local=LocalP(9.61, 0.00097, {"strength": 1.0, "mass": 50.0}),
+        local=LocalP(9.61, 0.00097, math.log(0.00097), {"strength": 1.0, "mass": 50.0}),
         crossings={
             name: tuple(c for one, known in zip(made, curves, strict=True) for c in crossed(one, known, name))
             for name in (KASS_RAFTERY.name, JEFFREYS.name)

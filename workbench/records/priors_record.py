@@ -120,7 +120,8 @@ def _bound(one: Bound) -> dict[str, Any]:
 def _local(found: PriorSensitivity) -> dict[str, Any] | None:
     if found.local is None:
         return None
-    return {"p": found.local.p, "statistic": found.local.statistic, "at": dict(found.local.at)}
+    local = found.local
+    return {"p": local.p, "ln_p": local.ln_p, "statistic": local.statistic, "at": dict(local.at)}
 
 
 def _boundaries(found: PriorSensitivity) -> list[dict[str, Any]]:

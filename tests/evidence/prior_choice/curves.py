@@ -25,6 +25,7 @@ def curve_of(ln_ratio: Function, reach: float, nodes: int = 400, error: float = 
         np.ones(nodes, dtype=bool),
         ("",) * nodes,
         True,
+        1e12,
     )
 
 

@@ -29,7 +29,7 @@ def test_both_average_to_the_same_bayes_factors(file: str) -> None:
     analysis = read_analysis(DATA / file)
     surface = scan(analysis, ["strength"])
     name, against = analysis.hypotheses[1].name, weigh(analysis).evidences[0]
-    curve = trace(analysis, name, "strength", against, np.random.SeedSequence(4), is_nested=True)
+    curve = trace(analysis, name, "strength", against, np.random.SeedSequence(4), is_nested=True, scale=2.0)
     for prior in PRIORS:
         one, other = average(curve, prior), surface.reprior({"strength": prior})
         assert one.ln_bayes_factor is not None

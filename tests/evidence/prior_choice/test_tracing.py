@@ -13,6 +13,7 @@ from tests.evidence.prior_choice.curves import counted
 from tests.evidence.small_analyses import TAU, YIELD, counting, source
 from workbench.evidence.prior_choice.averages import average
 from workbench.evidence.prior_choice.curve import FLOOR, StrengthCurve
+from workbench.evidence.prior_choice.reference import first_equal
 from workbench.evidence.prior_choice.tracing import trace
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis
@@ -28,10 +29,13 @@ def text_of(prior: Prior) -> str:
 
 
 def traced(analysis: Analysis) -> StrengthCurve:
-    return trace(analysis, BOTH, "strength", weigh(analysis).evidences[0], SEED, is_nested=True)
+    scale = first_equal(compile_model(analysis, BOTH), "strength")
+    return trace(analysis, BOTH, "strength", weigh(analysis).evidences[0], SEED, is_nested=True, scale=scale)
 
 
-@pytest.mark.parametrize(("observed", "background"), [(0, 2.5), (1, 0.3), (9, 3.8), (14, 20.0), (400, 300.0)])
+@pytest.mark.parametrize(
+    ("observed", "background"), [(0, 2.5), (1, 0.3), (9, 3.8), (14, 20.0), (400, 300.0), (3, 1e-9)]
+)
 @pytest.mark.parametrize("prior", [Exponential(1.0), Uniform(0.0, 60.0), Uniform(0.0, 0.2)], ids=text_of)
 def test_a_count_on_a_known_background_has_the_curve_of_its_formula(
     observed: float, background: float, prior: Prior

@@ -27,5 +27,20 @@ def ln_largest_from_p(p: npt.ArrayLike) -> Array:
         T. Sellke, M.J. Bayarri, J.O. Berger, Calibration of p values for testing precise null hypotheses,
         Am. Stat. 55 (2001) 62, equation 2.
     """
-    value = np.minimum(np.asarray(p, dtype=float), np.exp(-1.0))
-    return np.asarray(-1.0 - np.log(value) - np.log(-np.log(value)))
+    return ln_largest_from_ln_p(np.log(np.asarray(p, dtype=float)))
+
+
+def ln_largest_from_ln_p(ln_p: npt.ArrayLike) -> Array:
+    """Return the same for p-values too small to be written down.
+
+    Args:
+        ln_p: (...) ln of the p-value; <= 0.
+
+    Returns:
+        (...) the bound on ln B10 [nats].
+
+    Source:
+        `ln_largest_from_p`.
+    """
+    value = np.minimum(np.asarray(ln_p, dtype=float), -1.0)
+    return np.asarray(-1.0 - value - np.log(-value))

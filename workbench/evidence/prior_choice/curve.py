@@ -1,5 +1,9 @@
 """ln R of one strength: the marginal likelihood with the strength held, over the other hypothesis' evidence.
 
+Between nodes ln R is a cubic spline in c ln(1 + s/c), with c the strength at which the signal is as large as
+the background where it first is: for a count, ln R = n ln(1 + s/c) - s y, which bends sharply in s near 0
+but not in that.
+
 R holds no prior of the strength: the Bayes factor under any prior is the average of R over it. Nuisance
 parameters, and signal parameters other than this strength, are averaged over their stated priors.
 """
@@ -35,6 +39,7 @@ class StrengthCurve:
         established: (node,) True where the evidence is.
         reasons: (node,) why it is not; empty where it is.
         is_ended: True when ln R has fallen below the floor at the last node.
+        scale: c.
     """
 
     strengths: Array
@@ -45,6 +50,7 @@ class StrengthCurve:
     established: Flags
     reasons: tuple[str, ...]
     is_ended: bool
+    scale: float
 
     @property
     def reach(self) -> float:
@@ -74,7 +80,7 @@ class StrengthCurve:
 
     def at(self, strengths: Array) -> Array:
         """Return ln R at some strengths, (...) [nats]; the last node's slope goes on beyond it."""
-        return smooth(self.strengths, self.ln_ratio, strengths)
+        return smooth(self.strengths, self.ln_ratio, strengths, self.scale)
 
     def error_at(self, strength: float) -> float:
         """Return the whole numerical error of ln R at a strength [nats]."""
@@ -92,22 +98,39 @@ class StrengthCurve:
         return ""
 
 
-def smooth(nodes: Array, values: Array, wanted: Array) -> Array:
-    """Return a cubic spline through nodes, its last slope going on beyond the last node.
+def stretched(strengths: Array, scale: float) -> Array:
+    """Return c ln(1 + s/c), in which ln R is smooth.
 
     Args:
-        nodes: (node,) ascending.
+        strengths: (...) s; >= 0.
+        scale: c; > 0.
+    """
+    return np.asarray(scale * np.log1p(strengths / scale))
+
+
+def middle(low: float, high: float, scale: float) -> float:
+    """Return the strength half way between two in c ln(1 + s/c)."""
+    half = 0.5 * (np.log1p(low / scale) + np.log1p(high / scale))
+    return float(scale * np.expm1(half))
+
+
+def smooth(nodes: Array, values: Array, wanted: Array, scale: float) -> Array:
+    """Return a cubic spline through nodes, its last slope in s going on beyond the last node.
+
+    Args:
+        nodes: (node,) strengths, ascending.
         values: (node,) values there.
-        wanted: (...) where.
+        wanted: (...) strengths.
+        scale: c of the variable that the spline is in.
 
     Returns:
         (...) interpolated values.
     """
     from scipy.interpolate import make_interp_spline
 
+    places, inside = stretched(nodes, scale), np.minimum(wanted, nodes[-1])
     if nodes.size < 4:
-        return np.interp(wanted, nodes, values)
-    spline = make_interp_spline(nodes, values, k=3)
-    inside = np.minimum(wanted, nodes[-1])
-    slope = min(float(spline.derivative()(nodes[-1])), 0.0)
-    return np.asarray(spline(inside) + slope * (wanted - inside))
+        return np.interp(stretched(inside, scale), places, values)
+    spline = make_interp_spline(places, values, k=3)
+    slope = min(float(spline.derivative()(places[-1])) / (1.0 + float(nodes[-1]) / scale), 0.0)
+    return np.asarray(spline(stretched(inside, scale)) + slope * (wanted - inside))

@@ -22,12 +22,14 @@ class LocalP:
 
     Attributes:
         statistic: q0 = 2 (ln L at the best strength - ln L without signal), 0 for a deficit.
-        p: its asymptotic tail probability.
+        p: its asymptotic tail probability; 0 where double precision has none so small.
+        ln_p: ln of it.
         at: fitted signal parameters by name.
     """
 
     statistic: float
     p: float
+    ln_p: float
     at: Mapping[str, float]
 
 
@@ -66,7 +68,8 @@ def local_p(analysis: Analysis, hypothesis: str, against: str, strength: str, re
         return None
     statistic = max(2.0 * (with_signal.penalised - without.penalised), 0.0)
     at = {one.name: one.value for one in with_signal.fitted if one.role == "signal"}
-    return LocalP(statistic, float(special.ndtr(-np.sqrt(statistic))), at)
+    ln_p = float(special.log_ndtr(-np.sqrt(statistic)))
+    return LocalP(statistic, float(np.exp(ln_p)), ln_p, at)
 
 
 def differs_by(analysis: Analysis, hypothesis: str, against: str, strength: str) -> bool:

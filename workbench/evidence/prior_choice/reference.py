@@ -114,6 +114,21 @@ def events_of(model: Model, strength: str) -> float:
     return float(_events(model, strength)[1].sum(axis=1).mean())
 
 
+def first_equal(model: Model, strength: str) -> float:
+    """Return the strength at which the signal is as large as the background, in the bin where it first is.
+
+    Args:
+        model: the compiled hypothesis, its other parameters at their priors' medians.
+        strength: the parameter's name.
+    """
+    background, events = _events(model, strength)
+    some = events > 1e-6 * events.max(initial=0.0)
+    if not some.any():
+        return 1.0
+    ratios = np.broadcast_to(background, events.shape)[some] / events[some]
+    return float(max(ratios.min(), 1e-300))
+
+
 def _information(background: Array, events: Array, strength: float) -> float:
     """Return the Fisher information on a strength, averaged over the (shape, bin) events of signal shapes."""
     expected = background + strength * events

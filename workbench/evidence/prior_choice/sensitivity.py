@@ -7,7 +7,7 @@ from collections.abc import Callable, Iterator
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.formulas.p_value_bound import ln_largest_from_p
+from workbench.evidence.formulas.p_value_bound import ln_largest_from_ln_p
 from workbench.evidence.formulas.scales import JEFFREYS, KASS_RAFTERY
 from workbench.evidence.prior_choice.averages import Average, average
 from workbench.evidence.prior_choice.bounds import (
@@ -21,7 +21,7 @@ from workbench.evidence.prior_choice.cautions import examination_cautions
 from workbench.evidence.prior_choice.curve import StrengthCurve
 from workbench.evidence.prior_choice.families import Family, families
 from workbench.evidence.prior_choice.local_p import LocalP, differs_by, local_p
-from workbench.evidence.prior_choice.reference import events_of, reference_family
+from workbench.evidence.prior_choice.reference import events_of, first_equal, reference_family
 from workbench.evidence.prior_choice.results import DeclaredPrior, PriorSensitivity
 from workbench.evidence.prior_choice.tracing import trace
 from workbench.evidence.prior_choice.verdicts import (
@@ -83,8 +83,9 @@ def prior_sensitivity(
         return _refused(case, reason, posterior, seed)
     child = np.random.SeedSequence(seed, spawn_key=(len(analysis.hypotheses),))
     name = case.comparison.hypothesis
+    scale = first_equal(case.weighed.model, case.strength)
     is_nested = differs_by(analysis, name, case.comparison.against, case.strength)
-    curve = trace(analysis, name, case.strength, case.evidences[0], child, is_nested, say)
+    curve = trace(analysis, name, case.strength, case.evidences[0], child, is_nested, scale, say)
     declared = _declared(case, curve)
     reason = curve.doubt() or _disagreement(case, declared.by_curve)
     if reason:
@@ -190,7 +191,7 @@ def _bounds(curve: StrengthCurve, local: LocalP | None) -> Iterator[Bound]:
     yield largest_with_peak(curve, _PREDICTION)
     yield largest_never_rising(curve)
     if local is not None:
-        yield Bound("p-value", float(ln_largest_from_p(local.p)), 0.0)
+        yield Bound("p-value", float(ln_largest_from_ln_p(local.ln_p)), 0.0)
 
 
 def _crossings(

@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.evidence.averaging import averaged
-from workbench.evidence.prior_choice.curve import FLOOR, StrengthCurve, smooth
+from workbench.evidence.prior_choice.curve import FLOOR, StrengthCurve, middle, smooth
 from workbench.evidence.results import AlternativeEvidence, Evidence
 from workbench.evidence.weigh import weigh_hypothesis
 from workbench.hypotheses.alternatives import variants_of
@@ -28,6 +28,7 @@ _CLOSE_FAR_DOWN = 0.2
 _DEEP = -6.0
 # A cubic spline gains at least this factor when its spacing is halved.
 _GAIN = 8.0
+_LEAST_SCALE = 1e-14  # of the reach: nearer to 0 double precision has no strengths left
 
 
 @dataclass(slots=True)
@@ -95,6 +96,7 @@ def trace(
     against: Evidence,
     seed: np.random.SeedSequence,
     is_nested: bool,
+    scale: float,
     say: Say = lambda _: None,
 ) -> StrengthCurve:
     """Return ln R of a strength from 0 to where it is below the floor.
@@ -108,6 +110,7 @@ def trace(
         strength: the parameter's name.
         against: the evidence that R is taken against; it has a value.
         seed: where every random number comes from.
+        scale: the strength at which the signal is as large as the background where it first is.
         is_nested: True where the hypothesis at strength 0 is the other one, so that R is 1 there.
         say: told how it goes on.
 
@@ -118,7 +121,8 @@ def trace(
     if is_nested:
         probe.known[0.0] = replace(against, error=0.0)
     is_ended = _spread(probe, float(analysis.parameter(strength).prior.median))
-    between = _refine(probe)
+    scale = max(scale, _LEAST_SCALE * float(max(probe.known)))
+    between = _refine(probe, scale)
     strengths, ln_ratio = probe.nodes()
     found = [probe.known[float(s)] for s in strengths]
     return StrengthCurve(
@@ -130,6 +134,7 @@ def trace(
         np.array([evidence.established for evidence in found]),
         tuple(evidence.reason for evidence in found),
         is_ended,
+        scale,
     )
 
 
@@ -146,41 +151,41 @@ def _spread(probe: _Probe, unit: float) -> bool:
     return probe.ln_ratio(last) < FLOOR
 
 
-def _refine(probe: _Probe) -> dict[float, float]:
+def _refine(probe: _Probe, scale: float) -> dict[float, float]:
     """Halve intervals until a spline foresees their middles; return what it may still miss at each node."""
     between: dict[float, float] = {}
     strengths, _ = probe.nodes()
     open_ones = list(zip(strengths[:-1].tolist(), strengths[1:].tolist(), strict=True))
     for _ in range(_ROUNDS):
         strengths, values = probe.nodes()
-        middles = [0.5 * (low + high) for low, high in open_ones]
-        foreseen = smooth(strengths, values, np.array(middles))
+        middles = [middle(low, high, scale) for low, high in open_ones]
+        foreseen = smooth(strengths, values, np.array(middles), scale)
         left, missed = [], dict[float, float]()
-        for (low, high), middle, guess in zip(open_ones, middles, foreseen.tolist(), strict=True):
+        for (low, high), centre, guess in zip(open_ones, middles, foreseen.tolist(), strict=True):
             if len(probe.known) >= _MOST_NODES:
                 break
             if max(probe.ln_ratio(low), probe.ln_ratio(high)) < FLOOR:
                 continue
-            value = probe.ln_ratio(middle)
+            value = probe.ln_ratio(centre)
             miss = abs(guess - value)
-            noise = 3.0 * (probe.known[middle].error or 0.0)
-            for place in (low, middle, high):
+            noise = 3.0 * (probe.known[centre].error or 0.0)
+            for place in (low, centre, high):
                 missed[place] = max(missed.get(place, 0.0), max(miss - noise, 0.0) / _GAIN)
             if miss > noise + (_CLOSE if value > _DEEP else _CLOSE_FAR_DOWN):
-                left += [(low, middle), (middle, high)]
+                left += [(low, centre), (centre, high)]
         between.update(missed)
         open_ones = left
         if not open_ones:
             break
-    _add_the_top(probe)
+    _add_the_top(probe, scale)
     return between
 
 
-def _add_the_top(probe: _Probe) -> None:
+def _add_the_top(probe: _Probe, scale: float) -> None:
     """Probe where the spline is largest."""
     strengths, values = probe.nodes()
     place = int(np.argmax(values))
     low, high = strengths[max(place - 1, 0)], strengths[min(place + 1, strengths.size - 1)]
     fine = np.linspace(low, high, 401)
-    best = float(fine[int(np.argmax(smooth(strengths, values, fine)))])
+    best = float(fine[int(np.argmax(smooth(strengths, values, fine, scale)))])
     probe.ln_ratio(best)

@@ -102,7 +102,7 @@ def bound_lines(found: PriorSensitivity) -> list[str]:
     lines += columns(rows, "llll")
     for bound in found.bounds:
         if bound.name == "p-value" and found.local is not None:
-            p, q0 = significant(found.local.p, 2), fixed(found.local.statistic, 1)
+            p, q0 = factor(found.local.ln_p), fixed(found.local.statistic, 1)
             size = f"{fixed(bound.ln_bayes_factor, 2)} (B {factor(bound.ln_bayes_factor)})"
             lines += bullet(
                 f"−e p ln p: the local p-value of {p} (asymptotic, q0 = {q0}) allows ln B up to {size}."
