@@ -10,6 +10,7 @@ from workbench.plots.counts import draw_counts
 from workbench.plots.distortion import draw_break_point_words, draw_distortion
 from workbench.plots.odds import draw_odds
 from workbench.plots.palette import LIGHT, Palette
+from workbench.plots.triangle import draw_triangle
 from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, WeighOutcome
 
 if TYPE_CHECKING:
@@ -19,12 +20,13 @@ KINDS = ("png", "svg", "pdf")
 WIDTH = 9.0
 _ODDS_HEIGHT = 3.2
 _COUNTS_HEIGHT = 5.2
+_TRIANGLE_HEIGHT = 3.6
 _WORDS_HEIGHT = 1.0
 _DISTORTION_HEIGHT = 3.6
 
 
 def weighing_page(outcome: WeighOutcome, palette: Palette = LIGHT) -> Figure:
-    """Return a figure with every comparison's odds and every region's counts.
+    """Return a figure with every comparison's odds, the triangle of three hypotheses, every region's counts.
 
     Args:
         outcome: what `weigh` found.
@@ -33,14 +35,19 @@ def weighing_page(outcome: WeighOutcome, palette: Palette = LIGHT) -> Figure:
     from matplotlib.figure import Figure
 
     comparisons, regions = outcome.weighing.comparisons, outcome.analysis.regions
-    heights = [_ODDS_HEIGHT] * len(comparisons) + [_COUNTS_HEIGHT] * len(regions)
+    posteriors = outcome.weighing.posteriors
+    has_triangle = len(posteriors) == 3 and all(one.probability is not None for one in posteriors)
+    heights = [_ODDS_HEIGHT] * len(comparisons)
+    heights += [_TRIANGLE_HEIGHT] * has_triangle + [_COUNTS_HEIGHT] * len(regions)
     page = Figure(figsize=(WIDTH, sum(heights)), facecolor=palette.paper)
     parts = page.subfigures(len(heights), 1, height_ratios=heights, squeeze=False)[:, 0]
     for place, comparison in enumerate(comparisons, start=1):
         axes = parts[place - 1].add_axes((0.03, 0.03, 0.94, 0.94))
         weighing = outcome.weighing
         draw_odds(axes, comparison, outcome.adequacies, weighing.evidences, palette, place)
-    for place, region in enumerate(regions, start=len(comparisons)):
+    if has_triangle:
+        draw_triangle(parts[len(comparisons)].add_axes((0.03, 0.03, 0.94, 0.94)), posteriors, palette)
+    for place, region in enumerate(regions, start=len(comparisons) + has_triangle):
         draw_counts(parts[place], outcome.analysis, region.name, outcome.fits, palette)
     return page
 
