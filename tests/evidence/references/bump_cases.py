@@ -96,7 +96,7 @@ def _hunt(
     edges = np.round(np.linspace(LOW, HIGH, size + 1), 6)
     sd = float(f"{max(between(rng, finest, 0.1), 0.5 / size) * (HIGH - LOW):.4g}")
     shape, parameters = _continuum(rng)
-    level = between(rng, 50.0, 20_000.0) if rng.random() < 0.9 else between(rng, 1e5, 1e7)
+    level = between(rng, 50.0, 20_000.0) if rng.random() < 0.9 else between(rng, 2e4, 3e5)
     mass, sigmas = seen(edges, sd)
     under = np.full(size, level / size)
     unit = float(f"{events_of(_peak(edges, mass, sd), under, UNIT):.4g}")
@@ -138,15 +138,20 @@ def unknown_masses(rng: Rng) -> Draft:
 def two_bumps(rng: Rng) -> Draft:
     """Return a hunt for one bump where the counts hold two."""
     places = number(rng, 20.0, 50.0), number(rng, 65.0, 100.0)
-    second: dict[str, Array] = {}
+    heights = number(rng, 1.0, 5.0), number(rng, 1.0, 5.0)
+    seen_at: list[tuple[Array, float]] = []
 
     def seen(edges: Array, sd: float) -> tuple[float, float]:
-        second["shape"] = _peak(edges, places[1], sd) / _peak(edges, places[1], sd).max()
-        return places[0], number(rng, 1.0, 5.0)
+        seen_at.append((edges, sd))
+        return places[0], heights[0]
 
     draft = _hunt(rng, "Two bumps where one is sought", seen)
-    height = number(rng, 0.5, 1.5) * 2.0 * draft.truth["strength"] / 3.0
-    return Draft(draft.analysis, draft.truth, beside={"spectrum": 1.0 + 0.2 * height * second["shape"]})
+    level = draft.analysis.process("continuum").regions["spectrum"].events
+    assert isinstance(level, float)
+    ((edges, sd),) = seen_at
+    second, under = _peak(edges, places[1], sd), level / (edges.size - 1)
+    ratio = second / second.sum() * events_of(second, np.full(second.size, under), heights[1]) / under
+    return Draft(draft.analysis, draft.truth, beside={"spectrum": 1.0 + ratio})
 
 
 def no_bumps(rng: Rng) -> Draft:

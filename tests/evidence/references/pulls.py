@@ -26,6 +26,7 @@ class Answer:
         established: whether all that it takes is called established.
         stated, reference: the error of ln B, the engine's and the reference's [nats].
         seconds: how long the engine took.
+        k_hats: Pareto shapes of the largest weights, one an evidence that was sampled.
         reasons: why an evidence is not established.
     """
 
@@ -36,28 +37,35 @@ class Answer:
     stated: float
     reference: float
     seconds: float
+    k_hats: tuple[float, ...] = ()
     reasons: tuple[str, ...] = ()
 
 
 def answered(number: int, rows: Mapping[tuple[int, str], Saved], seed: int = 1) -> Answer:
-    """Return the engine's answer for one case beside its reference."""
+    """Return the engine's answer for one case beside its reference.
+
+    The engine's seed is the given one plus the case's number: with one seed for all, draws in as many
+    dimensions would err alike, and pulls would not be independent.
+    """
     one = case(number)
     started = time.perf_counter()
-    weighing = weigh(one.analysis, seed=seed)
+    weighing = weigh(one.analysis, seed=seed + number)
     seconds = time.perf_counter() - started
     truth = [rows[number, evidence.hypothesis] for evidence in weighing.evidences]
+    estimates = [estimate for evidence in weighing.evidences for estimate in evidence.estimates]
+    k_hats = tuple(estimate.k_hat for estimate in estimates if estimate.k_hat is not None)
     reasons = tuple(evidence.reason for evidence in weighing.evidences if evidence.reason)
     found = [(evidence.ln_evidence, evidence.error) for evidence in weighing.evidences]
     known = [(value, error) for value, error in found if value is not None and error is not None]
     if len(known) < len(found):
-        return Answer(number, one.kind, (), False, np.inf, 0.0, seconds, reasons)
+        return Answer(number, one.kind, (), False, np.inf, 0.0, seconds, k_hats, reasons)
     values, errors = np.array([value for value, _ in known]), np.array([error for _, error in known])
     right, spread = np.array([row.ln_evidence for row in truth]), np.array([row.error for row in truth])
     stated, reference = float(np.hypot.reduce(errors[[0, -1]])), float(np.hypot.reduce(spread[[0, -1]]))
     gap = float((values[-1] - values[0]) - (right[-1] - right[0]))
     each = (values - right) / np.hypot(errors, spread)
     pulls = (gap / float(np.hypot(stated, reference)), *each.tolist())
-    return Answer(number, one.kind, pulls, not reasons, stated, reference, seconds, reasons)
+    return Answer(number, one.kind, pulls, not reasons, stated, reference, seconds, k_hats, reasons)
 
 
 def tallies(answers: Sequence[Answer]) -> list[str]:
@@ -106,5 +114,6 @@ def told(one: Answer) -> str:
     state = "" if one.established else "; not established: " + "; ".join(one.reasons)
     is_coarse = one.reference > one.stated / 3.0 > 0.0
     coarse = f"; the reference's {one.reference:.2g} is above a third" if is_coarse else ""
-    numbers = f"pulls {pulls}, stated {one.stated:.2g}{coarse}, {one.seconds:.1f} s"
+    k_hats = " ".join(f"{k_hat:.2f}" for k_hat in one.k_hats) or "none"
+    numbers = f"pulls {pulls}, stated {one.stated:.2g}{coarse}, k-hat {k_hats}, {one.seconds:.1f} s"
     return f"{one.number:3d} {one.kind}: {numbers}{state}"

@@ -19,6 +19,7 @@ Array = npt.NDArray[np.float64]
 LnLikelihood = Callable[[Array], Array]
 
 REACH = 9.0  # standard deviations of the prior that the grid spans at first
+_FARTHEST = 37.0  # where a normal tail is still a number
 _NEGLIGIBLE = -40.0  # ln of the height, relative to the largest, that is left out
 _LEAST_ERROR = 1e-7
 _FIRST, _FINER = {1: 4001, 2: 361}, {1: (2001, 8001, 32001), 2: (301, 601, 1201)}
@@ -35,6 +36,12 @@ def integrated(ln_likelihood: LnLikelihood, size: int) -> Reference:
         axes, heights = _grid(ln_likelihood, ends, _FIRST[size])
         used += heights.size
         ends = _occupied(axes, heights)
+        if np.abs(ends).max() > REACH - 0.1:  # far from what the prior expects
+            axes, heights = _grid(
+                ln_likelihood, np.sign(ends - ends.mean(axis=1, keepdims=True)) * _FARTHEST, _FIRST[size]
+            )
+            used += heights.size
+            ends = _occupied(axes, heights)
     found = []
     for nodes in _FINER[size]:
         axes, heights = _grid(ln_likelihood, ends, nodes)
@@ -52,7 +59,10 @@ def _grid(ln_likelihood: LnLikelihood, ends: Array, nodes: int) -> tuple[list[Ar
     axes = [np.linspace(low, high, nodes) for low, high in ends]
     points = np.stack([part.ravel() for part in np.meshgrid(*axes, indexing="ij")], axis=1)
     prior = -0.5 * (points**2).sum(axis=1) - 0.5 * len(axes) * np.log(2.0 * np.pi)
-    return axes, (ln_likelihood(points) + prior).reshape([nodes] * len(axes))
+    heights = np.nan_to_num(
+        ln_likelihood(points) + prior, nan=-np.inf
+    )  # where so much is expected that P is 0
+    return axes, heights.reshape([nodes] * len(axes))
 
 
 def _occupied(axes: list[Array], heights: Array) -> Array:
