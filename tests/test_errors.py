@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import ast
+import pickle
 from pathlib import Path
 
 import pytest
 
 import workbench
-from workbench.errors import nearest, quoted
+from workbench.errors import InputError, Problem, nearest, quoted
 
 SOURCES = sorted(Path(workbench.__file__).parent.rglob("*.py"))
 FOR_PROGRAMMERS = {"__init__.py", "faults.py"}  # Python's own AttributeError, and the file of a fault of ours
@@ -49,3 +50,10 @@ def test_pythons_quotes_would_be_found(tmp_path: Path) -> None:
     path = tmp_path / "quoting.py"
     path.write_text('text = f"no column {name!r}"\n')
     assert spelt_by_python(path) == [1]
+
+
+def test_an_error_comes_back_from_another_process_with_its_problems() -> None:
+    """Worker processes broke down on it: only its text travelled, and could not be made an error again."""
+    problem = Problem("Negative count", "line 3", "-1", "zero or more", "correct it")
+    again = pickle.loads(pickle.dumps(InputError(problem, problem)))
+    assert (again.problems, str(again)) == ((problem, problem), f"{problem.text()}\n\n{problem.text()}")

@@ -19,6 +19,8 @@ HOMES = {
     "matplotlib": "plots/",
     "ipywidgets": "widgets/",
     "anywidget": "widgets/",
+    "traitlets": "widgets/",
+    "IPython": "widgets/",
     "iminuit": "likelihood/fit.py",
 }
 

@@ -50,6 +50,10 @@ class InputError(Exception):
         self.problems = problems
         super().__init__("\n\n".join(problem.text() for problem in problems))
 
+    def __reduce__(self) -> tuple[type[InputError], tuple[Problem, ...]]:
+        """Travel from a worker process with the problems, not with their text."""
+        return type(self), self.problems
+
 
 @dataclass(frozen=True, slots=True)
 class Caution:
