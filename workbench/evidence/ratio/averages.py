@@ -25,7 +25,11 @@ _STEPS = 2  # between strength nodes
 _QUANTILES = 40  # of a strength's prior
 _PANEL_CELLS = 18
 _PRIOR_CELLS = 256
-_PEAK_CELLS = 96
+_COUNTS = 14.0  # nats below the largest that still count
+_STEEP, _PEAK = 1.2, 3.0  # nats from cell to cell, no more than so many below the largest
+_STEEP_AT_END, _END = 0.15, 7.0
+_MORE = 97
+_ROUNDS, _PARTS = 4, 4
 _KEPT_NODES = 61
 
 
@@ -56,18 +60,60 @@ def averaged_over_strength(surface: Surface, strengths: Strengths, prior: Prior)
         return between(surface.ln_ratio, place)[:, 0], between(surface.error, place, 2)[:, 0]
     low, high = _inside(prior.support, (strengths.low, strengths.high))
     quantiles = prior.quantile(_levels(_QUANTILES))
-    own = strengths.refined(_STEPS)
-    both = np.concatenate([own, np.broadcast_to(quantiles, (len(own), quantiles.size))], axis=1)
-    walls = np.sort(np.clip(both, low, high), axis=1)
-    walls[:, 0], walls[:, -1] = low, high
-    middle = 0.5 * (walls[:, 1:] + walls[:, :-1])
-    place = strengths.place(middle)
-    heights = between(surface.ln_ratio, place, 4) + ln_masses(prior, quantiles, walls)
+    walls = _sorted(strengths.refined(_STEPS), quantiles[None], low, high)
+    heights = _heights(surface, strengths, prior, quantiles, walls)
+    if _is_steep(heights):
+        walls = _sorted(walls, _across_top(walls, heights), low, high)
+        heights = _heights(surface, strengths, prior, quantiles, walls)
     top = heights.max(axis=1, keepdims=True)
     weights = np.exp(heights - top)
     total = weights.sum(axis=1)
+    place = strengths.place(0.5 * (walls[:, 1:] + walls[:, :-1]))
     errors = (weights * between(surface.error, place, 2)).sum(axis=1) / total
     return top[:, 0] + np.log(total), errors
+
+
+def _heights(surface: Surface, strengths: Strengths, prior: Prior, quantiles: Array, walls: Array) -> Array:
+    """Return (column, cell) ln of R times the prior's probability in each cell."""
+    place = strengths.place(0.5 * (walls[:, 1:] + walls[:, :-1]))
+    return np.asarray(between(surface.ln_ratio, place, 4) + ln_masses(prior, quantiles, walls))
+
+
+def _sorted(walls: Array, more: Array, low: float, high: float) -> Array:
+    """Return (column, wall) ascending walls with more of them, from end to end of a range."""
+    both = np.concatenate([walls, np.broadcast_to(more, (len(walls), more.shape[1]))], axis=1)
+    found = np.sort(np.clip(both, low, high), axis=1)
+    found[:, 0], found[:, -1] = low, high
+    return np.asarray(found)
+
+
+def _is_steep(heights: Array) -> bool:
+    """Tell whether R changes too much from cell to cell where a column counts."""
+    counts = heights.max(axis=1) > heights.max() - _COUNTS
+    return bool(_steep(heights[counts].T).any())
+
+
+def _steep(heights: Array) -> npt.NDArray[np.bool_]:
+    """Return (cell - 1, ...) True where R changes too much from one cell to the next.
+
+    Values in the middle of even cells add up to an integral that is wrong only by what happens at its ends:
+    there the change has to be small, elsewhere only so that no peak falls between.
+    """
+    depth = heights.max(axis=0) - heights
+    change = np.abs(np.diff(heights, axis=0))
+    found = (change > _STEEP) & (np.minimum(depth[1:], depth[:-1]) < _PEAK)
+    for end in (0, -1):
+        found[end] |= (change[end] > _STEEP_AT_END) & (depth[end] < _END)
+    return np.asarray(found)
+
+
+def _across_top(walls: Array, heights: Array) -> Array:
+    """Return (column, wall) evenly spaced walls across the cells that count in each column."""
+    inside = heights > heights.max(axis=1, keepdims=True) - _COUNTS
+    first, last = np.argmax(inside, axis=1), heights.shape[1] - np.argmax(inside[:, ::-1], axis=1)
+    rows = np.arange(len(walls))
+    ends = np.stack([walls[rows, first], walls[rows, last]], axis=1)
+    return np.asarray(ends[:, :1] + (ends[:, 1:] - ends[:, :1]) * np.linspace(0.0, 1.0, _MORE))
 
 
 def _inside(ends: tuple[float, float], limits: tuple[float, float]) -> tuple[float, float]:
@@ -118,30 +164,42 @@ def averaged_along(panels: Panels, values: Array, errors: Array, prior: Prior) -
         x = np.array([prior.value])
         return panels.between(values, x)[0], _linear(panels, errors, x)[0]
     quantiles = prior.quantile(_levels(_PRIOR_CELLS + 1))
-    walls = _walls(panels, values, prior, quantiles)
-    x = 0.5 * (walls[1:] + walls[:-1])
-    masses = ln_masses(prior, quantiles, walls[None])[0]
-    heights = panels.between(values, x) + masses.reshape(-1, *(1,) * (values.ndim - 1))
+    walls = _walls(panels, prior, quantiles)
+    heights = _heights_along(panels, values, prior, quantiles, walls)
+    for _ in range(_ROUNDS):
+        steep = _steep_cells(heights)
+        if not steep.any():
+            break
+        cut = walls[:-1][steep][:, None] + np.diff(walls)[steep][:, None] * np.arange(1, _PARTS) / _PARTS
+        walls = np.sort(np.concatenate([walls, cut.ravel()]))
+        heights = _heights_along(panels, values, prior, quantiles, walls)
     top = heights.max(axis=0)
     weights = np.exp(heights - top)
     total = weights.sum(axis=0)
+    x = 0.5 * (walls[1:] + walls[:-1])
     return top + np.log(total), (weights * _linear(panels, errors, x)).sum(axis=0) / total
 
 
-def _walls(panels: Panels, values: Array, prior: Prior, quantiles: Array) -> Array:
-    """Return (cell + 1,) ascending walls: close in every panel, over the prior, and closest where R peaks."""
+def _heights_along(panels: Panels, values: Array, prior: Prior, quantiles: Array, walls: Array) -> Array:
+    """Return (cell, ...) ln of R times the prior's probability in each cell."""
+    masses = ln_masses(prior, quantiles, walls[None])[0]
+    x = 0.5 * (walls[1:] + walls[:-1])
+    return np.asarray(panels.between(values, x) + masses.reshape(-1, *(1,) * (values.ndim - 1)))
+
+
+def _steep_cells(heights: Array) -> npt.NDArray[np.bool_]:
+    """Return (cell,) True where R changes too much from cell to cell, for what counts."""
+    either = _steep(heights.reshape(len(heights), -1)).any(axis=1)
+    beside: npt.NDArray[np.bool_] = np.concatenate([either, [False]]) | np.concatenate([[False], either])
+    return beside
+
+
+def _walls(panels: Panels, prior: Prior, quantiles: Array) -> Array:
+    """Return (cell + 1,) ascending walls: close in every panel, and over the prior."""
     low, high = _inside(prior.support, panels.range)
     steps = np.arange(_PANEL_CELLS) / _PANEL_CELLS
     inside = (panels.edges[:-1, None] + np.diff(panels.edges)[:, None] * steps).ravel()
-    walls = [inside, quantiles]
-    profile = values.reshape(len(values), -1).max(axis=1)
-    nodes = panels.nodes
-    for top in range(1, len(nodes) - 1):
-        sharp = 2.0 * profile[top] - profile[top - 1] - profile[top + 1]
-        if profile[top] >= profile.max() - 20.0 and sharp > 1.0:
-            reach = max(nodes[top + 1] - nodes[top], nodes[top] - nodes[top - 1])
-            walls.append(np.linspace(nodes[top] - reach, nodes[top] + reach, _PEAK_CELLS + 1))
-    found = np.unique(np.concatenate(walls))
+    found = np.unique(np.concatenate([inside, quantiles]))
     return np.concatenate([[low], found[(found > low) & (found < high)], [high]])
 
 

@@ -9,7 +9,7 @@ import numpy.typing as npt
 
 from workbench.evidence.axes import lay_out
 from workbench.evidence.ratio.held import FAILED, Held, Holder, Response
-from workbench.evidence.ratio.panels import Panels
+from workbench.evidence.ratio.panels import ORDER, Panels
 from workbench.evidence.ratio.strengths import Strengths, between, doubt_between
 from workbench.evidence.ratio.surface import Surface, product
 
@@ -19,7 +19,8 @@ Indices = npt.NDArray[np.intp]
 
 _DEPTH = 8.0  # nats below a column's top where what lies between nodes matters
 _DRAWN_DEPTH = 10.0
-_ROUGH = 0.02
+_LEAST_ERROR = 3e-4  # nats, of maxima that are found to a tolerance
+_ROUGH = 0.005  # nats that may be left out between nodes near the tops of columns
 _ROUNDS = 5
 MOST_COLUMNS = 2500
 _FEWEST, _MOST_NODES = 19, 49
@@ -89,7 +90,7 @@ def build(
         panels = finer
     surface = _surface(panels, standing, reference)
     doubts = sum((_roughness(surface, axis)[1] ** 2 for axis in range(len(panels))), surface.error**2)
-    return replace(surface, error=np.sqrt(doubts)), standing
+    return replace(surface, error=np.sqrt(doubts + _LEAST_ERROR**2)), standing
 
 
 def first_panels(holder: Holder) -> tuple[Panels, ...]:
@@ -177,7 +178,7 @@ def _better(standing: Standing, strengths: Strengths) -> tuple[Indices, Strength
     """Return which columns are read poorly between their nodes, and nodes laid out by what they show."""
     values = standing.by_column(standing.held.ln_evidence)
     depth = values.max(axis=1, keepdims=True) - values
-    poor = (np.where(depth < _DEPTH, doubt_between(values), 0.0)).max(axis=1) > 0.25 * _ROUGH
+    poor = (np.where(depth < _DEPTH, doubt_between(values), 0.0)).max(axis=1) > _ROUGH
     rows = np.flatnonzero(poor & (values.max(axis=1) > FAILED))
     chosen, values = strengths.take(rows), values[rows]
     if rows.size == 0:
@@ -206,13 +207,16 @@ def _surface(panels: tuple[Panels, ...], standing: Standing, reference: Held | N
 
 def _refined(panels: tuple[Panels, ...], surface: Surface) -> tuple[Panels, ...] | None:
     """Return panels with the rough ones cut in half; None where all are smooth or there are enough."""
-    finer = []
+    finer = list(panels)
     for axis, one in enumerate(panels):
-        rough = np.flatnonzero(_roughness(surface, axis)[0] > _ROUGH)
-        finer.append(one.split(rough) if rough.size else one)
-    columns = float(np.prod([float(one.nodes.size) for one in finer]))
+        size = _roughness(surface, axis)[0]
+        rough = np.flatnonzero(size > _ROUGH)
+        others = float(np.prod([float(two.nodes.size) for k, two in enumerate(finer) if k != axis]))
+        room = int((MOST_COLUMNS / others - one.nodes.size) // ORDER)
+        chosen = rough[np.argsort(-size[rough])][: max(room, 0)]
+        finer[axis] = one.split(np.sort(chosen)) if chosen.size else one
     grown = any(new is not old for new, old in zip(finer, panels, strict=True))
-    return tuple(finer) if grown and columns <= MOST_COLUMNS else None
+    return tuple(finer) if grown else None
 
 
 def _roughness(surface: Surface, axis: int) -> tuple[Array, Array]:
@@ -236,7 +240,7 @@ def _roughness(surface: Surface, axis: int) -> tuple[Array, Array]:
         flat = columns.ravel()
         read = between(surface.ln_ratio[flat], strengths.take(flat).place(wanted))
         read = read.reshape(count, each, other, -1)
-    left_out = panels.roughness(read)  # (panel, other, node)
+    left_out = panels.left_out(read)  # (panel, other, node)
     near = read.max(axis=1) > surface.ln_ratio[middle].max(axis=2, keepdims=True) - _DEPTH
     worst = np.where(near, left_out, 0.0).max(axis=(1, 2))
     return worst, _spread(surface, columns, nodes, left_out)

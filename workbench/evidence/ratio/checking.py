@@ -23,7 +23,8 @@ _FEWER = 3  # where one takes long
 _LONG = 200_000  # bins x coordinates
 _DEPTH = 8.0
 _ALLOWED = 0.05
-_UNLIKELY = 2.0
+_UNLIKELY = 2.0  # a mean square pull
+_FAR_OUT, _USUAL = 3.5, 2.5  # the largest pull of a few
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -149,8 +150,10 @@ def scale_of(checks: tuple[Check, ...]) -> float:
     """Return what errors are multiplied by: more than 1 where the checks differ by more than they say."""
     if not checks:
         return 1.0
-    mean = float(np.mean([one.pull**2 for one in checks]))
-    return float(np.sqrt(mean)) if mean > _UNLIKELY else 1.0
+    pulls = np.abs([one.pull for one in checks])
+    mean, worst = float(np.mean(pulls**2)), float(pulls.max())
+    together = float(np.sqrt(mean)) if mean > _UNLIKELY else 1.0
+    return max(together, worst / _USUAL if worst > _FAR_OUT else 1.0)
 
 
 def widened(found: Scan) -> Scan:

@@ -19,6 +19,9 @@ Indices = npt.NDArray[np.intp]
 Number = TypeVar("Number", np.float64, np.intp)
 
 ORDER = 6
+_RATIOS = (0.1, 0.7)  # smaller ones are chance
+_CAUTIOUS = 1.5
+_MANY = 16  # values at a node from which panels are done one by one
 
 
 @lru_cache(maxsize=1)
@@ -90,20 +93,26 @@ class Panels:
         """
         panel, terms = self.place(x)
         coefficients = np.einsum("tk,pk...->pt...", _to_coefficients(), self.by_panel(values))
-        return np.asarray(np.einsum("xt,xt...->x...", terms, coefficients[panel]))
+        if values[0].size < _MANY:
+            return np.asarray(np.einsum("xt,xt...->x...", terms, coefficients[panel]))
+        found = np.empty((x.size, values[0].size))
+        for one in np.unique(panel):
+            rows = np.flatnonzero(panel == one)
+            found[rows] = terms[rows] @ coefficients[one].reshape(ORDER + 1, -1)
+        return found.reshape(x.size, *values.shape[1:])
 
     @staticmethod
-    def roughness(values: Array) -> Array:
+    def left_out(values: Array) -> Array:
         """Return (panel, ...) size of what the polynomials through (panel, 7, ...) values leave out.
 
-        It is the size of their last two terms.
-
-        For a curve that is analytic around a panel the terms fall geometrically, so that what follows the
-        last two is smaller than they are.
+        Terms fall geometrically for a curve that is analytic around a panel: with t the size of the last two
+        and q its ratio to that of the two before, t (q + q^2 + ...) is left out.
         """
-        tail = _to_coefficients()[-2:]
-        last = np.einsum("tk,pk...->pt...", tail, values)
-        return np.asarray(np.sqrt((last**2).sum(axis=1)))
+        terms = np.einsum("tk,pk...->pt...", _to_coefficients(), values)
+        before = np.sqrt((terms[:, -4:-2] ** 2).sum(axis=1))
+        last = np.maximum(np.sqrt((terms[:, -2:] ** 2).sum(axis=1)), _RATIOS[0] * before)
+        ratio = np.clip(last / np.maximum(before, 1e-300), *_RATIOS)
+        return np.asarray(_CAUTIOUS * last * ratio / (1.0 - ratio))
 
     def split(self, panels: Indices) -> Panels:
         """Return the same range with the given panels cut in half."""
