@@ -98,7 +98,7 @@ def _not_scanned(analysis: Analysis, hypothesis: str, name: str, known: tuple[st
             "A parameter that is held", OVER, found, expected, "scan a hypothesis that leaves it free"
         )
     if name in {one.name for one in analysis.parameters} | set(analysis.sources_used(hypothesis)):
-        found = f"{quoted(name)}, which backgrounds use or no process of it does"
+        found = f"{quoted(name)}, which does not belong to the signal alone"
         return Problem("A parameter that is no signal parameter", OVER, found, expected, f"name {listed}")
     return Problem("A parameter that is not known", OVER, quoted(name), expected, nearest(name, known))
 
