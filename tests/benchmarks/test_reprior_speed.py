@@ -22,7 +22,7 @@ SKERRY = Path(__file__).parents[2] / "data" / "skerry" / "skerry.toml"
 PRIORS: dict[str, Prior] = {"strength": Exponential(1.0), "mass": Uniform(30.0, 60.0)}
 
 # Units of work (see timing.py). Set at about twice what was measured when this was written.
-LIMITS = {"reprior": 22.0, "read": 25.0, "scan": 26_000.0}
+LIMITS = {"reprior": 36.0, "read": 20.0, "scan": 8000.0}
 WANTED = 0.005  # seconds
 
 
