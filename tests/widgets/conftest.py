@@ -7,6 +7,7 @@ from collections.abc import Callable, Iterator
 
 import pytest
 
+from tests.widgets.front_end import FrontEnd, front_end
 from workbench.widgets.home import Home
 from workbench.widgets.notices import Notices
 
@@ -34,3 +35,9 @@ def until(home: Home) -> Callable[[Callable[[], bool]], None]:
             time.sleep(0.002)
 
     return wait
+
+
+@pytest.fixture
+def front(monkeypatch: pytest.MonkeyPatch) -> FrontEnd:
+    """Return a front end for the widgets that a test makes."""
+    return front_end(monkeypatch)

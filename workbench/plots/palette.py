@@ -107,3 +107,8 @@ DARK = Palette(
         Stroke("#c9c497", "#c9c497", "#454331", 1.4, (0, (2, 1))),
     ),
 )
+
+
+def palette_of(*, is_dark: bool) -> Palette:
+    """Return the palette of a theme."""
+    return DARK if is_dark else LIGHT

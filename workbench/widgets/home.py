@@ -50,6 +50,28 @@ class Home:
         if self._loop is not None and not self._loop.is_closed():
             self._loop.call_soon_threadsafe(self.settle)
 
+    def later(self, seconds: float, call: Callable[[], object]) -> Callable[[], None]:
+        """Have a call run on the home thread after some time; on the home thread.
+
+        Args:
+            seconds: how long to wait; without an event loop, until `settle`.
+            call: what to run.
+
+        Returns:
+            What takes it back, if it has not run yet.
+        """
+        taken_back = threading.Event()
+
+        def unless_taken_back() -> None:
+            if not taken_back.is_set():
+                call()
+
+        if self._loop is not None and not self._loop.is_closed():
+            self._loop.call_later(seconds, self.post, unless_taken_back)
+        else:
+            self.post(unless_taken_back)
+        return taken_back.set
+
     def settle(self) -> None:
         """Run everything that waits; on the home thread only.
 
