@@ -170,6 +170,23 @@ def test_examining_priors_of_a_mutated_file_ends_calmly(
         assert json.loads(out, parse_constant=refuse_constant)["command"] == "priors"
 
 
+@given(st.integers(0, len(FILES) - 1), changes, st.booleans())
+@settings(
+    max_examples=30, derandomize=True, deadline=None, database=None, suppress_health_check=list(HealthCheck)
+)
+def test_taking_the_evidence_of_a_mutated_file_apart_ends_calmly(
+    folder: Path,
+    capsys: pytest.CaptureFixture[str],
+    which: int,
+    made: list[tuple[object, ...]],
+    as_json: bool,
+) -> None:
+    words = ["ledger", str(hostile_file(folder, which, made)), "--orders", "2", "--pseudo-experiments", "200"]
+    code, out = answer(capsys, words + ["--json"] * as_json)
+    if as_json and code < 2:
+        assert json.loads(out, parse_constant=refuse_constant)["command"] == "ledger"
+
+
 @given(st.integers(0, len(FILES) - 1), changes, st.sampled_from(["check", "fit"]), st.booleans())
 @settings(
     max_examples=110, derandomize=True, deadline=None, database=None, suppress_health_check=list(HealthCheck)

@@ -11,10 +11,11 @@ from scipy import special
 
 from tests.evidence.brute_force import ln_evidence, standard_normal, under
 from tests.evidence.small_analyses import TAU, YIELD, bump, counting, several_bins, source, templates
+from tests.evidence.wrong_proposal import Wrong
 from workbench.evidence import sampling
 from workbench.evidence.formulas import closed_forms
 from workbench.evidence.pareto import largest_allowed
-from workbench.evidence.proposal import Proposal, propose
+from workbench.evidence.proposal import propose
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.sampling import SCRAMBLES, Sample, sample
 from workbench.evidence.weigh import weigh, weigh_hypothesis
@@ -93,19 +94,6 @@ def test_more_draws_make_the_error_smaller() -> None:
     grid, _ = with_sources()
     few, many = (np.mean([one.error for one in samples(grid, 10, draws)]) for draws in (64, 1024))
     assert few / many > 3.0
-
-
-class Wrong:
-    """A proposal whose density claims to be a little higher than it is."""
-
-    def __init__(self, right: Proposal, shift: float) -> None:
-        self.right, self.shift = right, shift
-
-    def __getattr__(self, name: str) -> object:
-        return getattr(self.right, name)
-
-    def ln_density(self, points: Array) -> Array:
-        return self.right.ln_density(points) + self.shift
 
 
 def test_a_proposal_with_a_wrong_normalisation_is_seen(monkeypatch: pytest.MonkeyPatch) -> None:

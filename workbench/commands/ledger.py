@@ -13,11 +13,10 @@ from workbench.commands.inputs import (
     load,
     refuse_planning,
 )
+from workbench.commands.judging import fits_and_adequacies
 from workbench.commands.parsing import Parser, one_of, whole_number
 from workbench.commands.terminal import Progress
-from workbench.ensembles.adequacy import adequacy
 from workbench.evidence.ledger.ledger import BY, LEAST_ORDERS, ORDERS, ledger
-from workbench.likelihood.fit import fit
 from workbench.records.ledger_record import ledger_record
 from workbench.records.outcomes import LedgerOutcome
 from workbench.records.screens.ledger import ledger_screen
@@ -82,14 +81,9 @@ def _accounted(options: argparse.Namespace) -> LedgerOutcome:
         found = ledger(
             analysis, hypothesis=options.hypothesis, by=by, orders=options.orders, seed=options.seed
         )
-        fits, adequacies = [], []
-        for hypothesis in analysis.hypotheses:
-            progress.say(f"fitting {hypothesis.name}")
-            fits.append(fit(analysis, hypothesis.name, asymmetric=False))
-            progress.say(f"pseudo-experiments of {hypothesis.name}")
-            adequacies.append(
-                adequacy(analysis, hypothesis.name, seed=options.seed, most=most, weighing=found.weighing)
-            )
+        fits, adequacies = fits_and_adequacies(
+            analysis, found.weighing, seed=options.seed, most=most, progress=progress
+        )
     asked = {
         **origin.options,
         "hypothesis": options.hypothesis,
@@ -97,4 +91,4 @@ def _accounted(options: argparse.Namespace) -> LedgerOutcome:
         "orders": options.orders,
         "pseudo_experiments": most,
     }
-    return LedgerOutcome(analysis, replace(origin, options=asked), found, tuple(adequacies), tuple(fits))
+    return LedgerOutcome(analysis, replace(origin, options=asked), found, adequacies, fits)

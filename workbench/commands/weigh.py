@@ -13,12 +13,11 @@ from workbench.commands.inputs import (
     load,
     refuse_planning,
 )
+from workbench.commands.judging import fits_and_adequacies
 from workbench.commands.parsing import Parser
 from workbench.commands.reprior import add_reprior_options, read_again, refuse_priors_alone
 from workbench.commands.terminal import Progress
-from workbench.ensembles.adequacy import adequacy
 from workbench.evidence.weigh import weigh
-from workbench.likelihood.fit import fit
 from workbench.records.outcomes import WeighOutcome
 from workbench.records.screens.weigh import weigh_screen
 from workbench.records.weigh_record import weigh_record
@@ -60,13 +59,8 @@ def _weighed(options: argparse.Namespace) -> WeighOutcome:
     with Progress() as progress:
         progress.say("weighing")
         weighing = weigh(analysis, seed=options.seed)
-        fits, adequacies = [], []
-        for hypothesis in analysis.hypotheses:
-            progress.say(f"fitting {hypothesis.name}")
-            fits.append(fit(analysis, hypothesis.name, asymmetric=False))
-            progress.say(f"pseudo-experiments of {hypothesis.name}")
-            adequacies.append(
-                adequacy(analysis, hypothesis.name, seed=options.seed, most=most, weighing=weighing)
-            )
+        fits, adequacies = fits_and_adequacies(
+            analysis, weighing, seed=options.seed, most=most, progress=progress
+        )
     asked = {**origin.options, "pseudo_experiments": most}
-    return WeighOutcome(analysis, replace(origin, options=asked), weighing, tuple(adequacies), tuple(fits))
+    return WeighOutcome(analysis, replace(origin, options=asked), weighing, adequacies, fits)

@@ -11,6 +11,7 @@ import pytest
 
 from tests.evidence.ledger import enumerated
 from tests.evidence.small_analyses import TAU, YIELD, bump, counting, several_bins, templates
+from tests.evidence.wrong_proposal import Wrong
 from workbench.evidence.formulas.closed_forms import (
     ln_gamma_background,
     ln_on_off_background,
@@ -22,7 +23,6 @@ from workbench.evidence.ledger.chain import Chain, chain, sampling_errors
 from workbench.evidence.ledger.ledger import ledger
 from workbench.evidence.ledger.orders import random_orders
 from workbench.evidence.ledger.shares import split
-from workbench.evidence.proposal import Proposal
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import Exponential, Fixed, Gamma
 from workbench.likelihood.model import compile_model
@@ -118,19 +118,6 @@ def pulls(analysis: Analysis, name: str, exact: Array, seeds: int, corrupt: floa
         made = replace(made, proposals=wrong)  # type: ignore[arg-type]
     found = [chain(bridge(made, np.random.SeedSequence(seed), 16), orders) for seed in range(seeds)]
     return np.array([(one.added - exact) / sampling_errors(one.shaken) for one in found])
-
-
-class Wrong:
-    """A proposal whose density claims to be higher than it is."""
-
-    def __init__(self, right: Proposal, shift: float) -> None:
-        self.right, self.shift = right, shift
-
-    def __getattr__(self, name: str) -> object:
-        return getattr(self.right, name)
-
-    def ln_density(self, points: Array) -> Array:
-        return self.right.ln_density(points) + self.shift
 
 
 def test_sampling_errors_are_of_the_right_size() -> None:
