@@ -19,7 +19,7 @@ from scipy import special
 
 from workbench.evidence.axes import Axis, standard
 from workbench.evidence.bending import RidgeMap, TriangularMap, following
-from workbench.evidence.matrices import grouped, upper_roots
+from workbench.evidence.matrices import grouped, unwhitened, upper_roots
 from workbench.evidence.piecewise import between, draw, hat_areas, taken
 from workbench.evidence.quadrature import Grid
 from workbench.evidence.responses import responses
@@ -78,10 +78,6 @@ class Proposal:
         return np.asarray(np.linalg.slogdet(self.whitening)[1])
 
     @cached_property
-    def _unwhitening(self) -> Array:
-        return np.asarray(np.linalg.inv(self.whitening)) if self.whitening.shape[1] else self.whitening
-
-    @cached_property
     def _heights(self) -> Array:
         """Return (column, inner) heights relative to each column's largest."""
         columns = self.grid.columns
@@ -127,7 +123,7 @@ class Proposal:
             points[:, integrand.inner] = t
             node = column * grid.columns.inner.shape[1] + place
         bent = self.map.forward(self._stretch.forward(special.ndtri(noise)))
-        moved = grouped(self._unwhitening, node, bent)
+        moved = unwhitened(self.whitening, node, bent)
         points[:, integrand.nuisance] = self._centre(node, self._signal(points)) + moved
         return points
 

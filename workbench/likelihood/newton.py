@@ -146,8 +146,9 @@ def _steps(box: _Box, points: Array, gradients: Array, hessians: Array) -> tuple
     if free.size == 0:
         return steps, np.zeros(len(points))
     low, high, unit = box.low[free], box.high[free], box.unit[free]
-    gradient = np.nan_to_num(gradients[:, free])
-    curvature = np.nan_to_num(-hessians[:, free[:, None], free[None, :]])
+    gradient, curvature = gradients[:, free], -hessians[:, free[:, None], free[None, :]]
+    if not (np.isfinite(gradient).all() and np.isfinite(curvature).all()):
+        gradient, curvature = np.nan_to_num(gradient), np.nan_to_num(curvature)
     at = points[:, free]
     pressed = ((at <= low) & (gradient < 0.0)) | ((at >= high) & (gradient > 0.0))
     if box.held is not None:
