@@ -19,7 +19,7 @@ from tests.evidence.small_analyses import bump, several_bins, templates
 from workbench.evidence.results import Weighing
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis, Parameter
-from workbench.hypotheses.priors import Exponential, LogUniform, Uniform
+from workbench.hypotheses.priors import Exponential, LogUniform, Normal, Uniform
 from workbench.hypotheses.processes import Contribution
 from workbench.hypotheses.shapes import Flat, Gaussian
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
@@ -103,6 +103,28 @@ def test_too_few_masses_would_be_seen() -> None:
     """The same sum on one mass in two resolutions is off by far more than what is allowed above."""
     counts = counts_with(*LINES["a line"])
     assert abs(ln_ratio_by_grid(counts, 0.5) - ln_ratio_by_grid(counts, 12.0)) > 0.1
+
+
+def test_a_peak_five_deviations_out_in_the_prior_of_its_mass_is_not_missed() -> None:
+    """By brute force to seven deviations; up to four there is less than half of it."""
+    edges = np.linspace(0.0, 20.0, 41)
+    expected = 400.0 * -np.diff(np.exp(-edges / 8.0)) / -np.expm1(-20.0 / 8.0)
+    expected = expected + 55.0 * np.diff(stats.norm(6.0, 0.4).cdf(edges))
+    prior = Normal(14.0, 1.6)
+    analysis = bump(np.round(expected), strength=Uniform(0.0, 10.0), mass=prior)
+    model = compile_model(analysis, "signal plus background")
+    strengths = under(Uniform(0.0, 10.0), 0.0, 1.0, 2.5, 5.0, 10.0, nodes=16)
+
+    def to(deviations: float) -> float:
+        ends = np.linspace(14.0 - 1.6 * deviations, 14.0 + 1.6 * deviations, 61)
+        return ln_evidence(model, {"strength": strengths, "mass": under(prior, *ends, nodes=6)})
+
+    evidence = weigh(analysis).evidences[1]
+    assert evidence.established, evidence.reason
+    assert evidence.error is not None
+    assert evidence.ln_evidence is not None
+    assert abs(evidence.ln_evidence - to(7.0)) < 3.5 * evidence.error
+    assert to(4.0) < to(7.0) - np.log(2.0)
 
 
 def with_width(counts: Array) -> Analysis:

@@ -46,7 +46,9 @@ _PANEL_ANGLE = 2.4
 _FINEST = 0.35
 _FIRST_GRID = 400
 _LARGEST_GRID = 20_000
-_SHORTEST = 1e-4
+_SHORTEST = 1e-5
+_FARTHEST = 6.0  # standard deviations of a normal prior: one part in a thousand million lies beyond
+_TAIL, _STILL = 2.0, 0.05
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -106,7 +108,9 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
         The axis.
     """
     levels = (0.0,) if len(axes) == 1 else (-1.5, 0.0, 1.5)
-    grid = np.linspace(0.0, 1.0, _FIRST_GRID + 1)
+    body = special.ndtri(np.linspace(0.0, 1.0, _FIRST_GRID + 1)[1:-1])
+    tails = np.linspace(-_FARTHEST, _FARTHEST, 4 * int(_FARTHEST) + 1)
+    grid = np.unique(np.concatenate([body, tails]))
     turned = _turned(model, landscape, axis, grid, levels)
     while turned.max() > _FINEST and grid.size < _LARGEST_GRID:
         wide = np.flatnonzero((turned > _FINEST) & (np.diff(grid) > _SHORTEST))
@@ -114,13 +118,24 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
             break
         grid = np.sort(np.concatenate([grid, 0.5 * (grid[wide] + grid[wide + 1])]))
         turned = _turned(model, landscape, axis, grid, levels)
-    length = np.concatenate([[0.0], np.cumsum(turned)])
+    length = np.concatenate([[0.0], np.cumsum(turned + _thinning(grid, turned))])
     panels = max(2, int(np.ceil(length[-1] / _PANEL_ANGLE)))
     if length[-1] <= 0.0:
         return Axis(np.linspace(0.0, 1.0, panels + 1))
-    inner = np.interp(np.linspace(0.0, length[-1], panels + 1), length, grid)
+    inner = special.ndtr(np.interp(np.linspace(0.0, length[-1], panels + 1), length, grid))
     inner[0], inner[-1] = 0.0, 1.0
     return Axis(np.unique(inner))
+
+
+def _thinning(grid: Array, turned: Array) -> Array:
+    """Return what the prior's own fall adds to each interval's length, where signals still turn in its tail.
+
+    Far out the prior falls by e within 1/|t|: nodes even in prior probability would stand at the near end of
+    a panel only, and miss what the counts make of its far end.
+    """
+    width = np.diff(grid)
+    middle = np.abs(0.5 * (grid[1:] + grid[:-1]))
+    return np.where((middle > _TAIL) & (turned > _STILL * width), middle * width, 0.0)
 
 
 def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: tuple[float, ...]) -> Array:
@@ -131,7 +146,7 @@ def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: 
 
 def _angles(model: Model, landscape: Landscape, axis: int, grid: Array, level: float) -> Array:
     points = np.full((grid.size, model.signal.size), level)
-    points[:, model.signal == axis] = standard(np.clip(grid, 1e-6, 1.0 - 1e-6))[:, None]
+    points[:, model.signal == axis] = grid[:, None]
     strengths = [model.coordinates[index].is_strength for index in model.signal]
     points[:, np.array(strengths) & (model.signal != axis)] = 0.0
     events = signal_events(model, landscape, points) * np.sqrt(landscape.weight)
