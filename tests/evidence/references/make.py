@@ -17,13 +17,13 @@ from tests.evidence.references.direct import Direct
 from tests.evidence.references.making import MOST, WANTED, reference
 
 
-def made(number: int, wanted: float = WANTED, most: int = MOST) -> list[saved.Saved]:
+def made(number: int, wanted: float = WANTED, most: int = MOST, *, drawn: bool = False) -> list[saved.Saved]:
     """Return the references of one case, one a hypothesis."""
     one = case(number)
     rows = []
     for place, hypothesis in enumerate(one.analysis.hypotheses):
         direct = Direct(one.analysis, hypothesis.name)
-        found = reference(direct, (SEED, number, place), wanted, most)
+        found = reference(direct, (SEED, number, place), wanted, most, drawn=drawn)
         rows.append(
             saved.Saved(
                 number,
@@ -48,6 +48,7 @@ def main() -> None:
     parser.add_argument("--cases", type=int, nargs="*", help="make these again")
     parser.add_argument("--error", type=float, default=WANTED, help="standard error to stop at [nats]")
     parser.add_argument("--draws", type=int, default=MOST, help="at most how many draws")
+    parser.add_argument("--drawn", action="store_true", help="draw also where quadrature would do")
     options = parser.parse_args()
     first, rows = saved.read()
     if first != saved.heading():
@@ -56,7 +57,7 @@ def main() -> None:
     wanted = options.cases or [number for number in range(TOTAL) if number not in done]
     for number in wanted:
         started = time.perf_counter()
-        found = made(number, options.error, options.draws)
+        found = made(number, options.error, options.draws, drawn=options.drawn)
         rows |= {(row.number, row.hypothesis): row for row in found}
         saved.write(rows.values())
         told = ", ".join(f"{row.ln_evidence:.4f} ± {row.error:.2g} ({row.effective:.2f})" for row in found)
