@@ -48,7 +48,7 @@ _FIRST_GRID = 400
 _LARGEST_GRID = 20_000
 _SHORTEST = 1e-5
 _FARTHEST = 6.0  # standard deviations of a normal prior: one part in a thousand million lies beyond
-_TAIL, _STILL = 2.0, 0.05
+_TAIL, _STILL, _FALL = 2.0, 0.3, 0.6  # deviations; radians a deviation; radians for a fall by e
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -135,7 +135,7 @@ def _thinning(grid: Array, turned: Array) -> Array:
     """
     width = np.diff(grid)
     middle = np.abs(0.5 * (grid[1:] + grid[:-1]))
-    return np.where((middle > _TAIL) & (turned > _STILL * width), middle * width, 0.0)
+    return np.where((middle > _TAIL) & (turned > _STILL * width), _FALL * middle * width, 0.0)
 
 
 def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: tuple[float, ...]) -> Array:
