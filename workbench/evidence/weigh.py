@@ -32,6 +32,8 @@ Array = npt.NDArray[np.float64]
 
 LARGEST_ERROR = 0.1
 _NOWHERE: Mapping[str, float] = {}
+# Beyond this k-hat sampling needs the quadrature, whose own error must then be below the next number.
+_CONFIRMED_ABOVE, _LARGEST_ROUGHNESS = 0.5, 0.5
 # The spread of weights tells their error where four moments are finite: k below 1/4; k-hat is noisy itself.
 _EVEN_ENOUGH = 0.3
 
@@ -226,6 +228,11 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
         return "the nuisance parameters have no maximum that Laplace could integrate around"
     if not np.isfinite([grid.ln_evidence, grid.error, drawn.error]).all():
         return "its numbers are too far apart for double precision"
+    return _overlooked(grid, drawn) or _disagreement(grid, drawn)
+
+
+def _disagreement(grid: Grid, drawn: Sample) -> str:
+    """Return what is too large: an error, k-hat, or the estimators' difference; empty where nothing is."""
     allowed = largest_allowed(drawn.ln_weights.size)
     if drawn.error > LARGEST_ERROR:
         return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
@@ -233,15 +240,20 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
         return (
             f"a few draws dominate the sampling pass (k-hat {drawn.k_hat:.2f}, allowed below {allowed:.2f})"
         )
+    if drawn.k_hat > _CONFIRMED_ABOVE and grid.error > _LARGEST_ROUGHNESS:
+        return (
+            f"a few draws weigh much (k-hat {drawn.k_hat:.2f}), and with an error of {grid.error:.2g} the "
+            "quadrature can't confirm them"
+        )
     gap = abs(grid.ln_evidence - drawn.ln_evidence)
     limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
     if not gap <= limit:
         return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
-    return _overlooked(grid, drawn)
+    return ""
 
 
 def _overlooked(grid: Grid, drawn: Sample) -> str:
-    """Return what both estimators may have left out although they agree; empty where there is nothing."""
+    """Return what both estimators may have left out, whatever they say; empty where there is nothing."""
     if grid.columns.is_cut:
         return (
             "counts and the strength's prior are too far apart: the integrand still rises where numbers end"
