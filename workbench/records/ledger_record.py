@@ -78,6 +78,8 @@ def _shares(shares: Shares) -> dict[str, Any]:
         "reason": shares.reason or None,
         "total": shares.total,
         "total_error": shares.total_error,
+        "drawn_total": None if shares.drawn is None else shares.drawn.value,
+        "drawn_total_error": None if shares.drawn is None else shares.drawn.error,
         "orders": shares.orders,
         "draws": shares.draws,
         "effective_draws": shares.effective,

@@ -92,7 +92,7 @@ class Shares:
 
     Attributes:
         orders: number of passes over the bins, the reversed ones included.
-        total: what the shares add up to: ln B as these draws give it [nats]; None where not established.
+        total: what the shares add up to: ln B [nats]; None where not established.
         total_error: one standard error of it [nats].
         draws: number of draws, of the hypothesis that took more.
         effective: the smallest effective number of draws at any step of a typical pass (half have more); None
@@ -103,6 +103,7 @@ class Shares:
         reason: why it is not; empty when it is.
         rest: what all bins but the k heaviest add up to, k = 0, 1, 2, ..., at most 32; empty where not
             established. Their shares' errors are not independent, so that these can't be had from those.
+        drawn: ln B as the draws of the shares give it themselves; None where none were needed.
     """
 
     orders: int
@@ -115,6 +116,7 @@ class Shares:
     established: bool
     reason: str
     rest: tuple[Sum, ...] = ()
+    drawn: Sum | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,4 +1,9 @@
-"""Shares of a Bayes factor that add up to it exactly, from two hypotheses' chains along the same orders."""
+"""Shares of a Bayes factor that add up to it exactly, from two hypotheses' chains along the same orders.
+
+The chains' draws give a Bayes factor of their own, within its error of the one that stands. What lies between
+is given to the bins as far as each one's noise takes part in the noise of the whole: the least squares
+adjustment of the shares to their known sum.
+"""
 
 from __future__ import annotations
 
@@ -28,11 +33,13 @@ class Split:
         shaken: (2, scramble, bin) what each bin adds under either hypothesis without each scramble of its
             draws [nats].
         how: how the shares were made and whether they are established.
+        leaning: (bin,) each bin's part in the error of the whole; they add up to 1, or all are 0.
     """
 
     pairs: Array
     shaken: Array
     how: Shares
+    leaning: Array
 
     def share(self, bins: Flags) -> tuple[float, float, float]:
         """Return the share of some bins with its errors from orders and from draws [nats]."""
@@ -40,7 +47,9 @@ class Split:
         from_orders = float(pairs.std(ddof=1) / np.sqrt(pairs.size)) if pairs.size > 1 else 0.0
         # The shares of everything add up to ln B in whatever order.
         from_orders = 0.0 if bins.all() else from_orders
-        return float(pairs.mean()), from_orders, _sampling_error(self.shaken[:, :, bins].sum(axis=2))
+        from_draws = _sampling_error(self.shaken[:, :, bins].sum(axis=2))
+        from_whole = float(self.leaning[bins].sum()) * (self.how.total_error or 0.0)
+        return float(pairs.mean()), from_orders, float(np.hypot(from_draws, from_whole))
 
 
 def split(comparison: Comparison, chain: Chain | None, against: Chain | None) -> Split | None:
@@ -82,9 +91,33 @@ def split(comparison: Comparison, chain: Chain | None, against: Chain | None) ->
     reason = _doubt(how, comparison, largest)
     if reason:
         failed = replace(how, total=None, total_error=None, established=False, reason=reason)
-        return Split(pairs, shaken, failed)
-    apart = Split(pairs, shaken, how)
-    return replace(apart, how=replace(how, rest=_rest(apart)))
+        return Split(pairs, shaken, failed, np.zeros(pairs.shape[1]))
+    apart = _settled(pairs, shaken, how, comparison)
+    return replace(apart, how=replace(apart.how, rest=_rest(apart)))
+
+
+def _settled(pairs: Array, shaken: Array, how: Shares, comparison: Comparison) -> Split:
+    """Return the split with its shares adjusted to add up to the Bayes factor that stands.
+
+    share_i + (ln B - sum of shares) cov(share_i, sum)/var(sum)
+
+    Source:
+        Adjustment of conditioned observations by least squares, C.F. Gauss (1826); from memory.
+    """
+    value, error = comparison.ln_bayes_factor, comparison.ln_bayes_factor_error
+    apart = shaken - shaken.mean(axis=1, keepdims=True)
+    wholes = apart.sum(axis=2, keepdims=True)
+    variance = float((wholes**2).sum())
+    if value is None or how.total is None or variance <= 0.0:
+        return Split(pairs, shaken, how, np.zeros(pairs.shape[1]))
+    leaning = (apart * wholes).sum(axis=(0, 1)) / variance
+    drawn = Sum(how.total, how.total_error or 0.0)
+    return Split(
+        pairs + (value - how.total) * leaning,
+        shaken - wholes * leaning,
+        replace(how, total=value, total_error=error, drawn=drawn),
+        leaning,
+    )
 
 
 def _rest(apart: Split) -> tuple[Sum, ...]:
