@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 
 from tests.records import hand_built as hand
-from workbench.commands import check, fit, inputs, weigh
+from workbench.commands import check, fit, inputs, judging, weigh
 from workbench.commands.main import main
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Ending
@@ -40,9 +40,9 @@ def engine(monkeypatch: pytest.MonkeyPatch) -> None:
     analysis = with_unused_errors(hand.analysis())
     for module in (weigh, check, fit):
         monkeypatch.setattr(module, "load", lambda options, seed: (analysis, replace(hand.ORIGIN, seed=seed)))
-    for module in (weigh, check):
+    for module in (judging, check):
         monkeypatch.setattr(module, "adequacy", lambda analysis, name, **options: adequacies[name])
-    for module in (weigh, fit):
+    for module in (judging, fit):
         monkeypatch.setattr(module, "fit", lambda analysis, name, asymmetric: fits[name])
     monkeypatch.setattr(check, "prior_predictive", lambda analysis, name, seed: predictives[name])
     monkeypatch.setattr(weigh, "weigh", lambda analysis, seed: replace(hand.weighing(), seed=seed))
@@ -67,7 +67,7 @@ def test_a_hypothesis_that_fails_is_an_answer_and_no_error(
     monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
     failing = {item.hypothesis: item for item in hand.adequacies(0.0005, 0.0005)}
-    monkeypatch.setattr(weigh, "adequacy", lambda analysis, name, **options: failing[name])
+    monkeypatch.setattr(judging, "adequacy", lambda analysis, name, **options: failing[name])
     assert main(["weigh", "tern.toml"]) == 0
     assert "NEITHER HYPOTHESIS DESCRIBES THE DATA" in capsys.readouterr().out.splitlines()[1]
 

@@ -35,9 +35,10 @@ def run(options: argparse.Namespace) -> int:
         refuse_other_kinds("--picture", options.picture)
     outcome = _compared(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_backgrounds
+        from workbench.commands.pictures import save_figure
+        from workbench.plots.page import backgrounds_page
 
-        save_backgrounds(outcome, options.picture)
+        save_figure(backgrounds_page(outcome), options.picture)
     deliver(
         options, lambda: backgrounds_screen(outcome), lambda: backgrounds_record(outcome), outcome.cautions
     )

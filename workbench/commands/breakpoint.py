@@ -66,9 +66,10 @@ def run(options: argparse.Namespace) -> int:
         refuse_other_kinds("--picture", options.picture)
     outcome = _found(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_break_point
+        from workbench.commands.pictures import save_figure
+        from workbench.plots.page import break_point_page
 
-        save_break_point(outcome, options.picture)
+        save_figure(break_point_page(outcome), options.picture)
     cautions = outcome.analysis.cautions
     deliver(options, lambda: breakpoint_screen(outcome), lambda: breakpoint_record(outcome), cautions)
     return 0 if outcome.found.ending.is_answer else 1

@@ -64,9 +64,10 @@ def run(options: argparse.Namespace) -> int:
         refuse_other_kinds("--picture", options.picture)
     outcome = _accounted(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_ledger
+        from workbench.commands.pictures import save_figure
+        from workbench.plots.ledger_page import ledger_page
 
-        save_ledger(outcome, options.picture)
+        save_figure(ledger_page(outcome), options.picture)
     deliver(options, lambda: ledger_screen(outcome), lambda: ledger_record(outcome), outcome.cautions)
     return 0 if outcome.ledger.established else 1
 

@@ -4,22 +4,15 @@ from __future__ import annotations
 
 from pathlib import Path
 
+from matplotlib.figure import Figure
+
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
 from workbench.errors import InputError, Problem, quoted
 from workbench.evidence.ratio.reading import profile, sheet, shown_values
-from workbench.plots.ledger_page import ledger_page
-from workbench.plots.page import KINDS, backgrounds_page, break_point_page, picture_bytes, weighing_page
-from workbench.plots.priors_page import priors_page
+from workbench.plots.page import KINDS, picture_bytes
 from workbench.plots.scan_page import scan_page
-from workbench.records.outcomes import (
-    BackgroundsOutcome,
-    BreakPointOutcome,
-    LedgerOutcome,
-    PriorsOutcome,
-    ScanOutcome,
-    WeighOutcome,
-)
+from workbench.records.outcomes import ScanOutcome
 
 _POINTS = 801
 _MOST_PARAMETERS = 2
@@ -44,61 +37,17 @@ def refuse_other_kinds(option: str, name: str) -> None:
     refuse_unwritable(option, name)
 
 
-def save_weighed(outcome: WeighOutcome, name: str) -> None:
-    """Draw odds and counts into a file, whole or not at all.
+def save_figure(figure: Figure, name: str) -> None:
+    """Draw a figure into a file, whole or not at all.
 
     Args:
-        outcome: what `weigh` found.
-        name: the file.
+        figure: what is drawn.
+        name: the file; its ending says the kind.
 
     Raises:
         InputError: if it can't be written.
     """
-    write_bytes_atomically(Path(name), picture_bytes(weighing_page(outcome), _kind(name)))
-
-
-def save_backgrounds(outcome: BackgroundsOutcome, name: str) -> None:
-    """Draw the alternatives of the backgrounds into a file, whole or not at all.
-
-    Args:
-        outcome: what `backgrounds` found.
-        name: the file.
-
-    Raises:
-        InputError: if it can't be written.
-    """
-    write_bytes_atomically(Path(name), picture_bytes(backgrounds_page(outcome), _kind(name)))
-
-
-def save_break_point(outcome: BreakPointOutcome, name: str) -> None:
-    """Draw a break point's distortion into a file, whole or not at all.
-
-    Args:
-        outcome: what `breakpoint` found.
-        name: the file.
-
-    Raises:
-        InputError: if it can't be written.
-    """
-    write_bytes_atomically(Path(name), picture_bytes(break_point_page(outcome), _kind(name)))
-
-
-def save_ledger(outcome: LedgerOutcome, name: str) -> None:
-    """Draw counts, their weights and the uncertainties into a file, whole or not at all.
-
-    Args:
-        outcome: what `ledger` found.
-        name: the file.
-
-    Raises:
-        InputError: if it can't be written.
-    """
-    write_bytes_atomically(Path(name), picture_bytes(ledger_page(outcome), _kind(name)))
-
-
-def save_priors(outcome: PriorsOutcome, name: str) -> None:
-    """Draw what priors do into a file, whole or not at all; see `save_weighed`."""
-    write_bytes_atomically(Path(name), picture_bytes(priors_page(outcome), _kind(name)))
+    write_bytes_atomically(Path(name), picture_bytes(figure, _kind(name)))
 
 
 def save_scan(outcome: ScanOutcome, name: str) -> None:
@@ -125,7 +74,7 @@ def save_scan(outcome: ScanOutcome, name: str) -> None:
     read = (
         sheet(found) if len(found.over) == _MOST_PARAMETERS else profile(found, shown_values(found, _POINTS))
     )
-    write_bytes_atomically(Path(name), picture_bytes(scan_page(found, read), _kind(name)))
+    save_figure(scan_page(found, read), name)
 
 
 def _kind(name: str) -> str:

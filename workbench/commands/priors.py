@@ -53,9 +53,10 @@ def run(options: argparse.Namespace) -> int:
         refuse_other_kinds("--picture", options.picture)
     outcome = _examined(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_priors
+        from workbench.commands.pictures import save_figure
+        from workbench.plots.priors_page import priors_page
 
-        save_priors(outcome, options.picture)
+        save_figure(priors_page(outcome), options.picture)
     deliver(options, lambda: priors_screen(outcome), lambda: priors_record(outcome), outcome.cautions)
     return 0 if outcome.found.established else 1
 

@@ -45,9 +45,10 @@ def run(options: argparse.Namespace) -> int:
         refuse_other_kinds("--picture", options.picture)
     outcome = _weighed(options)
     if options.picture is not None:
-        from workbench.commands.pictures import save_weighed
+        from workbench.commands.pictures import save_figure
+        from workbench.plots.page import weighing_page
 
-        save_weighed(outcome, options.picture)
+        save_figure(weighing_page(outcome), options.picture)
     deliver(options, lambda: weigh_screen(outcome), lambda: weigh_record(outcome), outcome.cautions)
     return 0 if outcome.weighing.established else 1
 
