@@ -22,6 +22,7 @@ HOMES = {
     "traitlets": "widgets/",
     "IPython": "widgets/",
     "iminuit": "likelihood/fit.py",
+    "dynesty": "evidence/nested.py",
 }
 
 

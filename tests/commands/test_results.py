@@ -12,6 +12,7 @@ import pytest
 from tests.records import hand_built as hand
 from workbench.commands import check, fit, inputs, judging, weigh
 from workbench.commands.main import main
+from workbench.evidence.results import Weighing
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.results import Ending
 
@@ -45,7 +46,7 @@ def engine(monkeypatch: pytest.MonkeyPatch) -> None:
     for module in (judging, fit):
         monkeypatch.setattr(module, "fit", lambda analysis, name, asymmetric: fits[name])
     monkeypatch.setattr(check, "prior_predictive", lambda analysis, name, seed: predictives[name])
-    monkeypatch.setattr(weigh, "weigh", lambda analysis, seed: replace(hand.weighing(), seed=seed))
+    monkeypatch.setattr(weigh, "weigh", lambda analysis, seed, engine: replace(hand.weighing(), seed=seed))
 
 
 def test_a_weighing_is_printed_as_its_screen(capsys: pytest.CaptureFixture[str]) -> None:
@@ -58,7 +59,7 @@ def test_a_weighing_is_printed_as_its_screen(capsys: pytest.CaptureFixture[str])
 def test_what_is_not_established_ends_with_1(
     monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    monkeypatch.setattr(weigh, "weigh", lambda analysis, seed: hand.unestablished())
+    monkeypatch.setattr(weigh, "weigh", lambda analysis, seed, engine: hand.unestablished())
     assert main(["weigh", "tern.toml"]) == 1
     assert "NOT ESTABLISHED" in capsys.readouterr().out
 
@@ -84,6 +85,25 @@ def test_the_seed_and_options_are_on_record(capsys: pytest.CaptureFixture[str]) 
     assert main(["weigh", "tern.toml", "--json", "--seed", "42", "--pseudo-experiments", "5000"]) == 0
     record = json.loads(capsys.readouterr().out)
     assert (record["seed"], record["options"]["pseudo_experiments"]) == (42, 5000)
+
+
+def test_the_engine_asked_for_is_used_and_on_record(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    asked: list[str] = []
+
+    def weighed(analysis: Analysis, seed: int, engine: str) -> Weighing:
+        asked.append(engine)
+        return replace(hand.weighing(), seed=seed)
+
+    monkeypatch.setattr(weigh, "weigh", weighed)
+    assert main(["weigh", "tern.toml", "--json", "--engine", "annealed"]) == 0
+    assert json.loads(capsys.readouterr().out)["options"]["engine"] == "annealed"
+    assert main(["weigh", "tern.toml"]) == 0
+    assert asked == ["annealed", "auto"]
+    capsys.readouterr()
+    assert main(["weigh", "tern.toml", "--engine", "anneal"]) == 2
+    assert 'write "annealed"' in capsys.readouterr().err
 
 
 @pytest.mark.parametrize("command", ["weigh", "check", "fit"])

@@ -276,6 +276,6 @@ def test_too_many_nodes_are_declined() -> None:
     model = compiled(both)
     assert model.observed is not None
     assert integrate(model, model.observed) is None
-    evidence = weigh(both).evidences[1]
+    evidence = weigh(both, engine="standard").evidences[1]
     assert (evidence.ln_evidence, evidence.established) == (None, False)
     assert "more nodes than can be held" in evidence.reason

@@ -225,9 +225,10 @@ def test_an_evidence_that_is_not_established_keeps_its_estimators() -> None:
     """Six wild sources on three counts, most of them on one side only: whatever comes out, it is honest."""
     region = several_bins("r", [3.0], {"background": [1.0], "signal": [1.0]})
     wild = tuple(source(f"source {index}", background=(4.0, 8.0), signal=(6.0, 9.0)) for index in range(3))
-    for evidence in weigh(templates(region, Uniform(0.0, 5.0), wild)).evidences:
+    analysis = templates(region, Uniform(0.0, 5.0), wild)
+    for evidence in (*weigh(analysis, engine="standard").evidences, *weigh(analysis).evidences):
         assert evidence.established == (evidence.reason == "")
-        assert evidence.estimates[-1].name == "sampling"
+        assert "sampling" in [one.name for one in evidence.estimates]
         assert all(np.isfinite(one.ln_evidence) for one in evidence.estimates)
 
 

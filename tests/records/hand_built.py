@@ -167,6 +167,23 @@ def unestablished() -> Weighing:
     )
 
 
+def annealed() -> Weighing:
+    """Return a weighing whose second evidence needed another engine, and one alternative of its first too."""
+    given = weighing()
+    first, second = given.evidences
+    reason = "quadrature and sampling differ by 0.41, more than 0.12"
+    estimate = Estimate("annealing", second.ln_evidence or 0.0, 0.021, None, 1_245_184)
+    other = replace(
+        second,
+        error=0.021,
+        estimates=(replace(second.estimates[0], ln_evidence=-35.985), second.estimates[1], estimate),
+        engine="annealed",
+        engine_reason=reason,
+    )
+    comparison = replace(given.comparisons[0], ln_bayes_factor_error=0.021)
+    return replace(given, evidences=(first, other), comparisons=(comparison,))
+
+
 def weighed(given: Weighing | None = None, judged: tuple[Adequacy, ...] | None = None) -> WeighOutcome:
     """Return what `weigh` would hand over."""
     return WeighOutcome(analysis(), ORIGIN, given or weighing(), judged or adequacies(), fits())

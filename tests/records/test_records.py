@@ -86,6 +86,20 @@ def test_what_is_not_established_has_null_odds_and_keeps_its_estimators() -> Non
     ] * 3
 
 
+def test_the_engine_that_made_a_number_is_on_record_with_why() -> None:
+    record = weigh_record(hand.weighed(hand.annealed()))
+    first, second = record["hypotheses"]
+    assert (first["engine"], first["engine_reason"]) == ("standard", None)
+    assert second["engine"] == "annealed"
+    assert second["engine_reason"].startswith("quadrature and sampling differ")
+    assert [item["name"] for item in second["estimators"]] == ["quadrature", "sampling", "annealing"]
+    assert "dynesty" not in record["versions"]
+    given = hand.annealed()
+    nested = replace(given.evidences[1], engine="nested")
+    record = weigh_record(hand.weighed(replace(given, evidences=(given.evidences[0], nested))))
+    assert record["versions"]["dynesty"] == metadata.version("dynesty")
+
+
 def test_odds_beyond_floats_are_kept_by_their_logarithm() -> None:
     (comparison,) = weigh_record(hand.weighed(hand.weighing(2000.0)))["comparisons"]
     assert comparison["ln_posterior_odds"] == pytest.approx(2000.0 + math.log(0.1))

@@ -32,6 +32,7 @@ SCREENS: dict[str, Callable[[], str]] = {
     "weigh-background-fails": lambda: weigh_screen(hand.weighed(judged=hand.adequacies(0.003))),
     "weigh-neither-fits": lambda: weigh_screen(hand.weighed(judged=hand.adequacies(0.0005, 0.0005))),
     "weigh-not-established": lambda: weigh_screen(hand.weighed(hand.unestablished())),
+    "weigh-annealed": lambda: weigh_screen(hand.weighed(hand.annealed())),
     "weigh-huge": lambda: weigh_screen(hand.weighed(hand.weighing(2000.0))),
     "weigh-three": lambda: weigh_screen(three()),
     "weigh-ascii": lambda: plain_ascii(weigh_screen(hand.weighed())),

@@ -98,6 +98,7 @@ def _refuse_others(options: argparse.Namespace) -> None:
     given = [
         ("FILE", options.file),
         ("--picture", options.picture),
+        ("--engine", options.engine),
         ("--strength", options.strength),
         ("--background-uncertainty", options.background_uncertainty),
         ("--save", options.save),

@@ -14,9 +14,10 @@ from workbench.commands.inputs import (
     refuse_planning,
 )
 from workbench.commands.judging import fits_and_adequacies
-from workbench.commands.parsing import Parser
+from workbench.commands.parsing import Parser, one_of
 from workbench.commands.reprior import add_reprior_options, read_again, refuse_priors_alone
 from workbench.commands.terminal import Progress
+from workbench.evidence.engines import AUTO, ENGINES
 from workbench.evidence.weigh import weigh
 from workbench.records.outcomes import WeighOutcome
 from workbench.records.screens.weigh import weigh_screen
@@ -31,6 +32,13 @@ def add_options(parser: Parser) -> None:
     add_histogram_options(parser)
     add_reprior_options(parser)
     parser.add_argument("--picture", metavar="FILE", help="draw odds and counts into a .png, .svg or .pdf")
+    parser.add_argument(
+        "--engine",
+        metavar="NAME",
+        type=one_of("--engine", ENGINES),
+        help=f"what makes the evidences: {', '.join(ENGINES)} (default {AUTO}: standard, and annealed where "
+        "that establishes nothing)",
+    )
 
 
 def run(options: argparse.Namespace) -> int:
@@ -56,12 +64,12 @@ def run(options: argparse.Namespace) -> int:
 def _weighed(options: argparse.Namespace) -> WeighOutcome:
     analysis, origin = load(options, seed=options.seed)
     refuse_planning(analysis, "weigh")
-    most = options.pseudo_experiments
+    most, engine = options.pseudo_experiments, options.engine or AUTO
     with Progress() as progress:
         progress.say("weighing")
-        weighing = weigh(analysis, seed=options.seed)
+        weighing = weigh(analysis, seed=options.seed, engine=engine)
         fits, adequacies = fits_and_adequacies(
             analysis, weighing, seed=options.seed, most=most, progress=progress
         )
-    asked = {**origin.options, "pseudo_experiments": most}
+    asked = {**origin.options, "pseudo_experiments": most, "engine": engine}
     return WeighOutcome(analysis, replace(origin, options=asked), weighing, adequacies, fits)

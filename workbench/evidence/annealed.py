@@ -7,56 +7,36 @@ error. Rounds of twice as many chains follow until the error is small, each on r
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 import numpy.typing as npt
 from scipy import special
 
 from workbench.evidence.annealed_moves import Terrain
-from workbench.evidence.annealed_populations import Populations, ascend, scout
+from workbench.evidence.annealed_populations import STEPS, Populations, ascend, scout
+from workbench.evidence.drawn import Drawn, nothing_drawn, widened
 from workbench.evidence.exchange import blocks, groups, involutions
+from workbench.hypotheses.priors import Beta, Gamma
 from workbench.likelihood.model import Model
 from workbench.likelihood.objective import values_at_once
 
 Array = npt.NDArray[np.float64]
 
+NAME = "annealing"
 POPULATIONS = 16
 _FIRST_CHAINS = 64
+_FIRST_ROUNDS = 10  # the scout and the first populations take about so many times their draws
 _MOST_ROUNDS = 7
 _WANTED_ERROR = 0.03
-_MOST_EVALUATIONS = 10_000_000
-_MOST_WORK = 3e9
+_MOST_EVALUATIONS = 6_000_000
+_MOST_WORK = 1.5e9
+_OF_A_QUANTILE = 300  # as much work as so many bins: an incomplete gamma or beta function to invert
 _MOST_NUMBERS = 6e7  # held at a time
 _ROWS = 2048
+_HOPELESS = 0.1
 _LARGEST_SPREAD = 0.5
 _FAR_AHEAD = 6.0
 _LEAST_LEAD = 0.3
 _ALLOWED_GAP = 0.05
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Annealed:
-    """The annealed populations' answer with its own diagnosis.
-
-    Attributes:
-        ln_evidence: ln of the mean Z of all populations, rounds weighted by their chains [nats].
-        error: one standard error, from the spread between populations [nats].
-        doubt: why populations or rounds don't support each other; empty where they do.
-        evaluations: points at which the likelihood was worked out.
-        populations: (round, population) ln Z of each population [nats].
-        points: (draw, coordinate) standard coordinates of the last round.
-        ln_weights: (draw,) ln Z of each draw's own population: the mean of their exponentials is the last
-            round's Z, and each is the draw's weight in the posterior [nats].
-    """
-
-    ln_evidence: float
-    error: float
-    doubt: str
-    evaluations: int
-    populations: Array
-    points: Array
-    ln_weights: Array
 
 
 @np.errstate(all="ignore")  # an impossible point has ln likelihood -inf
@@ -66,7 +46,7 @@ def anneal(
     *,
     most: int = _MOST_EVALUATIONS,
     wanted_error: float = _WANTED_ERROR,
-) -> Annealed:
+) -> Drawn:
     """Return the integral of a likelihood over a standard normal by annealed populations.
 
     Args:
@@ -86,14 +66,19 @@ def anneal(
     Source:
         See `annealed_populations.ascend`.
     """
+    least = _FIRST_ROUNDS * POPULATIONS * _FIRST_CHAINS * STEPS
+    if most < least:
+        return nothing_drawn(NAME, terrain.size, "too many bins and sources to anneal populations")
     generators = [np.random.default_rng(one) for one in seed.spawn(1 + POPULATIONS * _MOST_ROUNDS)]
     chains = _FIRST_CHAINS
-    scouted = scout(terrain, generators.pop(), POPULATIONS * chains, most)
+    scouted = scout(terrain, generators.pop(), POPULATIONS * chains, most // 3)
     if not np.isfinite(scouted.ln_evidence).all():
-        return _nothing(terrain, "no draw can produce the observed counts", scouted.evaluations)
+        return nothing_drawn(
+            NAME, terrain.size, "no draw can produce the observed counts", scouted.evaluations
+        )
     if scouted.beta < 1.0:
         reason = "the way from the prior to the posterior is too long for annealed populations"
-        return _nothing(terrain, reason, scouted.evaluations)
+        return nothing_drawn(NAME, terrain.size, reason, scouted.evaluations)
     rounds: list[Populations] = []
     rungs, evaluations = scouted.rungs, scouted.evaluations
     for _ in range(_MOST_ROUNDS):
@@ -102,8 +87,15 @@ def anneal(
         evaluations += rounds[-1].evaluations
         answer = _answer(rounds, evaluations)
         is_enough = len(rounds) > 1 and answer.error <= wanted_error and not answer.doubt
+        # An error falls as the root of the work.
+        is_hopeless = len(rounds) > 1 and answer.error * np.sqrt(evaluations / most) > _HOPELESS
         next_states = 2 * max(rounds[-1].points.size, POPULATIONS * chains * terrain.size)
-        if is_enough or evaluations + 2 * rounds[-1].evaluations > most or next_states > _MOST_NUMBERS:
+        if (
+            is_enough
+            or is_hopeless
+            or evaluations + 2 * rounds[-1].evaluations > most
+            or next_states > _MOST_NUMBERS
+        ):
             break
         if np.isfinite(rounds[-1].ln_evidence).any():
             rungs = rounds[-1].rungs
@@ -126,20 +118,16 @@ def terrain_of(model: Model, counts: Array) -> Terrain:
 
 
 def most_evaluations(model: Model) -> int:
-    """Return how many evaluations of a hypothesis keep the waiting to about half a minute."""
+    """Return how many evaluations of a hypothesis keep the waiting to about a quarter of a minute."""
     work = 2 * model.bins
     for part in model.parts:
         sources = 0 if part.by_bin is None else part.by_bin.indices.size
         work += (part.bins.stop - part.bins.start) * (1 + sources)
+    work += _OF_A_QUANTILE * sum(isinstance(one.prior, Gamma | Beta) for one in model.coordinates)
     return int(min(_MOST_WORK / work, _MOST_EVALUATIONS))
 
 
-def _nothing(terrain: Terrain, doubt: str, evaluations: int) -> Annealed:
-    nowhere = np.zeros((0, terrain.size))
-    return Annealed(-np.inf, np.inf, doubt, evaluations, np.zeros((0, POPULATIONS)), nowhere, np.zeros(0))
-
-
-def _answer(rounds: list[Populations], evaluations: int) -> Annealed:
+def _answer(rounds: list[Populations], evaluations: int) -> Drawn:
     """Return the mean over populations and rounds, with the error that their spread gives."""
     each = np.stack([one.ln_evidence for one in rounds])
     share = 2.0 ** np.arange(len(rounds))
@@ -152,24 +140,16 @@ def _answer(rounds: list[Populations], evaluations: int) -> Annealed:
     variance = relative.var(axis=1, ddof=1) / POPULATIONS
     error = widened(POPULATIONS) * float(np.sqrt(share**2 @ variance)) / mean if mean > 0.0 else np.inf
     points = rounds[-1].points
-    return Annealed(
+    return Drawn(
+        NAME,
         top + float(np.log(mean)),
         error,
         disagreement(each),
         evaluations,
-        each,
+        each[-1],
         points.reshape(-1, points.shape[-1]),
         np.repeat(each[-1], points.shape[1]),
     )
-
-
-def widened(values: int) -> float:
-    """Return by how much an error from the spread of so few values has to be widened to hold 68 %.
-
-    Source:
-        Student, Biometrika 6 (1908) 1.
-    """
-    return float(special.stdtrit(values - 1, special.ndtr(1.0)))
 
 
 def disagreement(each: Array) -> str:

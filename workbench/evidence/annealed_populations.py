@@ -29,7 +29,7 @@ _HALVINGS = 40
 _MOST_STAGES = 500
 _MOST_BLOCKS = 8
 _STILL_ALIKE = 0.2
-_STEPS = 2 * len(CYCLE)
+STEPS = 2 * len(CYCLE)
 _FIRST_SCALES = (0.7, 1.0)
 _NUDGE = 1e-6
 _ENTRIES = 1024
@@ -108,7 +108,7 @@ def ascend(terrain: Terrain, rungs: tuple[Rung, ...], generators: Generators, ch
 
 
 def _from_prior(terrain: Terrain, generators: Generators, chains: int) -> Populations:
-    shape = (chains * _STEPS, terrain.size)
+    shape = (chains * STEPS, terrain.size)
     points = np.stack([generator.standard_normal(shape) for generator in generators])
     nothing = np.zeros(len(generators))
     return Populations(points, terrain.evaluated(points), 0.0, nothing, (), points[..., 0].size)
@@ -239,7 +239,7 @@ def _moved(
 def _dice(shape: tuple[int, ...], generators: Generators, cycles: int) -> Iterator[tuple[str, Dice]]:
     """Yield the kind and the random numbers of each step of a block."""
     _, chains, size = shape
-    for place in range(_STEPS):
+    for place in range(STEPS):
         normal = np.stack([one.standard_normal((chains, size)) for one in generators])
         uniform = np.stack([one.random((chains, size + CHOICES)) for one in generators])
         turn, which = divmod(place, len(CYCLE))

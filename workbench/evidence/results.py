@@ -12,7 +12,7 @@ class Estimate:
     """One estimator's ln evidence.
 
     Attributes:
-        name: "closed form", "quadrature" or "sampling".
+        name: "closed form", "quadrature", "Laplace", "sampling", "average", "annealing" or "nested sampling".
         ln_evidence: ln marginal likelihood of the observed counts, the n! included [nats].
         error: one standard error of its numerical noise [nats]; 0 when exact.
         k_hat: Pareto shape of the largest importance weights; None where nothing was sampled.
@@ -38,6 +38,8 @@ class Evidence:
         reason: why it is not established; empty when it is.
         estimates: every estimator's answer.
         alternatives: what it is an average of, where its backgrounds have alternatives.
+        engine: which one made the reported number, "standard", "annealed" or "nested".
+        engine_reason: why the standard one did not; empty where it did, or where another was asked for.
     """
 
     hypothesis: str
@@ -47,6 +49,8 @@ class Evidence:
     reason: str
     estimates: tuple[Estimate, ...]
     alternatives: tuple[AlternativeEvidence, ...] = ()
+    engine: str = "standard"
+    engine_reason: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,17 +5,20 @@ from __future__ import annotations
 from dataclasses import replace
 
 from workbench.errors import InputError
+from workbench.evidence.drawn import Drawn
+from workbench.evidence.draws_reweighted import ln_change_of_draws
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.quadrature import Grid, integrate, integrate_again
 from workbench.evidence.results import Evidence, ScaledPrior
 from workbench.evidence.reweighting import ln_change
+from workbench.hypotheses.priors import Prior
 from workbench.likelihood.distortions import resized
 from workbench.likelihood.model import Model
 
 
 def sensitivities(
-    model: Model, grid: Grid | None, evidence: Evidence, against: Evidence
+    model: Model, grid: Grid | None, evidence: Evidence, against: Evidence, drawn: Drawn | None = None
 ) -> tuple[ScaledPrior, ...]:
     """Return ln B with the prior of each strength, and the size of a distortion, half and twice as wide.
 
@@ -27,6 +30,7 @@ def sensitivities(
         grid: its quadrature; None where the closed form was used.
         evidence: its evidence.
         against: the evidence that ln B compares it with.
+        drawn: the draws that the evidence was made from; None where they are the quadrature's.
 
     Returns:
         One entry for each signal strength, then one for a distortion; none where ln B itself is missing.
@@ -39,10 +43,11 @@ def sensitivities(
     for index, coordinate in enumerate(model.coordinates):
         if not coordinate.is_strength:
             continue
-        changed = [
-            _ln_evidence(scaled, grid, index)
-            for scaled in (_scaled(model, index, 0.5), _scaled(model, index, 2.0))
-        ]
+        scaled = (_scaled(model, index, 0.5), _scaled(model, index, 2.0))
+        if drawn is None:
+            changed = [_ln_evidence(one, grid, index) for one in scaled]
+        else:
+            changed = [_by_draws(one, drawn, index, coordinate.prior, base) for one in scaled]
         halved, doubled = (None if one is None else ln_bayes_factor + one - base for one in changed)
         found.append(ScaledPrior(coordinate.name, coordinate.prior.text(), halved, doubled))
     if grid is not None and model.analysis.hypothesis(model.hypothesis).distortion is not None:
@@ -74,6 +79,14 @@ def _scaled(model: Model, index: int, factor: float) -> Model | None:
     coordinates = list(model.coordinates)
     coordinates[index] = replace(coordinates[index], prior=prior)
     return replace(model, coordinates=tuple(coordinates))
+
+
+def _by_draws(model: Model | None, drawn: Drawn, index: int, declared: Prior, base: float) -> float | None:
+    """Return ln Z under another prior of one strength, its draws weighted anew."""
+    if model is None:
+        return None
+    change = ln_change_of_draws(drawn, index, declared, model.coordinates[index].prior)
+    return None if change is None else base + change
 
 
 def _ln_evidence(model: Model | None, grid: Grid | None, index: int) -> float | None:

@@ -10,7 +10,9 @@ import numpy.typing as npt
 
 from workbench.errors import Caution, InputError, Problem, quoted
 from workbench.evidence.averaging import weigh_variants
+from workbench.evidence.drawn import Drawn
 from workbench.evidence.empty_bins import empty_bin_cautions
+from workbench.evidence.engines import AUTO, LARGEST_ERROR, TOO_FAR_APART, answered, refuse_unknown
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.mis_modelling import mis_modelling_cautions
@@ -30,7 +32,6 @@ from workbench.likelihood.model import Model, compile_model, never_filled
 
 Array = npt.NDArray[np.float64]
 
-LARGEST_ERROR = 0.1
 _NOWHERE: Mapping[str, float] = {}
 # Beyond this k-hat sampling needs the quadrature, whose own error must then be below the next number.
 _CONFIRMED_ABOVE, _LARGEST_ROUGHNESS = 0.5, 0.5
@@ -47,21 +48,25 @@ class Weighed:
         evidence: the answer.
         grid: the quadrature's nodes; None where the closed form was used.
         sample: the sampling pass; None where the closed form was used.
+        drawn: another engine's draws, where that made the answer.
     """
 
     model: Model
     evidence: Evidence
     grid: Grid | None = None
     sample: Sample | None = None
+    drawn: Drawn | None = None
 
 
 @np.errstate(all="ignore")  # an impossible point has ln probability -inf
-def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> Weighing:
+def weigh(analysis: Analysis, *, seed: int = 1, engine: str = AUTO, closed_forms: bool = True) -> Weighing:
     """Return evidences, Bayes factors and posterior odds of every hypothesis.
 
     Args:
         analysis: everything declared, with observed counts.
         seed: where every random number comes from.
+        engine: "standard" is the closed form, or quadrature and sampling; "auto" the same, and annealed
+            populations where it establishes nothing; "annealed" and "nested" have these make every number.
         closed_forms: False keeps to the numerical estimators even where a closed form holds.
 
     Returns:
@@ -69,28 +74,32 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
         there are some), comparisons against the first hypothesis, posterior probabilities, and cautions.
 
     Raises:
-        InputError: if a region has no observed counts.
+        InputError: if a region has no observed counts, for an unknown engine, or where dynesty is needed and
+            not installed.
 
     Source:
         R.E. Kass, A.E. Raftery, Bayes factors, J. Am. Stat. Assoc. 90 (1995) 773; from memory. The estimators
         name theirs.
     """
+    refuse_unknown(engine)
     if in_doubt(analysis):
         return weigh_variants(
-            analysis, seed, lambda one, its_seed: weigh(one, seed=its_seed, closed_forms=closed_forms)
+            analysis,
+            seed,
+            lambda one, its_seed: weigh(one, seed=its_seed, engine=engine, closed_forms=closed_forms),
         )
     children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses))
     weighed: list[Weighed] = []
     for hypothesis, child in zip(analysis.hypotheses, children, strict=True):
         near = weighed[0].grid.mode if weighed and weighed[0].grid is not None else {}
         model = compile_model(analysis, hypothesis.name)
-        weighed.append(weigh_hypothesis(model, child, closed_forms=closed_forms, near=near))
+        weighed.append(_weighed_by(engine, model, child, closed_forms=closed_forms, near=near))
     evidences = tuple(one.evidence for one in weighed)
     priors = np.array([hypothesis.prior for hypothesis in analysis.hypotheses], dtype=float)
     comparisons = tuple(
         replace(
             compare(evidences[index], evidences[0], float(priors[index] / priors[0])),
-            sensitivity=sensitivities(one.model, one.grid, one.evidence, evidences[0]),
+            sensitivity=sensitivities(one.model, one.grid, one.evidence, evidences[0], one.drawn),
         )
         for index, one in enumerate(weighed)
         if index > 0
@@ -109,6 +118,23 @@ def weigh(analysis: Analysis, *, seed: int = 1, closed_forms: bool = True) -> We
             *empty_bin_cautions([one.model for one in weighed], grids, comparisons),
         ),
     )
+
+
+def _weighed_by(
+    engine: str,
+    model: Model,
+    seed: np.random.SeedSequence,
+    *,
+    closed_forms: bool,
+    near: Mapping[str, float],
+) -> Weighed:
+    """Return one hypothesis' evidence by the engine asked for."""
+    standard = weigh_hypothesis(model, seed, closed_forms=closed_forms, near=near)
+    is_cut = standard.grid is not None and standard.grid.columns.is_cut
+    if engine == AUTO and is_cut:  # no engine reaches where numbers end
+        return standard
+    evidence, drawn = answered(engine, model, standard.evidence, seed)
+    return replace(standard, evidence=evidence, drawn=drawn)
 
 
 def observed_counts(model: Model) -> Array:
@@ -227,7 +253,7 @@ def _doubt(grid: Grid, drawn: Sample) -> str:
     if grid.ln_evidence <= LEAST_LN_HEIGHT:
         return "the nuisance parameters have no maximum that Laplace could integrate around"
     if not np.isfinite([grid.ln_evidence, grid.error, drawn.error]).all():
-        return "its numbers are too far apart for double precision"
+        return TOO_FAR_APART
     return _overlooked(grid, drawn) or _disagreement(grid, drawn)
 
 

@@ -13,10 +13,14 @@ from workbench.records.outcomes import Origin
 _LIBRARIES = ("numpy", "scipy", "iminuit")
 
 
-def versions() -> dict[str, str]:
-    """Return the versions of everything that can change a number."""
+def versions(*more: str) -> dict[str, str]:
+    """Return the versions of everything that can change a number.
+
+    Args:
+        more: packages used beyond those that always are.
+    """
     found = {"oddsbench": __version__}
-    for name in _LIBRARIES:
+    for name in (*_LIBRARIES, *more):
         loaded = getattr(sys.modules.get(name), "__version__", None)
         found[name] = str(loaded) if loaded else _installed(name)
     found["python"] = platform.python_version()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from typing import Any
 
 from workbench.ensembles.results import Adequacy
@@ -27,7 +28,7 @@ def weigh_record(outcome: WeighOutcome) -> dict[str, Any]:
         "command": "weigh",
         "title": outcome.analysis.title,
         "inputs": inputs(outcome.analysis, outcome.origin),
-        "versions": versions(),
+        "versions": versions(*_packages(weighing.evidences)),
         "seed": weighing.seed,
         "options": dict(outcome.origin.options),
         "notes": list(outcome.origin.notes),
@@ -43,6 +44,12 @@ def weigh_record(outcome: WeighOutcome) -> dict[str, Any]:
         "cautions": caution_entries(usual_cautions(outcome.analysis, weighing.comparisons)),
         "warnings": caution_entries(outcome.cautions),
     }
+
+
+def _packages(evidences: Sequence[Evidence]) -> tuple[str, ...]:
+    """Return the packages that evidences were made with beyond those that are always there."""
+    every = [one for each in evidences for one in (each, *(part.evidence for part in each.alternatives))]
+    return ("dynesty",) if any(one.engine == "nested" for one in every) else ()
 
 
 def adequacy_entry(adequacy: Adequacy) -> dict[str, Any]:
@@ -78,6 +85,8 @@ def _hypothesis(evidence: Evidence, posterior: Posterior, adequacy: Adequacy, fi
         "ln_evidence_error": evidence.error,
         "established": evidence.established,
         "reason": evidence.reason or None,
+        "engine": evidence.engine,
+        "engine_reason": evidence.engine_reason or None,
         "estimators": _estimators(evidence),
         "alternatives": [_alternative(one) for one in evidence.alternatives],
         "adequacy": adequacy_entry(adequacy),
@@ -114,6 +123,8 @@ def _alternative(one: AlternativeEvidence) -> dict[str, Any]:
         "ln_evidence_error": one.evidence.error,
         "established": one.evidence.established,
         "reason": one.evidence.reason or None,
+        "engine": one.evidence.engine,
+        "engine_reason": one.evidence.engine_reason or None,
         "estimators": _estimators(one.evidence),
     }
 

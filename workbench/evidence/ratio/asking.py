@@ -20,16 +20,16 @@ def chosen_hypothesis(analysis: Analysis, over: Sequence[str] | None, asked: str
         asked: a hypothesis' name; None to choose.
 
     Raises:
-        InputError: if there is none, or the signal has alternatives.
+        InputError: if there is none, or backgrounds have alternatives.
     """
-    doubted = [process for process in in_doubt(analysis) if process.is_signal]
+    doubted = in_doubt(analysis)
     if doubted:
         raise InputError(
             Problem(
-                "A signal with alternatives is not scanned",
+                "Backgrounds with alternatives are not scanned",
                 "scan",
                 " and ".join(quoted(process.name) for process in doubted),
-                "one description of the signal",
+                "one description of each background",
                 "scan once for each alternative, keeping one in the file at a time",
             )
         )

@@ -26,6 +26,7 @@ from workbench.records.screens.counted import (
     loud_lines,
     title_lines,
 )
+from workbench.records.screens.engines import engine_lines
 from workbench.records.screens.layout import (
     aligned_at,
     bullet,
@@ -90,7 +91,7 @@ def evidence_lines(evidences: Sequence[Evidence]) -> list[str]:
     cells = zip(labels, rest, aligned_at(" ±", values), strict=True)
     rows = [["hypothesis", "estimator", "ln evidence", "k-hat", "points"]]
     rows += [[label, other[0], value, other[1], other[2]] for label, other, value in cells]
-    lines = [*heading("Evidences"), *columns(rows, "lllrr")]
+    lines = [*heading("Evidences"), *columns(rows, "lllrr"), *engine_lines(evidences)]
     for names, reason in _doubts(evidences):
         verb = "is" if len(names) == 1 else "are"
         lines += bullet(f"{_joined(names)} {verb} not established: {reason}")
