@@ -45,6 +45,13 @@ if ! cmp -s pyproject.toml "$venv/installed-from.toml"; then
     "$venv/bin/python" -m pip install --quiet --editable '.[test]'
     cp pyproject.toml "$venv/installed-from.toml"
 fi
+# The browser tests need a Chromium, and are skipped without one.
+if ! command -v chromium >/dev/null && [ -z "${CHROMIUM:-}" ] && [ "$(id -u)" -eq 0 ] && command -v apt-get >/dev/null; then
+    if ! { apt-get update -qq && DEBIAN_FRONTEND=noninteractive apt-get install -y -qq chromium; } >/dev/null 2>&1; then
+        echo "Chromium could not be installed; the browser tests will be skipped" >&2
+    fi
+fi
+
 PATH="$(cd "$venv/bin" && pwd):$PATH"
 export PATH
 

@@ -58,6 +58,7 @@ class Document:
         self._work = Work()
         self._newest = Newest(self._work, home, lambda make: make(), on_the_way=False)
         self._work.observe(home.wrap(self._write), "standing")
+        self.page.observe(home.wrap(self._rewrite), "renderings")
         self._handle: Any = None
         self._put_off: Callable[[], None] | None = None
         line = ErrorLine(home)
@@ -82,6 +83,10 @@ class Document:
     def _write(self, change: dict[str, Any]) -> None:
         if change["new"].stage is Stage.DONE and self._handle is not None:
             self._handle.update(self.bundle(), raw=True)
+            self._rewrite()
+
+    def _rewrite(self, _: object = None) -> None:
+        self.page.rewrite(self.key, self.bundle())
 
     def _ipython_display_(self) -> None:
         from IPython.display import DisplayHandle

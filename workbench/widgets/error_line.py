@@ -35,7 +35,8 @@ class ErrorLine:
 
 
 def _block(notice: Notice) -> str:
-    text = f"<b>{notice.kind.value}</b><br>{html.escape(notice.text)}"
+    said = f'<span style="font-family: monospace">{html.escape(notice.text)}</span>'
+    text = f"<b>{notice.kind.value}</b><br>{said}"
     details = ""
     if notice.details:
         inner = f'<pre style="overflow-x: auto">{html.escape(notice.details)}</pre>'

@@ -21,13 +21,25 @@ class Page(anywidget.AnyWidget):
         is_dark: written by the page: it has a dark theme.
         pixel_ratio: written by the page: pixels of the screen for one of its own.
         look: both, for drawings.
+        renderings: written by the page: how often it was shown; more than once after it was loaded again.
     """
 
     _esm = script("page.js")
 
     is_dark = traitlets.Bool(default_value=False).tag(sync=True)
     pixel_ratio = traitlets.Float(1.0).tag(sync=True)
+    renderings = traitlets.Int(0).tag(sync=True)
     look = traitlets.Instance(Look, ())
+
+    def rewrite(self, key: str, bundle: dict[str, str]) -> None:
+        """Have the page put a bundle in place of the output that has a key, where display ids are forgotten.
+
+        Args:
+            key: what the output's HTML holds, followed by "-saved".
+            bundle: texts by media type.
+        """
+        if self.renderings > 1:
+            self.send({"key": key, "bundle": bundle})
 
     @traitlets.observe("is_dark", "pixel_ratio")
     def _note_look(self, _: dict[str, Any]) -> None:

@@ -55,8 +55,8 @@ class Plain:
 
     def complain(self, text: str) -> None:
         """Show why a request was refused; nothing if it was not."""
-        shown = f'<div role="alert" style="white-space: pre-wrap"><b>{html.escape(text)}</b></div>'
-        self._line.value = shown if text else ""
+        style = "white-space: pre-wrap; font-family: monospace; padding-left: 10px; border-left: 4px solid"
+        self._line.value = f'<div role="alert" style="{style}">{html.escape(text)}</div>' if text else ""
 
     def on_asked(
         self,

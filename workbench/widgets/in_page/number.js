@@ -80,9 +80,13 @@ function render({ model, el, signal }) {
     slider.setAttribute("aria-valuetext", `${value} ${model.get("unit")}`.trim());
     ask(value);
   }, on);
-  box.addEventListener("change", () => {
+  const typed = () => {
     const text = box.value.trim().replace("−", "-");
     ask(text !== "" && Number.isFinite(Number(text)) ? Number(text) : text);
+  };
+  box.addEventListener("change", typed, on);
+  box.addEventListener("keydown", (event) => {
+    if (event.key === "Enter") typed(); // also when nothing changed: what was refused is asked again
   }, on);
   asked = model.get("answered"); // a page that was loaded again goes on counting
   for (const name of ["value", "answered"]) model.on(`change:${name}`, answered);

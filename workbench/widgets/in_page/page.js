@@ -103,10 +103,27 @@ const watch_root = (root, signal) => {
   repair(root);
 };
 
+// A page that was loaded again no longer knows which output has which display id, so that nothing that the
+// kernel updates would be saved. The notebook's model is then written to from here.
+const rewrite = (model) => ({ key, bundle }) => {
+  for (const cell of model.widget_manager?.context?.model?.cells ?? []) {
+    for (let at = 0; at < (cell.outputs?.length ?? 0); at++) {
+      const output = cell.outputs.get(at).toJSON();
+      const text = [].concat(output.data?.["text/html"] ?? "").join("");
+      if (text.includes(`${key}-saved`)) cell.outputs.set(at, { ...output, data: { ...output.data, ...bundle } });
+    }
+  }
+};
+
 function render({ model, el }) {
   const ended = new AbortController();
   el.style.display = "none";
   watch_look(model, ended.signal);
+  const written = rewrite(model);
+  model.on("msg:custom", written);
+  ended.signal.addEventListener("abort", () => model.off("msg:custom", written));
+  model.set("renderings", model.get("renderings") + 1);
+  model.save_changes();
   const start = () => { // once the widget stands in the page
     if (ended.signal.aborted) return;
     const root = el.closest(".jp-OutputArea-output") || el.closest(".widget-container, .widget-box");
