@@ -1,5 +1,5 @@
 # noqa: INP001 (a script run by hand, in a folder of data)
-"""Make the tables of the five invented demonstrations; run by hand: `python data/make.py [FOLDER]`.
+"""Make the tables of the six invented demonstrations; run by hand: `python data/make.py [FOLDER]`.
 
 Everything comes from fixed seeds, numpy alone, and from the raw bits of PCG64, whose stream numpy promises
 never to change; so the same bytes come out wherever and whenever this is run. A test holds it to that.
@@ -17,7 +17,7 @@ import numpy.typing as npt
 Array = npt.NDArray[np.float64]
 
 HERE = Path(__file__).parent
-SEEDS = {"skerry": 20240611, "tarn": 86, "sorrel": 32, "marram": 1804, "dunlin": 23}
+SEEDS = {"skerry": 20240611, "tarn": 86, "sorrel": 32, "marram": 1804, "dunlin": 23, "brough": 409}
 
 
 def uniforms(seed: int, number: int) -> Array:
@@ -177,13 +177,26 @@ def make_dunlin(folder: Path) -> None:
     write_table(folder / "dunlin-pairs.csv", edges[:-1], edges[1:], {"observed": observed})
 
 
+def make_brough(folder: Path) -> None:
+    """Make Brough: two levels, the weaker one of two thirds of the typical strength."""
+    edges = np.linspace(2.0, 42.0, 41)
+    truth = (
+        1.03 * 300.0 * exponential_integrals(edges, 16.0)
+        + 1.3 * 20.0 * normal_integrals(edges, 13.4, 1.0)
+        + 0.75 * 20.0 * normal_integrals(edges, 28.1, 1.0)
+    )
+    observed = drawn(SEEDS["brough"], truth)
+    write_table(folder / "brough-captures.csv", edges[:-1], edges[1:], {"observed": observed})
+
+
 def main(folder: Path) -> None:
-    """Make all five below a folder."""
+    """Make all six below a folder."""
     make_skerry(folder / "skerry")
     make_tarn(folder / "tarn")
     make_sorrel(folder / "sorrel")
     make_marram(folder / "marram")
     make_dunlin(folder / "dunlin")
+    make_brough(folder / "brough")
 
 
 if __name__ == "__main__":

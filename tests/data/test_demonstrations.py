@@ -22,6 +22,7 @@ MADE = (
     "sorrel/sorrel-control.csv",
     "marram/marram-showers.csv",
     "dunlin/dunlin-pairs.csv",
+    "brough/brough-captures.csv",
 )
 
 
@@ -47,7 +48,7 @@ def test_every_table_in_the_folders_is_made_by_the_script() -> None:
     assert tables == {name for name in MADE if name.endswith(".csv")}
 
 
-@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel", "marram", "dunlin"])
+@pytest.mark.parametrize("folder", ["skerry", "tarn", "sorrel", "marram", "dunlin", "brough"])
 def test_the_truth_is_told_only_at_the_end_of_the_readme(folder: str) -> None:
     text = (DATA / folder / "README.md").read_text(encoding="utf-8")
     before, after = text.split("\n## The truth behind it\n")
@@ -89,6 +90,18 @@ def test_dunlin_depends_on_the_shape_of_its_background() -> None:
     (comparison,) = weigh(read_analysis(DATA / "dunlin" / "dunlin.toml")).comparisons
     alone = {one.name: one.ln_bayes_factor or 0.0 for one in comparison.alternatives}
     assert alone["exponential"] < 0.0 < (comparison.ln_bayes_factor or 0.0) < 2.0 < alone["power law"]
+
+
+@pytest.mark.slow
+def test_at_brough_two_levels_are_annealed_and_as_probable_as_one() -> None:
+    weighing = weigh(read_analysis(DATA / "brough" / "brough.toml"))
+    assert weighing.established, weighing.evidences
+    assert [one.engine for one in weighing.evidences] == ["standard", "standard", "annealed"]
+    none, one, two = (posterior.probability or 0.0 for posterior in weighing.posteriors)
+    assert none < 0.01
+    assert 0.4 < one < 0.6
+    assert 0.4 < two < 0.6
+    assert [caution.code for caution in weighing.cautions] == ["like-signals"]
 
 
 def test_the_analyses_read_without_a_caution() -> None:

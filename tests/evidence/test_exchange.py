@@ -2,12 +2,23 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from tests.evidence.resonances import resonances
 from tests.evidence.small_analyses import bump, counting, source
-from workbench.evidence.exchange import blocks, groups, involutions, like_signals
-from workbench.hypotheses.priors import Exponential, Gamma
+from workbench.evidence.exchange import (
+    blocks,
+    groups,
+    interchangeable,
+    involutions,
+    like_signal_cautions,
+    like_signals,
+)
+from workbench.hypotheses.priors import Exponential, Gamma, Uniform
+from workbench.hypotheses.processes import Contribution
+from workbench.hypotheses.shapes import Gaussian
 from workbench.likelihood.model import compile_model
 
 COUNTS = np.full(40, 8.0)
@@ -33,6 +44,23 @@ def test_an_exchange_leaves_the_likelihood_of_like_signals_alone() -> None:
     assert (exchanged != points).sum() == 4 * 50
     before, after = (model.ln_likelihood(model.seeds(one), COUNTS) for one in (points, exchanged))
     np.testing.assert_allclose(after, before, rtol=1e-12)
+
+
+def test_signals_are_said_to_be_alike_only_where_their_exchange_changes_nothing() -> None:
+    analysis = resonances(COUNTS, 2)
+    assert interchangeable(compile_model(analysis, "2 resonances")) == [("peak 1", "peak 2")]
+    assert interchangeable(compile_model(analysis, "1 resonance")) == []
+    assert interchangeable(compile_model(analysis, "none")) == []
+    narrower = replace(analysis.parameter("mass 2"), prior=Uniform(1.0, 10.0))
+    parameters = tuple(narrower if one.name == "mass 2" else one for one in analysis.parameters)
+    assert interchangeable(compile_model(replace(analysis, parameters=parameters), "2 resonances")) == []
+    wider = Contribution(Gaussian("mass 2", 0.9), 20.0)
+    other = replace(analysis.process("peak 2"), regions={"spectrum": wider})
+    processes = tuple(other if one.name == "peak 2" else one for one in analysis.processes)
+    assert interchangeable(compile_model(replace(analysis, processes=processes), "2 resonances")) == []
+    (caution,) = like_signal_cautions(compile_model(analysis, "2 resonances"))
+    assert caution.code == "like-signals"
+    assert '"peak 1" and "peak 2" are alike' in caution.text
 
 
 def test_every_map_is_its_own_inverse_and_keeps_the_prior() -> None:

@@ -12,6 +12,7 @@ from itertools import combinations
 import numpy as np
 import numpy.typing as npt
 
+from workbench.errors import Caution, quoted
 from workbench.hypotheses.processes import Process
 from workbench.likelihood.model import Model
 
@@ -20,6 +21,7 @@ Flags = npt.NDArray[np.bool_]
 Indices = npt.NDArray[np.intp]
 
 _FEW = 5
+_PROBES = 4
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -54,6 +56,43 @@ def involutions(model: Model) -> Involutions:
     repeated = exchanges * max(1, model.size // len(exchanges))
     orders = np.concatenate([np.array(repeated), np.repeat(same[None], model.size, axis=0)])
     return Involutions(orders, np.concatenate([np.ones((len(repeated), model.size)), mirrors]))
+
+
+def interchangeable(model: Model) -> list[tuple[str, str]]:
+    """Return pairs of signal processes whose exchange leaves priors and expected events as they are."""
+    if model.size == 0:
+        return []
+    points = np.random.default_rng(1).standard_normal((_PROBES, model.size))
+    before = model.expected(model.seeds(points))[0]
+    found = []
+    for first, second in like_signals(model):
+        priors = [[model.coordinates[index].prior for index in own] for own in (first, second)]
+        order = _exchanged(np.arange(model.size), first, second)
+        after = model.expected(model.seeds(points[:, order]))[0]
+        if priors[0] == priors[1] and np.allclose(before, after, rtol=1e-9, atol=0.0):
+            found.append((_owner(model, first), _owner(model, second)))
+    return found
+
+
+def like_signal_cautions(model: Model) -> list[Caution]:
+    """Return a caution for each pair of signals that may stand for each other.
+
+    Args:
+        model: a hypothesis.
+    """
+    return [
+        Caution(
+            "like-signals",
+            f"{quoted(model.hypothesis)}: {quoted(first)} and {quoted(second)} are alike, so that it means "
+            "nothing which of two peaks belongs to which. The evidence is an average over both orders, as "
+            "the priors are, and counts the exchange once.",
+        )
+        for first, second in interchangeable(model)
+    ]
+
+
+def _owner(model: Model, own: list[int]) -> str:
+    return next(process.name for process in _signals(model) if _own(model, process) == own)
 
 
 def _exchanged(same: Indices, first: list[int], second: list[int]) -> Indices:

@@ -15,6 +15,7 @@ from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.engines import AUTO, LARGEST_ERROR, TOO_FAR_APART, answered, refuse_unknown
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
+from workbench.evidence.exchange import like_signal_cautions
 from workbench.evidence.mis_modelling import mis_modelling_cautions
 from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
@@ -112,7 +113,7 @@ def weigh(analysis: Analysis, *, seed: int = 1, engine: str = AUTO, closed_forms
         comparisons,
         seed,
         (
-            *(caution for one in weighed for caution in _cautions(one)),
+            *(caution for one in weighed for caution in (*_cautions(one), *like_signal_cautions(one.model))),
             *mis_modelling_cautions(analysis, probabilities),
             *one_sided_cautions(analysis, grids),
             *empty_bin_cautions([one.model for one in weighed], grids, comparisons),
