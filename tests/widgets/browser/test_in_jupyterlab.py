@@ -253,7 +253,8 @@ class TestInJupyterLab:
         page.get_by_role("button", name="Cancel").click()
         page.get_by_text("Cancelled: a long run").wait_for()
 
-    def test_the_console_stayed_clean(self, notebook: Notebook) -> None:
+    def test_the_console_and_the_error_line_stayed_clean(self, notebook: Notebook) -> None:
+        assert "".join(notebook.page.get_by_role("alert").all_inner_texts()) == ""
         assert notebook.console == []
 
     def test_the_saved_notebook_shows_the_results_without_a_kernel_and_exported(

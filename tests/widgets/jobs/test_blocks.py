@@ -92,6 +92,20 @@ def test_after_cancel_the_next_piece_of_work_has_workers_again(blocks: Blocks, u
     assert blocks.work.standing.result == 3
 
 
+def test_workers_with_nothing_to_do_are_let_go(
+    blocks: Blocks, until: Until, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Each time its cell was run again, the bench left its idle workers behind."""
+    monkeypatch.setattr("workbench.widgets.jobs.blocks.IDLE", 0.3)
+    blocks.start("who", slow_blocks.busy, [(0.0,)], lambda results: results[0])
+    until(lambda: blocks.work.standing.stage is Stage.DONE)
+    worker = blocks.work.standing.result
+    blocks.start("longer than idle", slow_blocks.busy, [(0.6,)], lambda results: results[0])
+    until(lambda: blocks.work.standing.stage is Stage.DONE)
+    assert blocks.work.standing.result == worker
+    until(partial(is_gone, worker))
+
+
 def test_asking_again_stops_what_is_under_way(blocks: Blocks, until: Until) -> None:
     blocks.start("forever", slow_blocks.busy, [(600.0,)], len)
     until(lambda: blocks.work.standing.progress is not None)

@@ -8,7 +8,7 @@ const is_dark = () => {
   return light === undefined ? matchMedia("(prefers-color-scheme: dark)").matches : light === "false";
 };
 
-function render({ model, el, signal }) {
+function render({ model, el }) {
   const box = document.createElement("div");
   const picture = document.createElement("canvas");
   const mark = document.createElement("canvas");
@@ -92,10 +92,9 @@ function render({ model, el, signal }) {
     return -1;
   };
 
-  const on = { signal };
-  mark.addEventListener("pointermove", (event) => { place = under(event); read(); }, on);
-  mark.addEventListener("pointerleave", () => { place = -1; read(); }, on);
-  box.addEventListener("blur", () => { place = -1; read(); }, on);
+  mark.addEventListener("pointermove", (event) => { place = under(event); read(); });
+  mark.addEventListener("pointerleave", () => { place = -1; read(); });
+  box.addEventListener("blur", () => { place = -1; read(); });
   box.addEventListener("keydown", (event) => {
     const last = (model.get("readout").rows || []).length - 1;
     const to = {
@@ -106,14 +105,15 @@ function render({ model, el, signal }) {
     event.preventDefault();
     place = to[event.key];
     read();
-  }, on);
-  model.on("change:sequence", paint);
-  model.on("change:size", size);
-  for (const name of ["alt", "is_stale", "caption"]) model.on(`change:${name}`, words);
-  model.on("change:readout", read);
+  });
+  const followed = [
+    ["sequence", paint], ["size", size], ["readout", read], ["alt", words], ["is_stale", words], ["caption", words],
+  ].map(([name, call]) => [`change:${name}`, call]);
+  for (const [event, call] of followed) model.on(event, call);
   size();
   words();
   paint();
+  return () => { for (const [event, call] of followed) model.off(event, call); };
 }
 
 export default { render };

@@ -4,7 +4,7 @@
 const LOGARITHMIC_STEPS = 200;
 let made = 0;
 
-function render({ model, el, signal }) {
+function render({ model, el }) {
   const id = `oddsbench-number-${++made}`;
   const label = document.createElement("label");
   const box = document.createElement("input");
@@ -39,7 +39,8 @@ function render({ model, el, signal }) {
   let waiting = null;
   const send = () => {
     if (waiting === null) return;
-    model.send({ asked: waiting, number: ++asked });
+    asked = Math.max(asked, model.get("answered")) + 1; // another view of it may have asked as well
+    model.send({ asked: waiting, number: asked });
     waiting = null;
   };
   const ask = (value) => {
@@ -73,27 +74,30 @@ function render({ model, el, signal }) {
     if (model.get("answered") >= asked && waiting === null) show();
   };
 
-  const on = { signal };
   slider.addEventListener("input", () => {
     const value = scale().of(Number(slider.value));
     box.value = String(value);
     slider.setAttribute("aria-valuetext", `${value} ${model.get("unit")}`.trim());
     ask(value);
-  }, on);
+  });
   const typed = () => {
     const text = box.value.trim().replace("−", "-");
     ask(text !== "" && Number.isFinite(Number(text)) ? Number(text) : text);
   };
-  box.addEventListener("change", typed, on);
+  box.addEventListener("change", typed);
   box.addEventListener("keydown", (event) => {
     if (event.key === "Enter") typed(); // also when nothing changed: what was refused is asked again
-  }, on);
+  });
   asked = model.get("answered"); // a page that was loaded again goes on counting
-  for (const name of ["value", "answered"]) model.on(`change:${name}`, answered);
-  for (const name of ["low", "high", "step", "is_logarithmic", "has_slider", "unit"]) model.on(`change:${name}`, show);
-  for (const name of ["label", "unit", "problem", "help", "is_disabled"]) model.on(`change:${name}`, words);
+  const followed = [
+    [["value", "answered"], answered],
+    [["low", "high", "step", "is_logarithmic", "has_slider", "unit"], show],
+    [["label", "unit", "problem", "help", "is_disabled"], words],
+  ].flatMap(([names, call]) => names.map((name) => [`change:${name}`, call]));
+  for (const [event, call] of followed) model.on(event, call);
   words();
   show();
+  return () => { for (const [event, call] of followed) model.off(event, call); };
 }
 
 export default { render };

@@ -18,6 +18,7 @@ from workbench.widgets.jobs.work import Stage, Work
 from workbench.widgets.jobs.workers import Told, Workers
 
 EVERY = 0.5  # seconds between two lines of progress
+IDLE = 120.0  # seconds after which workers with nothing to do are let go
 
 
 class Blocks:
@@ -36,6 +37,8 @@ class Blocks:
         self.work = work
         self._home, self._number = home, number
         self._workers: Workers | None = None  # kept from one piece of work to the next, until one is stopped
+        self._leave: threading.Timer | None = None
+        work.observe(self._expect_leave, "standing")
 
     def start(
         self,
@@ -68,16 +71,33 @@ class Blocks:
     def close(self) -> None:
         """Cancel, and let the workers go."""
         self.cancel()
+        self._let_go()
+
+    def _stop(self) -> None:
+        """Let workers go that are busy, or that may have died of what failed."""
+        if self.work.standing.stage not in {Stage.IDLE, Stage.DONE, Stage.CANCELLED}:
+            self._let_go()
+
+    def _let_go(self) -> None:
+        if self._leave is not None:
+            self._leave.cancel()
         if self._workers is not None:
             self._workers.stop()
             self._workers = None
 
-    def _stop(self) -> None:
-        """Let workers go that are busy, or that may have died of what failed."""
-        is_at_rest = self.work.standing.stage in {Stage.IDLE, Stage.DONE, Stage.CANCELLED}
-        if not is_at_rest and self._workers is not None:
-            self._workers.stop()
-            self._workers = None
+    def _expect_leave(self, _: object) -> None:
+        """Let the workers go after a while without work; a cell that is run again leaves the old behind."""
+        if self._leave is not None:
+            self._leave.cancel()
+            self._leave = None
+        if self.work.standing.stage is not Stage.COMPUTING and self._workers is not None:
+            self._leave = threading.Timer(IDLE, self._home.post, [self._leave_idle])
+            self._leave.daemon = True
+            self._leave.start()
+
+    def _leave_idle(self) -> None:
+        if self.work.standing.stage is not Stage.COMPUTING:
+            self._let_go()
 
 
 @dataclass(frozen=True, slots=True)
