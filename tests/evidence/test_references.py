@@ -81,6 +81,15 @@ def test_ten_evidences_and_their_ratios_lie_within_their_errors(answers: list[An
 
 
 @pytest.mark.slow
+@pytest.mark.parametrize("number", [26, 50])
+def test_where_quadrature_and_sampling_miss_a_maximum_another_engine_finds_it(number: int) -> None:
+    """Laplace and sampling were both wrong, and annealing had to agree with one of them."""
+    one = answered(number, ROWS)
+    assert one.established
+    assert max(map(abs, one.pulls)) < 4.0
+
+
+@pytest.mark.slow
 @pytest.mark.parametrize("number", [13, 24, 33])
 def test_nested_sampling_finds_no_gross_error(number: int) -> None:
     """A check of gross errors only: dynesty, at three combined errors."""
@@ -119,6 +128,12 @@ def test_a_proposal_density_off_by_a_tenth_is_seen(monkeypatch: pytest.MonkeyPat
     """A negative control."""
     right: Callable[..., npt.NDArray[np.float64]] = Proposal.ln_density
     monkeypatch.setattr(Proposal, "ln_density", lambda *given: right(*given) + np.log(1.1))
+    assert too_far([answered(number, ROWS) for number in TEN])
+    monkeypatch.setattr(pulls, "weigh", _by_the_standard_engine)
     broken = [answered(number, ROWS) for number in TEN]
-    assert too_far(broken)
     assert all(max(map(abs, one.pulls[1:])) > 4.0 or not one.established for one in broken)
+
+
+def _by_the_standard_engine(analysis: Analysis, *, seed: int) -> Weighing:
+    """Return what quadrature and sampling say; by default annealing would mend what is broken."""
+    return weigh(analysis, seed=seed, engine="standard")

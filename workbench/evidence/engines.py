@@ -14,6 +14,7 @@ from workbench.errors import InputError, Problem, nearest, quoted
 from workbench.evidence.annealed import anneal, most_evaluations, terrain_of
 from workbench.evidence.drawn import Drawn
 from workbench.evidence.nested import sample_nested
+from workbench.evidence.other_maxima import OTHER_MAXIMUM
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.results import Estimate, Evidence
 from workbench.likelihood.model import Model, never_filled
@@ -125,6 +126,8 @@ def doubt_of(estimate: Estimate, doubt: str, standard: Evidence) -> str:
         return doubt
     if estimate.error > LARGEST_ERROR:
         return f"the error of {estimate.name}, {estimate.error:.2g}, is above {LARGEST_ERROR}"
+    if standard.reason.startswith(OTHER_MAXIMUM):
+        return ""  # whatever the standard estimators say, it is without that
     if standard.established:
         others = standard.estimates[-1:]
     else:

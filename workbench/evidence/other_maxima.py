@@ -24,6 +24,7 @@ from workbench.likelihood.model import Model
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]
 
+OTHER_MAXIMUM = "another maximum that draws hardly reach"  # how the reason begins
 _STEEPEST = float(curvature(1e6)[1])  # of the even part, where it has become a line
 _LN_WEIGHT = 3.0  # of a maximum that draws hardly reach: 20 times the mean weight
 _LEAST_SHARE = 0.003  # of the evidence, that would matter

@@ -20,7 +20,7 @@ from workbench.evidence.mis_modelling import mis_modelling_cautions
 from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
-from workbench.evidence.other_maxima import share_unreached
+from workbench.evidence.other_maxima import OTHER_MAXIMUM, share_unreached
 from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
@@ -287,7 +287,7 @@ def _overlooked(grid: Grid, drawn: Sample) -> str:
         )
     unreached = share_unreached(grid, drawn.ln_evidence)
     if unreached:
-        return f"another maximum that draws hardly reach holds {unreached:.1%} of the evidence"
+        return f"{OTHER_MAXIMUM} holds {unreached:.1%} of the evidence"
     return ""
 
 
