@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
-
-from matplotlib.figure import Figure
+from typing import TYPE_CHECKING
 
 from workbench.commands.delivery import refuse_unwritable
 from workbench.counts.files import write_bytes_atomically
@@ -13,6 +12,9 @@ from workbench.evidence.ratio.reading import profile, sheet, shown_values
 from workbench.plots.page import KINDS, picture_bytes
 from workbench.plots.scan_page import scan_page
 from workbench.records.outcomes import ScanOutcome
+
+if TYPE_CHECKING:  # drawn by plots, only saved here
+    from matplotlib.figure import Figure
 
 _POINTS = 801
 _MOST_PARAMETERS = 2
