@@ -270,6 +270,12 @@ class TestInJupyterLab:
         page.get_by_role("cell", name=total(expected(1.8))).wait_for()
         assert page.get_by_text("Error displaying widget").filter(visible=True).count() == 0
         look_at(notebook, "without-kernel")
+        copied = nbformat.read(notebook.lab.root / "tiny.ipynb", 4)  # type: ignore[no-untyped-call]
+        copied.cells.append(nbformat.v4.new_markdown_cell("from a colleague"))  # type: ignore[no-untyped-call]
+        nbformat.write(copied, notebook.lab.root / "untrusted.ipynb")  # type: ignore[no-untyped-call]
+        untrusted = Notebook(page, notebook.lab, "untrusted.ipynb")
+        page.get_by_role("cell", name=total(expected(1.8))).wait_for()
+        look_at(untrusted, "untrusted")
         from nbconvert import HTMLExporter
 
         exported, _ = HTMLExporter().from_filename(str(notebook.lab.root / "tiny.ipynb"))  # type: ignore[no-untyped-call]
