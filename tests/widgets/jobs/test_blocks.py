@@ -84,6 +84,18 @@ def test_cancel_ends_the_worker_within_0_4_s_while_it_computes(blocks: Blocks, u
     assert sorted(took)[1] < 0.4
 
 
+def test_what_a_stopped_run_still_raises_is_no_fault(home: Home, blocks: Blocks, until: Until) -> None:
+    """Now and then Cancel was followed by a notice that a worker had ended by itself."""
+    blocks.start("forever", slow_blocks.busy, [(600.0,)], len)
+    until(lambda: blocks.work.standing.progress is not None)
+    assert blocks._workers is not None
+    blocks._workers.stop()
+    time.sleep(0.5)  # the thread has seen it by now, home has not
+    blocks.cancel()
+    home.settle()
+    assert blocks.work.standing.stage is Stage.CANCELLED
+
+
 def test_after_cancel_the_next_piece_of_work_has_workers_again(blocks: Blocks, until: Until) -> None:
     blocks.start("forever", slow_blocks.busy, [(600.0,)] * 3, len)
     blocks.cancel()

@@ -123,15 +123,16 @@ class _Run:
                 told = self._all_blocks()
                 result = self._task.combine([one.result for one in told])
         except Exception as error:  # noqa: BLE001 -- shown at home, where it can be seen
-            if self._work.is_wanted(self._ticket):  # else it was stopped, and that is no fault
-                self._home.post(
-                    functools.partial(report, self._work, self._home, self._ticket, _explained(error))
-                )
+            self._home.post(functools.partial(self._report, _explained(error)))
             return
         self._home.post(
             functools.partial(self._home.notices.add_printed, "\n".join(one.printed for one in told))
         )
         self._home.post(functools.partial(self._work.finish, self._ticket, self._task.name, result))
+
+    def _report(self, error: Exception) -> None:
+        if self._work.is_wanted(self._ticket):  # else its workers were stopped, and that is no fault
+            report(self._work, self._home, self._ticket, error)
 
     def _all_blocks(self) -> list[Told]:
         waiting = list(enumerate(self._task.blocks))[::-1]
