@@ -28,7 +28,7 @@ _FIRST_ROUNDS = 10  # the scout and the first populations take about so many tim
 _MOST_ROUNDS = 7
 _WANTED_ERROR = 0.03
 _MOST_EVALUATIONS = 6_000_000
-_MOST_WORK = 1.5e9
+_MOST_WORK = 2e9
 _OF_A_QUANTILE = 300  # as much work as so many bins: an incomplete gamma or beta function to invert
 _MOST_NUMBERS = 6e7  # held at a time
 _ROWS = 2048
@@ -71,7 +71,7 @@ def anneal(
         return nothing_drawn(NAME, terrain.size, "too many bins and sources to anneal populations")
     generators = [np.random.default_rng(one) for one in seed.spawn(1 + POPULATIONS * _MOST_ROUNDS)]
     chains = _FIRST_CHAINS
-    scouted = scout(terrain, generators.pop(), POPULATIONS * chains, most // 3)
+    scouted = scout(terrain, generators.pop(), POPULATIONS * chains, most // 2)
     if not np.isfinite(scouted.ln_evidence).all():
         return nothing_drawn(
             NAME, terrain.size, "no draw can produce the observed counts", scouted.evaluations
