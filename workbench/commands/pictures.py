@@ -13,8 +13,8 @@ from workbench.plots.page import KINDS, picture_bytes
 from workbench.plots.scan_page import scan_page
 from workbench.records.outcomes import ScanOutcome
 
-if TYPE_CHECKING:  # drawn by plots, only saved here
-    from matplotlib.figure import Figure
+if TYPE_CHECKING:
+    from workbench.plots.page import Page
 
 _POINTS = 801
 _MOST_PARAMETERS = 2
@@ -39,7 +39,7 @@ def refuse_other_kinds(option: str, name: str) -> None:
     refuse_unwritable(option, name)
 
 
-def save_figure(figure: Figure, name: str) -> None:
+def save_figure(figure: Page, name: str) -> None:
     """Draw a figure into a file, whole or not at all.
 
     Args:

@@ -16,6 +16,8 @@ from workbench.records.outcomes import BackgroundsOutcome, BreakPointOutcome, We
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
+    Page = Figure  # for those who save pages and leave matplotlib to this folder
+
 KINDS = ("png", "svg", "pdf")
 WIDTH = 9.0
 _ODDS_HEIGHT = 3.2
