@@ -29,6 +29,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.evidence.updating_ratio": ("scan",),
     "workbench.evidence.weigh": ("weigh",),
     "workbench.hypotheses.analysis": ("Analysis", "Exposure", "Hypothesis", "Parameter"),
+    "workbench.hypotheses.as_python": ("as_python",),
     "workbench.hypotheses.bare": ("analysis_from_table",),
     "workbench.hypotheses.distortion": ("Distortion",),
     "workbench.hypotheses.priors": (
