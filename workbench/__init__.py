@@ -21,6 +21,7 @@ _HOMES: dict[str, tuple[str, ...]] = {
     "workbench.counts.region": ("Region",),
     "workbench.counts.table": ("Table",),
     "workbench.ensembles.adequacy": ("adequacy",),
+    "workbench.ensembles.build_up": ("build_up", "build_up_steps"),
     "workbench.ensembles.toys": ("toy",),
     "workbench.evidence.prior_choice.sensitivity": ("prior_sensitivity",),
     "workbench.evidence.breaking.break_point": ("break_point",),
