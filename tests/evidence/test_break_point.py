@@ -12,13 +12,14 @@ from scipy import integrate, optimize, special, stats
 
 import workbench as wb
 from tests.analyses import background, region_of, seen_bump, signal
-from workbench.evidence.breaking import search
+from workbench.evidence.breaking import pairs, search
 from workbench.evidence.breaking.pairs import declared_pair, pair_at
 from workbench.evidence.breaking.question import asked
 from workbench.evidence.breaking.results import Breaking
 from workbench.evidence.breaking.search import Target, nearest
 from workbench.hypotheses.shapes import Flat, Template
-from workbench.likelihood.distortions import smooth_functions
+from workbench.likelihood.distortions import held_distortion, smooth_functions
+from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]
 
@@ -130,6 +131,19 @@ def test_the_smallest_distortion_of_a_known_background_is_the_one_that_a_minimis
     assert np.linalg.norm(distorted.coefficients) == pytest.approx(np.linalg.norm(wanted), rel=0.01)
     assert np.array(distorted.coefficients) == pytest.approx(wanted, abs=0.05 * float(np.linalg.norm(wanted)))
     assert summed(1.0 + distorted.change) == pytest.approx(below, abs=0.02)
+
+
+def test_a_distortion_of_only_half_the_size_is_seen_by_the_sums(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Negative control: with the engine's backgrounds distorted half as much, the sums disagree."""
+
+    def halved(model: Model, factors: Array) -> Model:
+        return held_distortion(model, np.sqrt(factors))
+
+    monkeypatch.setattr(pairs, "held_distortion", halved)
+    found = wb.break_point(five_bins(), below=1.0, terms=3)
+    wanted = smallest(smooth_functions(EVENTS, 3), 1.0)
+    size = np.linalg.norm(found.distorted[0].coefficients) if found.distorted else 0.0
+    assert size != pytest.approx(float(np.linalg.norm(wanted)), rel=0.3)
 
 
 def test_what_a_declared_uncertainty_absorbs_does_not_break_and_needs_another_shape() -> None:

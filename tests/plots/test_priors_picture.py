@@ -17,9 +17,10 @@ from matplotlib.text import Text
 from tests.plots.test_palette import lightness
 from tests.records import hand_built_priors as hand
 from workbench.evidence.formulas.scales import JEFFREYS, KASS_RAFTERY, Scale
+from workbench.evidence.prior_choice.powers import most_moving
 from workbench.evidence.prior_choice.results import PriorSensitivity
 from workbench.plots.palette import DARK, LIGHT, Palette
-from workbench.plots.powers import draw_power_changes, draw_sensitivities, most_moving
+from workbench.plots.powers import draw_power_changes, draw_sensitivities
 from workbench.plots.prior_curves import draw_prior_curves
 from workbench.plots.prior_map import both_sides, draw_prior_map, grade, stretches
 from workbench.plots.priors_page import priors_page
@@ -114,7 +115,7 @@ def test_power_scaling_marks_stand_at_their_numbers() -> None:
     assert words == [one.driver.value for one in FOUND.scalings]
 
 
-def test_of_many_nuisance_priors_those_that_move_ln_b_most_are_drawn_in_their_order() -> None:
+def test_of_many_nuisance_priors_those_that_move_ln_b_most_are_shown_in_their_order() -> None:
     kept = most_moving(FOUND.scalings, 2)
     assert [one.parameter for one in kept] == ["continuum normalisation", "fake composition"]
 

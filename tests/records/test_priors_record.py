@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -12,6 +13,7 @@ from workbench.evidence.prior_choice.curve import LEAST_TOLD
 from workbench.evidence.prior_choice.results import PriorSensitivity
 from workbench.records.files import read_record, record_text, write_record
 from workbench.records.priors_record import priors_record
+from workbench.records.screens.powers import MOST, power_lines
 from workbench.records.screens.priors import shown_places
 
 KEYS = {
@@ -73,6 +75,17 @@ def test_nothing_is_told_of_what_is_not_established() -> None:
     assert (record["ln_bayes_factor"], record["updating_ratio"]) == (None, None)
     assert record["families"] == record["bounds"] == record["needed_priors"] == record["power_scaling"] == []
     assert "k-hat is 0.83" in record["reason"]
+
+
+def test_of_many_nuisance_priors_the_screen_shows_few_and_counts_the_rest() -> None:
+    found = hand.examination()
+    scalings = tuple(
+        replace(one, parameter=f"{one.parameter} {turn}") for turn in range(30) for one in found.scalings
+    )
+    lines = power_lines(scalings)
+    assert sum("in conflict" in line and " ± " in line for line in lines) == MOST
+    assert any(line.strip(" ·").startswith(f"{len(scalings) - MOST} more,") for line in lines)
+    assert len(priors_record(hand.examined(replace(found, scalings=scalings)))["power_scaling"]) == 150
 
 
 def test_the_declared_mean_is_among_those_shown_and_they_are_few() -> None:

@@ -7,11 +7,12 @@ enter, those of signal parameters do not: a Bayes factor is its average over the
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from workbench.errors import InputError, Problem, quoted
+from workbench.evidence.averaging import variant_seed
 from workbench.evidence.quadrature import integrate
 from workbench.evidence.ratio.asking import chosen_hypothesis, refuse_strangers
 from workbench.evidence.ratio.averages import averaged
@@ -23,11 +24,14 @@ from workbench.evidence.ratio.reaching import ranges_of
 from workbench.evidence.ratio.results import Scan
 from workbench.evidence.ratio.strengths import Strengths
 from workbench.evidence.ratio.surface import Surface
+from workbench.evidence.ratio.variants import Part, combined, ratio_of
 from workbench.evidence.weigh import Weighed, observed_counts, weigh_hypothesis
+from workbench.hypotheses.alternatives import Variant, variants_of
 from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import Model, compile_model
 
 _FEW_BINS = 700
+_NODES, _CHECKS = 1001, 1002  # whose random numbers these are
 
 
 @np.errstate(all="ignore")  # an impossible point has ln probability -inf
@@ -41,7 +45,8 @@ def scan(
     At nodes over all signal parameters the others are brought to their maximum and integrated by Laplace's
     method, which draws around it then correct; all nodes share their draws. What lies between is
     interpolated. Its average over the stated priors is held against the engine's Bayes factor, and R at
-    points between the nodes against the engine with the parameters held there.
+    points between the nodes against the engine with the parameters held there. Where backgrounds have
+    alternatives, R is the ratio of the averages over them.
 
     Args:
         analysis: everything declared, with observed counts.
@@ -54,7 +59,7 @@ def scan(
 
     Raises:
         InputError: if a region has no observed counts, a name is no signal parameter of the hypothesis, or
-            backgrounds have alternatives.
+            the signal itself has alternatives with other parameters.
 
     Limits:
         At most three signal parameters, of which one may be a strength with nodes of its own.
@@ -65,69 +70,82 @@ def scan(
     """
     chosen = chosen_hypothesis(analysis, over, hypothesis)
     names = refuse_strangers(analysis, chosen, over)
-    place = [one.name for one in analysis.hypotheses].index(chosen)
-    children = np.random.SeedSequence(seed).spawn(len(analysis.hypotheses) + 2)
-    first = weigh_hypothesis(compile_model(analysis, analysis.hypotheses[0].name), children[0])
-    near = first.grid.mode if first.grid is not None else {}
-    model = compile_model(analysis, chosen)
-    weighed = weigh_hypothesis(model, children[place], near=near)
-    if first.evidence.ln_evidence is None or weighed.evidence.ln_evidence is None:
-        return _nothing(analysis, names, first, weighed, seed)
-    return _scanned(analysis, names, first, weighed, children[-2:], seed)
-
-
-def _scanned(
-    analysis: Analysis,
-    over: tuple[str, ...],
-    first: Weighed,
-    weighed: Weighed,
-    children: list[np.random.SeedSequence],
-    seed: int,
-) -> Scan:
-    model = weighed.model
-    held_at = _holder(weighed, children[0])
-    anchor = anchor_of(held_at, first)
-    surface, standing = build(held_at, _panels(held_at), _open_strength(held_at), anchor.reference)
-    if anchor.is_nested:
-        surface = _pinned(surface, model)
-    else:
-        reference = anchor.reference if anchor.reference is not None else _best(standing.held)
-        shift, doubt = shift_of(first, reference)
-        surface = replace(surface, ln_ratio=surface.ln_ratio + shift, error=np.hypot(surface.error, doubt))
-    checks = checks_of(analysis, model.hypothesis, surface, first, children[1])
-    stated = {model.coordinates[index].name: model.coordinates[index].prior for index in model.signal}
-    rest = {name: prior for name, prior in stated.items() if name not in over}
-    ln_b, error = _sampled(first, weighed)
-    found = Scan(
-        model.hypothesis,
-        first.model.hypothesis,
-        over,
-        averaged(surface, rest),
-        {name: stated[name] for name in over},
-        rest,
-        _units(model),
-        _prior_odds(analysis, model.hypothesis),
-        anchor.is_nested,
-        ln_b,
-        error,
-        True,
-        "",
-        seed,
-        len(held_at.draws.whitened),
-        checks,
+    variants = variants_of(analysis)
+    is_alone = len(variants) == 1
+    seeds = [seed if is_alone else variant_seed(seed, place) for place in range(len(variants))]
+    parts = [
+        _weighed(variant, chosen, np.random.SeedSequence(its_seed))
+        for variant, its_seed in zip(variants, seeds, strict=True)
+    ]
+    sampled = ratio_of(parts, [part.weighed.evidence for part in parts])
+    if sampled is None:
+        return _nothing(analysis, names, parts, seed)
+    wholes = [
+        _whole(part, np.random.SeedSequence(its_seed, spawn_key=(_NODES,)))
+        for part, its_seed in zip(parts, seeds, strict=True)
+    ]
+    surface = combined(parts, [whole.surface for whole in wholes])
+    is_nested = all(whole.is_nested for whole in wholes)
+    if is_nested:
+        surface = _pinned(surface, parts[0].weighed.model)
+    checks = checks_of(parts, surface, np.random.SeedSequence(seed, spawn_key=(_CHECKS,)))
+    found = replace(
+        _nothing(analysis, names, parts, seed),
+        is_nested=is_nested,
+        ln_bayes_factor=sampled.ln_ratio,
+        ln_bayes_factor_error=sampled.error,
+        draws=wholes[0].draws,
+        checks=checks,
     )
-    reason = disagreement(found, surface, first, weighed)
+    found = replace(found, surface=averaged(surface, dict(found.averaged)), established=True, reason="")
+    reason = disagreement(found, surface, parts)
     return replace(widened(found), established=not reason, reason=reason)
 
 
-def _nothing(analysis: Analysis, over: tuple[str, ...], first: Weighed, weighed: Weighed, seed: int) -> Scan:
-    """Return a scan without a surface, where one of the two hypotheses has no evidence at all."""
-    model = weighed.model
+@dataclass(frozen=True, slots=True, eq=False)
+class _Whole:
+    """R over all signal parameters under one alternative of the backgrounds."""
+
+    surface: Surface
+    is_nested: bool
+    draws: int
+
+
+def _weighed(variant: Variant, chosen: str, seed: np.random.SeedSequence) -> Part:
+    """Return both evidences, as `weigh` has them with this seed."""
+    analysis = variant.analysis
+    names = [one.name for one in analysis.hypotheses]
+    children = seed.spawn(len(names))
+    first = weigh_hypothesis(compile_model(analysis, names[0]), children[0])
+    near = first.grid.mode if first.grid is not None else {}
+    weighed = weigh_hypothesis(compile_model(analysis, chosen), children[names.index(chosen)], near=near)
+    return Part(variant.prior, analysis, first, weighed)
+
+
+def _whole(part: Part, seed: np.random.SeedSequence) -> _Whole:
+    held_at = _holder(part.weighed, seed)
+    anchor = anchor_of(held_at, part.first)
+    surface, standing = build(held_at, _panels(held_at), _open_strength(held_at), anchor.reference)
+    if not anchor.is_nested:
+        reference = anchor.reference if anchor.reference is not None else _best(standing.held)
+        shift, doubt = shift_of(part.first, reference)
+        surface = replace(surface, ln_ratio=surface.ln_ratio + shift, error=np.hypot(surface.error, doubt))
+    else:
+        surface = _pinned(surface, part.weighed.model)
+    return _Whole(surface, anchor.is_nested, len(held_at.draws.whitened))
+
+
+def _nothing(analysis: Analysis, over: tuple[str, ...], parts: Sequence[Part], seed: int) -> Scan:
+    """Return a scan without a surface: what is known before there is one."""
+    model = parts[0].weighed.model
     stated = {model.coordinates[index].name: model.coordinates[index].prior for index in model.signal}
-    one = first if first.evidence.ln_evidence is None else weighed
+    missing = [
+        one for part in parts for one in (part.first, part.weighed) if one.evidence.ln_evidence is None
+    ]
+    reason = f"{quoted(missing[0].model.hypothesis)}: {missing[0].evidence.reason}" if missing else ""
     return Scan(
         model.hypothesis,
-        first.model.hypothesis,
+        parts[0].first.model.hypothesis,
         over,
         None,
         {name: stated[name] for name in over},
@@ -138,7 +156,7 @@ def _nothing(analysis: Analysis, over: tuple[str, ...], first: Weighed, weighed:
         None,
         None,
         False,
-        f"{quoted(one.model.hypothesis)}: {one.evidence.reason}",
+        reason,
         seed,
         0,
     )
@@ -206,13 +224,6 @@ def _pinned(surface: Surface, model: Model) -> Surface:
     is_nothing = (of_strengths == 0.0).all(axis=2)
     ln_ratio, error = (np.where(is_nothing, 0.0, part) for part in (surface.ln_ratio, surface.error))
     return replace(surface, ln_ratio=ln_ratio, error=error)
-
-
-def _sampled(first: Weighed, weighed: Weighed) -> tuple[float | None, float | None]:
-    one, other = weighed.evidence, first.evidence
-    if one.ln_evidence is None or other.ln_evidence is None:
-        return None, None
-    return one.ln_evidence - other.ln_evidence, float(np.hypot(one.error or 0.0, other.error or 0.0))
 
 
 def _prior_odds(analysis: Analysis, hypothesis: str) -> float:

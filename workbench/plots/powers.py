@@ -14,8 +14,6 @@ from workbench.plots.words import shortened
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-MOST = 24
-
 
 def draw_sensitivities(axes: Axes, scalings: Sequence[PowerScaling], palette: Palette = LIGHT) -> None:
     """Draw how far each posterior moves with its prior and with the likelihood, against the threshold.
@@ -47,7 +45,7 @@ def draw_sensitivities(axes: Axes, scalings: Sequence[PowerScaling], palette: Pa
     axes.axvline(THRESHOLD, color=palette.faint, linewidth=0.9, linestyle="--", zorder=0, gid="threshold")
     axes.set_xlim(left=-0.02 * axes.get_xlim()[1])
     axes.set_yticks(
-        [-row for row in range(len(scalings))], [shortened(one.parameter, 26) for one in scalings]
+        [-row for row in range(len(scalings))], [shortened(one.parameter, 24) for one in scalings]
     )
     axes.tick_params(axis="y", length=0, labelsize=8.5, labelcolor=palette.ink)
     words = "posterior moves per doubling of the power\n■ of its prior   ○ of the likelihood"
@@ -99,16 +97,6 @@ def draw_power_changes(axes: Axes, scalings: Sequence[PowerScaling], palette: Pa
     axes.spines["left"].set_visible(False)
     axes.set_xlabel("change of ln B\n◁ prior to the power ½, wider   ▶ 2, narrower", fontsize=8.5)
     axes.xaxis.label.set_color(palette.ink)
-
-
-def most_moving(scalings: Sequence[PowerScaling], most: int = MOST) -> tuple[PowerScaling, ...]:
-    """Return the entries that move ln B most, in the order given; all where they are few."""
-
-    def size(one: PowerScaling) -> float:
-        return max((abs(change.ln_change or 0.0) for change in one.changes), default=0.0)
-
-    kept = {id(one) for one in sorted(scalings, key=size, reverse=True)[:most]}
-    return tuple(one for one in scalings if id(one) in kept)
 
 
 def _rows(axes: Axes, scalings: Sequence[PowerScaling], palette: Palette) -> None:

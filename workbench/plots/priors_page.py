@@ -7,10 +7,11 @@ from typing import TYPE_CHECKING
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.prior_choice.powers import most_moving
 from workbench.evidence.prior_choice.results import PriorSensitivity
 from workbench.evidence.prior_choice.sensitivity import SCALES
 from workbench.plots.palette import LIGHT, Palette
-from workbench.plots.powers import draw_power_changes, draw_sensitivities, most_moving
+from workbench.plots.powers import draw_power_changes, draw_sensitivities
 from workbench.plots.prior_curves import draw_prior_curves
 from workbench.plots.prior_map import draw_prior_key, draw_prior_map
 from workbench.plots.words import keep_inside, shortened
@@ -26,6 +27,7 @@ Array = npt.NDArray[np.float64]
 
 WIDTH = 9.0
 _HEAD, _CURVES, _MAP, _ROW, _AROUND = 0.75, 3.5, 4.0, 0.24, 1.25
+_MOST = 24  # nuisance priors that are drawn
 _LEFT, _RIGHT = 0.20, 0.86
 
 
@@ -43,7 +45,7 @@ def priors_page(outcome: PriorsOutcome, palette: Palette = LIGHT) -> Figure:
         page = Figure(figsize=(WIDTH, 2.0), facecolor=palette.paper)
         _draw_reason(page, outcome, palette)
         return page
-    shown = most_moving(found.scalings)
+    shown = most_moving(found.scalings, _MOST)
     below = _AROUND + _ROW * len(shown) if shown else 0.0
     heights = [_HEAD, _CURVES, _MAP, *([below] if shown else [])]
     page = Figure(figsize=(WIDTH, sum(heights)), facecolor=palette.paper)
@@ -113,7 +115,7 @@ def _add_events(axes: Axes, found: PriorSensitivity, palette: Palette) -> None:
 
 
 def _draw_powers(part: FigureBase, found: PriorSensitivity, palette: Palette) -> None:
-    shown = most_moving(found.scalings)
+    shown = most_moving(found.scalings, _MOST)
     height = _ROW * len(shown) / (_AROUND + _ROW * len(shown))
     bottom = 0.62 / (_AROUND + _ROW * len(shown))
     left = part.add_axes((_LEFT, bottom, 0.31, height))

@@ -24,13 +24,14 @@ from workbench.errors import InputError
 from workbench.evidence.ratio.checking import scale_of
 from workbench.evidence.ratio.results import Check, Scan
 from workbench.evidence.updating_ratio import scan
+from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis, Hypothesis, Parameter
 from workbench.hypotheses.priors import (
     Fixed,
     Gamma,
     Uniform,
 )
-from workbench.hypotheses.processes import Contribution, Process
+from workbench.hypotheses.processes import Alternative, Contribution, Process
 from workbench.hypotheses.shapes import Template
 from workbench.likelihood.model import compile_model
 
@@ -284,3 +285,33 @@ def test_a_held_parameter_is_not_scanned() -> None:
 
 def test_a_pull_is_the_difference_in_units_of_both_errors() -> None:
     assert Check({}, 1.0, 0.3, 2.0, 0.4).pull == pytest.approx(-2.0)
+
+
+def test_over_alternatives_of_a_background_it_is_the_ratio_of_the_averages() -> None:
+    """R(s) = sum_v P(v) Poisson(9 | b_v + 2 s)/sum_v P(v) Poisson(9 | b_v), by scipy."""
+    region = one_bin("r", 9.0, few=4.0, many=7.0, signal=2.0)
+    into = [Contribution(Template(name)) for name in ("few", "many")]
+    alternatives = (
+        Alternative("few", {"r": into[0]}, prior=3.0),
+        Alternative("many", {"r": into[1]}, prior=1.0),
+    )
+    base = templates(one_bin("r", 9.0, few=4.0, signal=2.0), TO_FIVE)
+    (_, signal) = base.processes
+    analysis = replace(
+        base,
+        regions=(region,),
+        processes=(Process("few", "background", {}, alternatives=alternatives), signal),
+    )
+    found = scan(analysis)
+    assert found.established, found.reason
+    strengths = np.linspace(0.0, 8.0, 81)
+    share = np.array([[0.75], [0.25]])
+    background = np.array([[4.0], [7.0]])
+    above = (share * stats.poisson.pmf(9, background + 2.0 * strengths)).sum(axis=0)
+    exact = np.log(above / (share * stats.poisson.pmf(9, background)).sum())
+    ln_ratio, error = read(found, *((s,) for s in strengths))
+    assert found.is_nested
+    assert np.abs(ln_ratio - exact).max() < NO_SOURCES + 3.0 * error.max()
+    assert error.max() < 0.01
+    comparison = weigh(analysis).comparisons[0]
+    assert found.ln_bayes_factor == pytest.approx(comparison.ln_bayes_factor, abs=1e-9)

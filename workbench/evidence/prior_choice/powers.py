@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import enum
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 
@@ -60,3 +61,22 @@ class PowerScaling:
     tension: float | None
     driver: Driver
     changes: tuple[PowerChange, ...]
+
+
+def most_moving(scalings: Sequence[PowerScaling], most: int) -> tuple[PowerScaling, ...]:
+    """Return the entries to show where there are many: those in conflict, and those that move ln B most.
+
+    Args:
+        scalings: every nuisance prior to powers.
+        most: how many to return.
+
+    Returns:
+        Entries in the order given; all where they are few.
+    """
+
+    def urgency(one: PowerScaling) -> tuple[bool, float]:
+        size = max((abs(change.ln_change or 0.0) for change in one.changes), default=0.0)
+        return one.driver is Driver.CONFLICT, size
+
+    kept = {id(one) for one in sorted(scalings, key=urgency, reverse=True)[:most]}
+    return tuple(one for one in scalings if id(one) in kept)

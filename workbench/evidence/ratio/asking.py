@@ -20,16 +20,16 @@ def chosen_hypothesis(analysis: Analysis, over: Sequence[str] | None, asked: str
         asked: a hypothesis' name; None to choose.
 
     Raises:
-        InputError: if there is none, or backgrounds have alternatives.
+        InputError: if there is none, or the signal has alternatives.
     """
-    doubted = in_doubt(analysis)
+    doubted = [process for process in in_doubt(analysis) if process.is_signal]
     if doubted:
         raise InputError(
             Problem(
-                "Backgrounds with alternatives are not scanned",
+                "A signal with alternatives is not scanned",
                 "scan",
                 " and ".join(quoted(process.name) for process in doubted),
-                "one description of each background",
+                "one description of the signal",
                 "scan once for each alternative, keeping one in the file at a time",
             )
         )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -11,8 +12,8 @@ from workbench.errors import quoted
 from workbench.evidence.ratio.held import FAILED, Held, Holder
 from workbench.evidence.ratio.results import Check, Scan
 from workbench.evidence.ratio.surface import Surface
+from workbench.evidence.ratio.variants import Part, ratio_of
 from workbench.evidence.weigh import Weighed, weigh_hypothesis
-from workbench.hypotheses.analysis import Analysis
 from workbench.likelihood.model import Model, compile_model
 
 Array = npt.NDArray[np.float64]
@@ -87,43 +88,37 @@ def shift_of(first: Weighed, reference: Held) -> tuple[float, float]:
     return float(reference.ln_evidence[0]) - other.ln_evidence, float(np.hypot(doubt, other.error or 0.0))
 
 
-def checks_of(
-    analysis: Analysis, hypothesis: str, surface: Surface, first: Weighed, seed: np.random.SeedSequence
-) -> tuple[Check, ...]:
+def checks_of(parts: Sequence[Part], surface: Surface, seed: np.random.SeedSequence) -> tuple[Check, ...]:
     """Return R between the nodes as the engine has it with the signal parameters held.
 
     Args:
-        analysis: everything declared.
-        hypothesis: the one scanned.
-        surface: R over all its signal parameters.
-        first: the background-only hypothesis.
+        parts: the alternatives of the backgrounds, or the one analysis.
+        surface: R over all signal parameters.
         seed: where points and draws come from.
     """
-    if first.evidence.ln_evidence is None:
-        return ()
-    is_long = first.model.bins * max(1, first.model.size) > _LONG
+    model = parts[0].weighed.model
+    is_long = len(parts) * model.bins * max(1, model.size) > _LONG
     chooser, *children = seed.spawn((_FEWER if is_long else _POINTS) + 1)
     points = _points(surface, len(children), np.random.default_rng(chooser))
     values, errors = surface.at(points)
     found = []
     for point, value, error, child in zip(points, values, errors, children, strict=True):
         held = dict(zip(surface.names, point.tolist(), strict=True))
-        direct = _held_evidence(analysis, hypothesis, held, child).evidence
-        if direct.ln_evidence is not None and direct.established:
-            doubt = float(np.hypot(direct.error or 0.0, first.evidence.error or 0.0))
-            ratio = direct.ln_evidence - first.evidence.ln_evidence
-            found.append(Check(held, float(value), float(error), ratio, doubt))
+        its_own = zip(parts, child.spawn(len(parts)), strict=True)
+        evidences = [_held_evidence(part, held, one).evidence for part, one in its_own]
+        direct = ratio_of(parts, evidences)
+        if direct is not None and all(one.established for one in evidences):
+            found.append(Check(held, float(value), float(error), direct.ln_ratio, direct.error))
     return tuple(found)
 
 
-def _held_evidence(
-    analysis: Analysis, hypothesis: str, values: dict[str, float], seed: np.random.SeedSequence
-) -> Weighed:
+def _held_evidence(part: Part, values: dict[str, float], seed: np.random.SeedSequence) -> Weighed:
+    name = part.weighed.model.hypothesis
     changed = tuple(
-        replace(one, fix={**one.fix, **values}) if one.name == hypothesis else one
-        for one in analysis.hypotheses
+        replace(one, fix={**one.fix, **values}) if one.name == name else one
+        for one in part.analysis.hypotheses
     )
-    return weigh_hypothesis(compile_model(replace(analysis, hypotheses=changed), hypothesis), seed)
+    return weigh_hypothesis(compile_model(replace(part.analysis, hypotheses=changed), name), seed)
 
 
 def _points(surface: Surface, number: int, generator: np.random.Generator) -> Array:
@@ -163,16 +158,15 @@ def widened(found: Scan) -> Scan:
     return replace(found, surface=replace(surface, error=scale * surface.error), checks=checks)
 
 
-def disagreement(found: Scan, surface: Surface, first: Weighed, weighed: Weighed) -> str:
+def disagreement(found: Scan, surface: Surface, parts: Sequence[Part]) -> str:
     """Return why a scan is not established; empty when it is.
 
     Args:
         found: the scan.
         surface: R over all signal parameters.
-        first: the background-only hypothesis.
-        weighed: the one scanned.
+        parts: the alternatives of the backgrounds, or the one analysis.
     """
-    for one in (first, weighed):
+    for one in (one for part in parts for one in (part.first, part.weighed)):
         if not one.evidence.established:
             return f"{quoted(one.model.hypothesis)}: {one.evidence.reason}"
     near = surface.ln_ratio > surface.ln_ratio.max(axis=1, keepdims=True) - _DEPTH

@@ -5,10 +5,12 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from workbench.evidence.prior_choice.power_scaling import CONFLICT, THRESHOLD
-from workbench.evidence.prior_choice.powers import PowerChange, PowerScaling
+from workbench.evidence.prior_choice.powers import PowerChange, PowerScaling, most_moving
 from workbench.records.numbers import as_written, fixed
 from workbench.records.screens.counted import NONE
 from workbench.records.screens.layout import aligned_at, bullet, columns, heading, one_line
+
+MOST = 16
 
 
 def power_lines(scalings: Sequence[PowerScaling]) -> list[str]:
@@ -19,9 +21,10 @@ def power_lines(scalings: Sequence[PowerScaling]) -> list[str]:
     """
     if not scalings:
         return heading("There is no nuisance prior to examine")
+    shown = most_moving(scalings, MOST)
     header = ["nuisance prior", "prior", "data", "tension", "ln B, wider", "ln B, narrower", "rests on"]
-    halves = aligned_at(".", [_moved(one.changes[0]) for one in scalings])
-    doubles = aligned_at(".", [_moved(one.changes[1]) for one in scalings])
+    halves = aligned_at(".", [_moved(one.changes[0]) for one in shown])
+    doubles = aligned_at(".", [_moved(one.changes[1]) for one in shown])
     rows = [
         [
             one_line(one.parameter),
@@ -32,9 +35,12 @@ def power_lines(scalings: Sequence[PowerScaling]) -> list[str]:
             double,
             one.driver.value,
         ]
-        for one, half, double in zip(scalings, halves, doubles, strict=True)
+        for one, half, double in zip(shown, halves, doubles, strict=True)
     ]
     lines = [*heading("Nuisance priors, each raised to a power"), *columns([header, *rows], "lrrrlll")]
+    if len(shown) < len(scalings):
+        more = len(scalings) - len(shown)
+        lines += bullet(f"{more} more, which move ln B less and are not in conflict, are in the record.")
     limits = f"{as_written(THRESHOLD)}"
     lines += bullet(
         "Prior, data: how far the parameter's posterior moves for a doubling of the power of its "
