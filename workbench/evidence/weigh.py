@@ -9,10 +9,11 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.errors import Caution, InputError, Problem, quoted
+from workbench.evidence.agreement import doubt
 from workbench.evidence.averaging import weigh_variants
 from workbench.evidence.drawn import Drawn
 from workbench.evidence.empty_bins import empty_bin_cautions
-from workbench.evidence.engines import AUTO, LARGEST_ERROR, TOO_FAR_APART, answered, refuse_unknown
+from workbench.evidence.engines import AUTO, answered, refuse_unknown
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
 from workbench.evidence.exchange import like_signal_cautions
@@ -20,8 +21,6 @@ from workbench.evidence.mis_modelling import mis_modelling_cautions
 from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
-from workbench.evidence.other_maxima import OTHER_MAXIMUM, share_unreached
-from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
 from workbench.evidence.ridge import MOST_FOLLOWED
@@ -34,8 +33,6 @@ from workbench.likelihood.model import Model, compile_model, never_filled
 Array = npt.NDArray[np.float64]
 
 _NOWHERE: Mapping[str, float] = {}
-# Beyond this k-hat sampling needs the quadrature, whose own error must then be below the next number.
-_CONFIRMED_ABOVE, _LARGEST_ROUGHNESS = 0.5, 0.5
 # The spread of weights tells their error where four moments are finite: k below 1/4; k-hat is noisy itself.
 _EVEN_ENOUGH = 0.3
 
@@ -235,7 +232,7 @@ def _agreed(model: Model, grid: Grid, drawn: Sample) -> Evidence:
         Estimate(name, grid.ln_evidence, grid.error, None, grid.evaluations),
         Estimate("sampling", drawn.ln_evidence, drawn.error, drawn.k_hat, drawn.ln_weights.size),
     )
-    reason = _doubt(grid, drawn)
+    reason = doubt(grid, drawn)
     finite = bool(np.isfinite(drawn.ln_evidence))
     return Evidence(
         model.hypothesis,
@@ -245,50 +242,6 @@ def _agreed(model: Model, grid: Grid, drawn: Sample) -> Evidence:
         reason,
         tuple(one for one in estimates if one.ln_evidence > LEAST_LN_HEIGHT and np.isfinite(one.error)),
     )
-
-
-def _doubt(grid: Grid, drawn: Sample) -> str:
-    """Return why an evidence is not established; empty when it is."""
-    if not np.isfinite(drawn.ln_evidence):
-        return "no draw can produce the observed counts"
-    if grid.ln_evidence <= LEAST_LN_HEIGHT:
-        return "the nuisance parameters have no maximum that Laplace could integrate around"
-    if not np.isfinite([grid.ln_evidence, grid.error, drawn.error]).all():
-        return TOO_FAR_APART
-    return _overlooked(grid, drawn) or _disagreement(grid, drawn)
-
-
-def _disagreement(grid: Grid, drawn: Sample) -> str:
-    """Return what is too large: an error, k-hat, or the estimators' difference; empty where nothing is."""
-    allowed = largest_allowed(drawn.ln_weights.size)
-    if drawn.error > LARGEST_ERROR:
-        return f"the sampling error of {drawn.error:.2g} is above {LARGEST_ERROR}"
-    if drawn.k_hat >= allowed:
-        return (
-            f"a few draws dominate the sampling pass (k-hat {drawn.k_hat:.2f}, allowed below {allowed:.2f})"
-        )
-    if drawn.k_hat > _CONFIRMED_ABOVE and grid.error > _LARGEST_ROUGHNESS:
-        return (
-            f"a few draws weigh much (k-hat {drawn.k_hat:.2f}), and with an error of {grid.error:.2g} the "
-            "quadrature can't confirm them"
-        )
-    gap = abs(grid.ln_evidence - drawn.ln_evidence)
-    limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
-    if not gap <= limit:
-        return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
-    return ""
-
-
-def _overlooked(grid: Grid, drawn: Sample) -> str:
-    """Return what both estimators may have left out, whatever they say; empty where there is nothing."""
-    if grid.columns.is_cut:
-        return (
-            "counts and the strength's prior are too far apart: the integrand still rises where numbers end"
-        )
-    unreached = share_unreached(grid, drawn.ln_evidence)
-    if unreached:
-        return f"{OTHER_MAXIMUM} holds {unreached:.1%} of the evidence"
-    return ""
 
 
 def _impossible(model: Model, impossible: npt.NDArray[np.bool_]) -> Evidence:
