@@ -10,11 +10,15 @@ from workbench.commands.parsing import Parser, relative_size, whole_number
 from workbench.counts.files import digest_of, read_bytes
 from workbench.errors import InputError, Problem, quoted
 from workbench.hypotheses.analysis import Analysis
+from workbench.hypotheses.file.kinds import (
+    ANALYSES,
+    HISTOGRAMS,
+    existing_file_problem,
+    unknown_kind_problem,
+)
 from workbench.records.numbers import as_written
 from workbench.records.outcomes import Origin
 
-ANALYSES = (".toml",)
-HISTOGRAMS = (".csv", ".tsv", ".txt")
 DEFAULT_SEED = 1
 DEFAULT_BACKGROUND_UNCERTAINTY = 0.10
 EXAMPLE_PRIOR = "{ uniform = { low = 0, high = 5 } }"
@@ -79,15 +83,7 @@ def load(options: argparse.Namespace, *, seed: int | None) -> tuple[Analysis, Or
         return _from_histogram(options, name, seed)
     if not Path(options.file).is_file():
         read_bytes(Path(options.file), name)  # says what is there instead
-    raise InputError(
-        Problem(
-            "A kind of file that is not read",
-            name,
-            f"the ending {quoted(suffix)}" if suffix else "a name without an ending",
-            "an analysis (.toml) or a histogram (.csv, .tsv, .txt)",
-            "save it as CSV with the columns low,high,observed",
-        )
-    )
+    raise InputError(unknown_kind_problem(options.file, name))
 
 
 def refuse_planning(analysis: Analysis, command: str) -> None:
@@ -146,15 +142,7 @@ def _from_histogram(options: argparse.Namespace, name: str, seed: int | None) ->
 def _refuse_existing(save: str | None) -> None:
     refuse_unwritable("--save", save)
     if save is not None and Path(save).exists():
-        raise InputError(
-            Problem(
-                "File exists already",
-                "--save",
-                quoted(save),
-                "a new file",
-                "choose another name, or remove it first",
-            )
-        )
+        raise InputError(existing_file_problem("--save", save))
 
 
 def _refuse_histogram_options(options: argparse.Namespace) -> None:
