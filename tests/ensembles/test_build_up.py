@@ -126,6 +126,39 @@ def test_posterior_odds_are_prior_odds_times_the_accumulated_bayes_factor() -> N
         assert step.posteriors[1].prior == pytest.approx(0.1)
 
 
+def test_posterior_probabilities_mean_what_they_say_at_every_exposure() -> None:
+    """Hypothesis and parameters drawn from their priors: the mean posterior probability is the prior's.
+
+    By the law of total expectation, at every exposure at which one looks. Tolerance: the mean's standard
+    error.
+    """
+    sorrel = read_analysis(DATA / "sorrel" / "sorrel.toml")
+    names = [one.name for one in sorrel.hypotheses]
+    runs, exposures = 600, [0.8, 3.2, 6.4]
+    true = np.random.default_rng(17).integers(0, 2, runs)
+    toys = [toy(sorrel, hypothesis=names[k], seed=seed) for seed, k in enumerate(true)]
+    found = np.array([probabilities(one, exposures) for one in toys])
+    error = found.std(axis=0) / np.sqrt(runs)
+    assert (np.abs(found.mean(axis=0) - 0.5) < 4.0 * error).all()
+    for place, at in enumerate(exposures):  # and among those called likely, as many hold as is said
+        likely = found[:, place] > 0.6
+        assert likely.sum() > 50, at
+        spread = np.sqrt((found[likely, place] * (1.0 - found[likely, place])).sum()) / likely.sum()
+        assert abs(true[likely].mean() - found[likely, place].mean()) < 4.0 * spread
+    # Negative control: signals of a tenth of the prior's mean are called likely too seldom.
+    weak = [toy(sorrel, hypothesis=names[k], true={"strength": 0.1} if k else {}, seed=seed)
+            for seed, k in enumerate(true)]  # fmt: skip
+    other = np.array([probabilities(one, exposures[-1:]) for one in weak])
+    assert abs(other.mean() - 0.5) > 6.0 * other.std() / np.sqrt(runs)
+
+
+def probabilities(one: Toy, exposures: list[float]) -> list[float]:
+    """Return the posterior probability of the second hypothesis at each exposure."""
+    steps = [weigh(one.at(exposure)).posteriors[1].probability for exposure in exposures]
+    assert None not in steps
+    return [float(p) for p in steps if p is not None]
+
+
 def test_steps_come_one_by_one_and_go_on_from_those_before() -> None:
     skerry = read_analysis(DATA / "skerry" / "skerry.toml")
     one = toy(skerry, true={"strength": 1.2, "mass": 45.0}, seed=5)

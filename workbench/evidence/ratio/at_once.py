@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from workbench.errors import InputError, Problem, nearest, quoted
-from workbench.evidence.ratio.averages import averaged
+from workbench.evidence.ratio.averages import aligned, averaged
 from workbench.evidence.ratio.density import Density, posterior_density
 from workbench.evidence.ratio.results import Average, Scan
 from workbench.evidence.ratio.surface import Surface
@@ -32,8 +32,9 @@ class Answer:
 class AtOnce:
     """Answers of one scan, asked for again and again; it fits nothing.
 
-    What it keeps between questions is R averaged over the priors that stayed the same, so that a question
-    costs the less the less has changed. The answers don't depend on what was asked before.
+    What it keeps between questions is R averaged over the priors that stayed the same, and at nodes that suit
+    such averages, so that a question costs the less the less has changed. The answers don't depend on what
+    was asked before.
 
     Args:
         found: a scan over every parameter whose prior is going to change.
@@ -42,6 +43,7 @@ class AtOnce:
     def __init__(self, found: Scan) -> None:
         self._found = found
         self._kept: dict[str, tuple[dict[str, Prior], Surface]] = {}
+        self._aligned: Surface | None = None
 
     def under(
         self,
@@ -83,9 +85,18 @@ class AtOnce:
         others = {other: prior for other, prior in priors.items() if other != name}
         kept = self._kept.get(name)
         if kept is None or kept[0] != others:
-            kept = (others, averaged(self._found.known, others) if others else self._found.known)
+            kept = (others, averaged(self._surface_for(name), others) if others else self._found.known)
             self._kept[name] = kept
         return posterior_density(kept[1], priors[name], self._found.units.get(name, ""))
+
+    def _surface_for(self, name: str) -> Surface:
+        """Return the surface, its strength nodes the same in all columns where these get averaged."""
+        surface = self._found.known
+        if surface.strengths is None or name != surface.strengths.name:
+            return surface
+        if self._aligned is None:
+            self._aligned = aligned(surface, surface.strengths, [True] * len(surface.panels))
+        return self._aligned
 
 
 def _refuse_strangers(asked: Sequence[str], surface: Surface) -> None:

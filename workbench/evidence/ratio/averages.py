@@ -99,7 +99,7 @@ def averaged(surface: Surface, priors: dict[str, Prior]) -> Surface:
         values, errors = averaged_over_strength(surface, strengths, priors[strengths.name])
         surface = Surface(surface.panels, None, values[:, None], errors[:, None])
     elif strengths is not None and any(one.name in priors for one in surface.panels):
-        surface = _aligned(surface, strengths, [one.name in priors for one in surface.panels])
+        surface = aligned(surface, strengths, [one.name in priors for one in surface.panels])
     values, errors = (one.reshape(*surface.shape, -1) for one in (surface.ln_ratio, surface.error))
     kept = surface.panels
     for one in surface.panels:
@@ -125,14 +125,28 @@ def _groups(surface: Surface, kept: tuple[Panels, ...]) -> npt.NDArray[np.intp]:
     return found
 
 
-def _aligned(surface: Surface, strengths: Strengths, is_averaged: list[bool]) -> Surface:
-    """Return the surface with the same strength nodes in all columns that are averaged with each other."""
+def aligned(surface: Surface, strengths: Strengths, is_averaged: list[bool]) -> Surface:
+    """Return the surface with the same strength nodes in all columns that are averaged with each other.
+
+    Args:
+        surface: ln R.
+        strengths: its strength nodes; returned as it is where these are the same in all columns already.
+        is_averaged: of each of the panels, True where it is going to be averaged over.
+    """
+    if _are_alike(strengths):
+        return surface
     kept = tuple(one for one, gone in zip(surface.panels, is_averaged, strict=True) if not gone)
     groups = _groups(surface, kept)
     tops = surface.ln_ratio.max(axis=1)
     order = np.lexsort((-tops, groups))
     best = order[np.unique(groups[order], return_index=True)[1]]
-    common: Strengths = replace(strengths.take(best[groups]), number=_KEPT_NODES, known=None)
+    few: Strengths = replace(strengths.take(best), number=_KEPT_NODES, known=None)
+    common = replace(few, known=few.nodes).take(groups)
     place = strengths.place(common.nodes)
     values, errors = between(surface.ln_ratio, place), between(surface.error, place, 2)
     return Surface(surface.panels, common, values, errors)
+
+
+def _are_alike(strengths: Strengths) -> bool:
+    """Tell whether all columns have the same nodes."""
+    return all(bool((one == one[0]).all()) for one in (strengths.offset, strengths.centre, strengths.scale))
