@@ -4,17 +4,14 @@ from __future__ import annotations
 
 from typing import Any
 
-import numpy as np
-
-from workbench.counts.region import Region
 from workbench.ensembles.predictive import PriorPredictive
-from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.distortion import Distortion
-from workbench.records.descriptions import alternative_priors, column_uses, source_words
+from workbench.records.descriptions import alternative_priors, source_words
 from workbench.records.files import FORMAT
 from workbench.records.outcomes import CheckOutcome
 from workbench.records.provenance import inputs, versions
 from workbench.records.sentences import verdict_on_all
+from workbench.records.understanding import Understood, understood
 from workbench.records.weigh_record import adequacy_entry, caution_entries, origin_entries
 
 
@@ -32,7 +29,7 @@ def check_record(outcome: CheckOutcome) -> dict[str, Any]:
         "inputs": inputs(analysis, outcome.origin),
         "versions": versions(),
         **origin_entries(outcome.origin),
-        "regions": [_region(analysis, region) for region in analysis.regions],
+        "regions": [_region(region) for region in understood(analysis)],
         "parameters": [
             {"name": item.name, "unit": item.unit, "prior": item.prior.text()} for item in analysis.parameters
         ],
@@ -80,23 +77,20 @@ def _distortion(distortion: Distortion | None) -> dict[str, Any] | None:
     return {"size": distortion.size, "terms": distortion.terms, "regions": regions}
 
 
-def _region(analysis: Analysis, region: Region) -> dict[str, Any]:
-    observed, binning = region.table.observed, region.table.binning
-    uses = column_uses(analysis, region.name)
+def _region(region: Understood) -> dict[str, Any]:
     return {
         "name": region.name,
         "observable": region.observable,
         "unit": region.unit,
-        "bins": binning.number,
-        "first_edge": binning.first,
-        "last_edge": binning.last,
-        "observed": None if observed is None else int(observed.sum()),
-        "empty_bins": None if observed is None else int(np.sum(observed == 0)),
-        "single_count_bins": None if observed is None else int(np.sum(observed == 1)),
-        "template_errors": bool(region.template_errors),
+        "bins": region.bins,
+        "first_edge": region.first_edge,
+        "last_edge": region.last_edge,
+        "observed": region.observed,
+        "empty_bins": region.empty_bins,
+        "single_count_bins": region.single_count_bins,
+        "template_errors": region.template_errors,
         "columns": {
-            name: {"sum": float(values.sum()), "used_by": uses.get(name, [])}
-            for name, values in region.table.columns.items()
+            column.name: {"sum": column.total, "used_by": list(column.used_by)} for column in region.templates
         },
     }
 
