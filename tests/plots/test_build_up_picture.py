@@ -34,7 +34,7 @@ def steps(values: Sequence[float | None], name: str = "resonance") -> BuildUp:
     made = []
     for place, value in enumerate(values, start=1):
         fine = tuple(Adequacy(one, 9.0, 0.3, 0.03, 200, 0) for one in (FIRST, name))
-        estimate = StrengthEstimate(name, "strength", 1.25, 0.75, 1.75, 0.01, 0.01, 0.01)
+        estimate = StrengthEstimate(1.25, 0.75, 1.75, 0.01, 0.01, 0.01, name, "strength")
         made.append(Step(4.0 * place, 100.0 * place, (), (), (comparison(value, name),), (estimate,), fine))
     return BuildUp(tuple(made), "fb^-1", 1)
 

@@ -8,34 +8,24 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from workbench.evidence.central import CENTRAL, Central
 from workbench.evidence.sampling import SCRAMBLES, Sample
 from workbench.evidence.weigh import Weighed
 
 Array = npt.NDArray[np.float64]
 
-CENTRAL = special.ndtr(np.array([0.0, -1.0, 1.0]))
-
 
 @dataclass(frozen=True, slots=True)
-class StrengthEstimate:
+class StrengthEstimate(Central):
     """What counts say of a strength if its hypothesis holds.
 
     Attributes:
         hypothesis, parameter: whose.
-        median: of its posterior.
-        low, high: ends of the central 68.3 %.
-        median_error, low_error, high_error: their numerical errors, one standard error each.
         alternative: the alternative of the backgrounds that it holds under; empty where there is no doubt.
     """
 
     hypothesis: str
     parameter: str
-    median: float
-    low: float
-    high: float
-    median_error: float
-    low_error: float
-    high_error: float
     alternative: str = ""
 
 
@@ -75,7 +65,7 @@ def _estimate(
         for x, w in zip(values.reshape(SCRAMBLES, -1), weights.reshape(SCRAMBLES, -1), strict=True)
     ]
     of_median, of_low, of_high = (np.std(parts, axis=0, ddof=1) / np.sqrt(SCRAMBLES)).tolist()
-    return StrengthEstimate(hypothesis, parameter, median, low, high, of_median, of_low, of_high, alternative)
+    return StrengthEstimate(median, low, high, of_median, of_low, of_high, hypothesis, parameter, alternative)
 
 
 def weighted_quantiles(values: Array, weights: Array, p: Array) -> Array:

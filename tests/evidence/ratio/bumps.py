@@ -11,11 +11,33 @@ from scipy import stats
 from tests.evidence.small_analyses import bump, source
 from workbench.evidence.ratio.results import Scan
 from workbench.hypotheses.analysis import Analysis
-from workbench.hypotheses.priors import Uniform
+from workbench.hypotheses.priors import (
+    Beta,
+    Exponential,
+    Gamma,
+    HalfNormal,
+    LogNormal,
+    LogUniform,
+    Normal,
+    Prior,
+    Uniform,
+)
 
 Array = npt.NDArray[np.float64]
 
 TO_FIVE = Uniform(0.0, 5.0)
+STRENGTH_PRIORS: list[Prior] = [
+    Uniform(0.0, 7.0),
+    Exponential(0.8),
+    HalfNormal(2.0),
+    Gamma(0.5, 1.0),
+    Gamma(3.0, 2.0),
+    LogUniform(1e-3, 9.0),
+    LogNormal(1.0, 1.5),
+    Beta(0.5, 0.5, 0.0, 6.0),
+    Normal(1.2, 0.01, 0.0),
+    Normal(2.0, 1.0, 0.0, 8.0),
+]
 
 
 def observed_bump() -> Array:

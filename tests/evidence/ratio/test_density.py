@@ -9,10 +9,11 @@ import numpy.typing as npt
 import pytest
 from scipy import integrate, special, stats
 
-from tests.evidence.ratio.bumps import TO_FIVE, observed_bump, uncertain_bump
+from tests.evidence.ratio.bumps import STRENGTH_PRIORS, TO_FIVE, observed_bump, uncertain_bump
 from tests.evidence.small_analyses import YIELD, bump, counting
-from workbench.ensembles.strengths import CENTRAL, weighted_quantiles
+from workbench.ensembles.strengths import weighted_quantiles
 from workbench.errors import InputError
+from workbench.evidence.central import CENTRAL
 from workbench.evidence.ratio.at_once import AtOnce
 from workbench.evidence.ratio.density import Density
 from workbench.evidence.ratio.results import Scan
@@ -21,13 +22,10 @@ from workbench.evidence.updating_ratio import scan
 from workbench.evidence.weigh import weigh_hypothesis
 from workbench.hypotheses.analysis import Parameter
 from workbench.hypotheses.priors import (
-    Beta,
     Exponential,
     Fixed,
     Gamma,
     HalfNormal,
-    LogNormal,
-    LogUniform,
     Normal,
     Prior,
     Uniform,
@@ -55,20 +53,7 @@ def errors(density: Density) -> Array:
     return np.array([density.median_error, density.low_error, density.high_error])
 
 
-@pytest.mark.parametrize(
-    "prior",
-    [
-        Uniform(0.0, 7.0),
-        Exponential(0.8),
-        HalfNormal(2.0),
-        Gamma(0.5, 1.0),
-        LogUniform(1e-3, 9.0),
-        LogNormal(1.0, 1.5),
-        Beta(0.5, 0.5, 0.0, 6.0),
-        Normal(1.2, 0.01, 0.0),
-        Normal(2.0, 1.0, 0.0, 8.0),
-    ],
-)
+@pytest.mark.parametrize("prior", STRENGTH_PRIORS)
 def test_the_density_of_one_count_is_its_likelihood_times_the_prior(counted: AtOnce, prior: Prior) -> None:
     """The cumulative posterior in 400,000 steps of equal prior probability, the likelihood from scipy."""
     found = counted.under({"strength": prior}).densities["strength"]

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 from scipy import special, stats
 
-from tests.evidence.ratio.bumps import TO_FIVE, read, uncertain_bump
+from tests.evidence.ratio.bumps import STRENGTH_PRIORS, TO_FIVE, read, uncertain_bump
 from tests.evidence.small_analyses import YIELD, counting
 from workbench.errors import InputError
 from workbench.evidence.ratio.results import Scan
@@ -60,21 +60,7 @@ def test_another_prior_gives_what_weighing_under_it_gives(bumps: Scan, strength:
     assert abs(found.ln_bayes_factor - stated) > 4.0 * error, "the negative control: the prior matters"
 
 
-@pytest.mark.parametrize(
-    "prior",
-    [
-        Uniform(0.0, 7.0),
-        Exponential(0.8),
-        HalfNormal(2.0),
-        Gamma(0.5, 1.0),
-        Gamma(3.0, 2.0),
-        LogUniform(1e-3, 9.0),
-        LogNormal(1.0, 1.5),
-        Beta(0.5, 0.5, 0.0, 6.0),
-        Normal(1.2, 0.01, 0.0),
-        Normal(2.0, 1.0, 0.0, 8.0),
-    ],
-)
+@pytest.mark.parametrize("prior", STRENGTH_PRIORS)
 def test_the_average_over_a_prior_is_that_of_a_closed_form(prior: Prior) -> None:
     """R = Poisson(9 | 3 + 6 s)/Poisson(9 | 3) summed in 20,000 steps of equal prior probability."""
     found = scan(counting(9.0, 3.0, TO_FIVE)).reprior({"strength": prior})

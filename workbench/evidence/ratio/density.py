@@ -10,17 +10,16 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.central import CENTRAL, Central
 from workbench.evidence.ratio.cells import cells_of
 from workbench.evidence.ratio.surface import Surface
 from workbench.hypotheses.priors import Fixed, Prior
 
 Array = npt.NDArray[np.float64]
 
-_CENTRAL = np.array([0.5, 0.15865525393145707, 0.8413447460685429])
-
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Density:
+class Density(Central):
     """A posterior density in cells.
 
     Attributes:
@@ -28,8 +27,6 @@ class Density:
         walls: (cell + 1,) ascending cell ends; two equal ones for a parameter that its prior fixes.
         mass: (cell,) posterior probability of each cell; adds up to 1.
         ln_error: the numerical error of ln R, averaged over the posterior [nats].
-        median, low, high: of the posterior, and ends of its central 68.3 %.
-        median_error, low_error, high_error: their numerical errors at the most.
     """
 
     parameter: str
@@ -37,12 +34,6 @@ class Density:
     walls: Array
     mass: Array
     ln_error: float
-    median: float
-    low: float
-    high: float
-    median_error: float
-    low_error: float
-    high_error: float
 
     @property
     def is_point(self) -> bool:
@@ -90,14 +81,14 @@ def posterior_density(surface: Surface, prior: Prior, unit: str) -> Density:
     (parameter,) = surface.names
     if isinstance(prior, Fixed):
         at, one = np.full(2, prior.value), prior.value
-        return Density(parameter, unit, at, np.ones(1), 0.0, one, one, one, 0.0, 0.0, 0.0)
+        return Density(one, one, one, 0.0, 0.0, 0.0, parameter, unit, at, np.ones(1), 0.0)
     walls, heights, errors = cells_of(surface, prior)
     weights = np.exp(heights - heights.max())
     mass = weights / weights.sum()
     ln_error = float(mass @ errors)
-    quantiles = np.interp(_CENTRAL, np.concatenate([[0.0], np.cumsum(mass)]), walls)
+    quantiles = np.interp(CENTRAL, np.concatenate([[0.0], np.cumsum(mass)]), walls)
     median, low, high = quantiles.tolist()
     cell = np.clip(np.searchsorted(walls, quantiles) - 1, 0, mass.size - 1)
-    off = 2.0 * _CENTRAL * (1.0 - _CENTRAL) * ln_error * np.diff(walls)[cell] / mass[cell]
+    off = 2.0 * CENTRAL * (1.0 - CENTRAL) * ln_error * np.diff(walls)[cell] / mass[cell]
     of_median, of_low, of_high = off.tolist()
-    return Density(parameter, unit, walls, mass, ln_error, median, low, high, of_median, of_low, of_high)
+    return Density(median, low, high, of_median, of_low, of_high, parameter, unit, walls, mass, ln_error)
