@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import MISSING, Field, fields, is_dataclass, replace
+from dataclasses import MISSING, Field, fields, is_dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -11,9 +11,7 @@ import numpy as np
 
 from workbench.counts.region import Region
 from workbench.counts.table import Table
-from workbench.errors import InputError
-from workbench.hypotheses.contents import numbers_digest
-from workbench.hypotheses.file.regions import read_table_beside
+from workbench.hypotheses.file.table_files import holds_region
 from workbench.hypotheses.python_text import (
     Brackets,
     Piece,
@@ -63,7 +61,7 @@ def as_python(analysis: Analysis, folder: str | Path | None = None) -> str:
 
 def _table(region: Region, folder: Path | None) -> Brackets:
     name = region.table.source
-    if folder is not None and _holds(name, folder, region):
+    if folder is not None and holds_region(name, folder, region):
         return Brackets(READ, (f"Path({string_text(name)})",), ")")
     table = region.table
     given = [
@@ -74,16 +72,6 @@ def _table(region: Region, folder: Path | None) -> Brackets:
         named = [prefixed(f"{string_text(key)}: ", _numbers(one)) for key, one in columns.items()]
         given += [Brackets(f"{kind}={{", tuple(named), "}")] if named else []
     return Brackets("wb.Table(", tuple(given), ")")
-
-
-def _holds(name: str, folder: Path, region: Region) -> bool:
-    """Tell whether the file of that name, read as a region's table, gives exactly the region's numbers."""
-    try:
-        table = read_table_beside(name, folder)
-        read = None if table is None else replace(region, table=table, zeroed=())
-    except (InputError, OSError, ValueError):  # a description rather than a file
-        return False
-    return read is not None and numbers_digest(read.table) == numbers_digest(region.table)
 
 
 def _binning(table: Table) -> Piece:

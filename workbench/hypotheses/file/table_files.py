@@ -48,7 +48,7 @@ def bins_of(region: Region, path: Path, mentioned: str | None, taken: set[str]) 
         none, definition
     """
     for name in _candidates(region, path.parent, mentioned):
-        if _holds(name, path.parent, region):
+        if holds_region(name, path.parent, region):
             return Bins({"table": name})
     table = region.table
     if not table.columns and np.array_equal(table.binning.low[1:], table.binning.high[:-1]):
@@ -57,7 +57,7 @@ def bins_of(region: Region, path: Path, mentioned: str | None, taken: set[str]) 
             keys["observed"] = [float(count) for count in table.observed]
         return Bins(keys)
     for name in _new_names(region, path):
-        if _holds(name, path.parent, region):
+        if holds_region(name, path.parent, region):
             return Bins({"table": name})
         if name not in taken and not (path.parent / name).exists():
             taken.add(name)
@@ -88,8 +88,20 @@ def _new_names(region: Region, path: Path) -> Iterator[str]:
         number += 1
 
 
-def _holds(name: str, folder: Path, region: Region) -> bool:
-    """Tell whether a table beside the analysis file gives exactly the region's numbers."""
+def holds_region(name: str, folder: Path, region: Region) -> bool:
+    """Tell whether a table beside an analysis file gives exactly a region's numbers.
+
+    Args:
+        name: the table, relative to the folder; anything else, such as a description, gives nothing.
+        folder: where the analysis file lies.
+        region: the region.
+
+    Returns:
+        True if it does, read with the region's choices.
+
+    Source:
+        none, definition
+    """
     try:
         table = read_table_beside(name, folder)
         read = None if table is None else replace(region, table=table, zeroed=())
