@@ -92,6 +92,14 @@ def test_gaps_planning_and_numbers_of_any_type_come_back() -> None:
     assert made_by(as_python(odd)).digest == odd.digest
 
 
+@pytest.mark.parametrize("source", ["nul\0", "x" * 5000, "../" * 50, "", "a histogram drawn by hand"])
+def test_a_table_from_nowhere_is_written_into_the_cell(source: str, tmp_path: Path) -> None:
+    plain = counting(3.0, 2.0)
+    table = replace(plain.regions[0].table, source=source)
+    odd = replace(plain, regions=(replace(plain.regions[0], table=table),))
+    assert as_python(odd, tmp_path) == as_python(plain)
+
+
 HOSTILE = [
     'a" + __import__("os").getcwd() + "',
     "back\\slash\\",
