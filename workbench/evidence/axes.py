@@ -111,13 +111,19 @@ def lay_out(model: Model, landscape: Landscape, axis: int, axes: tuple[int, ...]
     body = special.ndtri(np.linspace(0.0, 1.0, _FIRST_GRID + 1)[1:-1])
     tails = np.linspace(-_FARTHEST, _FARTHEST, 4 * int(_FARTHEST) + 1)
     grid = np.unique(np.concatenate([body, tails]))
-    turned = _turned(model, landscape, axis, grid, levels)
+    events = [_signals(model, landscape, axis, grid, level) for level in levels]
+    turned = _turned(events)
     while turned.max() > _FINEST and grid.size < _LARGEST_GRID:
         wide = np.flatnonzero((turned > _FINEST) & (np.diff(grid) > _SHORTEST))
         if wide.size == 0:
             break
-        grid = np.sort(np.concatenate([grid, 0.5 * (grid[wide] + grid[wide + 1])]))
-        turned = _turned(model, landscape, axis, grid, levels)
+        between = 0.5 * (grid[wide] + grid[wide + 1])
+        more = [_signals(model, landscape, axis, between, level) for level in levels]
+        grid = np.concatenate([grid, between])
+        order = np.argsort(grid)
+        grid = grid[order]
+        events = [np.concatenate([old, new])[order] for old, new in zip(events, more, strict=True)]
+        turned = _turned(events)
     length = np.concatenate([[0.0], np.cumsum(turned + _thinning(grid, turned))])
     panels = max(2, int(np.ceil(length[-1] / _PANEL_ANGLE)))
     if length[-1] <= 0.0:
@@ -138,18 +144,24 @@ def _thinning(grid: Array, turned: Array) -> Array:
     return np.where((middle > _TAIL) & (turned > _STILL * width), _FALL * middle * width, 0.0)
 
 
-def _turned(model: Model, landscape: Landscape, axis: int, grid: Array, levels: tuple[float, ...]) -> Array:
-    """Return the angle across each grid interval, the largest over levels of the other coordinates."""
-    found = [_angles(model, landscape, axis, grid, level) for level in levels]
-    return np.asarray(np.max(found, axis=0))
+def _signals(model: Model, landscape: Landscape, axis: int, places: Array, level: float) -> Array:
+    """Return (place, bin) events of a signal along an axis, in units of the counts' errors.
 
-
-def _angles(model: Model, landscape: Landscape, axis: int, grid: Array, level: float) -> Array:
-    points = np.full((grid.size, model.signal.size), level)
-    points[:, model.signal == axis] = grid[:, None]
+    The other shape coordinates are at one level, the other strengths at their median.
+    """
+    points = np.full((places.size, model.signal.size), level)
+    points[:, model.signal == axis] = places[:, None]
     strengths = [model.coordinates[index].is_strength for index in model.signal]
     points[:, np.array(strengths) & (model.signal != axis)] = 0.0
-    events = signal_events(model, landscape, points) * np.sqrt(landscape.weight)
+    return signal_events(model, landscape, points) * np.sqrt(landscape.weight)
+
+
+def _turned(events: list[Array]) -> Array:
+    """Return the angle across each grid interval, the largest over (grid, bin) signals of several levels."""
+    return np.asarray(np.max([_angles(one) for one in events], axis=0))
+
+
+def _angles(events: Array) -> Array:
     size = np.maximum(np.linalg.norm(events, axis=1), 1e-12)
     unit = events / size[:, None]
     chord = np.linalg.norm(np.diff(unit, axis=0), axis=1)

@@ -39,6 +39,6 @@ def unwhitened(matrices: Array, where: Indices, vectors: Array) -> Array:
     """Return x of matrices[where] @ x = vectors, group by group where the matrices are large."""
     if vectors.shape[1] == 0:
         return vectors
-    if vectors.shape[1] <= _GATHERED:
+    if vectors.shape[1] <= _GATHERED and len(matrices) > len(vectors):
         return np.asarray(np.linalg.solve(matrices[where], vectors[..., None])[..., 0])
     return grouped(np.asarray(np.linalg.inv(matrices)), where, vectors)

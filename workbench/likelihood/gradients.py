@@ -37,10 +37,9 @@ def gradient(model: Model, seeds: Seeds, counts: Array) -> Array:
         if part.by_bin is not None:
             factor = factor * part.by_bin.factors(seeds.x)
         local = seeds.moving(part.stem.local)
-        value, first, _ = part.stem.expanded(seeds, local)
-        events = factor * value
+        events, first, _ = part.stem.expanded(seeds, local, factor)
         total[:, part.bins] += events
-        expanded.append((part, local, events, factor * first if local else first))
+        expanded.append((part, local, events, first))
     t = poisson_slopes(counts, total).t
     found = np.zeros((batch, model.size))
     for row, (part, local, events, first) in enumerate(expanded):

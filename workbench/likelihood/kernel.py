@@ -253,10 +253,5 @@ def _piece(
     row: int, part: Part, stem: Stem, seeds: Seeds, factor: Array, by_bin: tuple[Array, Array]
 ) -> Piece:
     local = seeds.moving(stem.local)
-    value, first, second = stem.expanded(seeds, local)
-    events = factor * value
-    count = len(local)
-    if count:
-        first = np.broadcast_to(factor * first, (count, *events.shape))
-        second = np.broadcast_to(factor * second, (count, count, *events.shape))
+    events, first, second = stem.expanded(seeds, local, factor)
     return Piece(row, part.bins, local, part.by_bin, events, first, second, *by_bin)

@@ -133,9 +133,9 @@ class Model:
         factors = self.overall.factors(seeds.x)
         for row, part in enumerate(self.parts):
             factor = self._factor(part, factors[:, row, None], seeds)
-            total[:, part.bins] += factor * part.stem.value(seeds)
+            total[:, part.bins] += part.stem.value(seeds, factor)
             if part.error is not None and variance is not None:
-                variance[:, part.bins] += (factor * part.error.value(seeds)) ** 2
+                variance[:, part.bins] += part.error.value(seeds, factor) ** 2
         return total, variance
 
     def _factor(self, part: Part, overall: Array, seeds: Seeds) -> Array:
@@ -148,7 +148,7 @@ class Model:
         for row, part in enumerate(self.parts):
             target = found.setdefault(part.process, np.zeros((seeds.x.shape[1], self.bins)))
             factor = self._factor(part, factors[:, row, None], seeds)
-            target[:, part.bins] += factor * part.stem.value(seeds)
+            target[:, part.bins] += part.stem.value(seeds, factor)
         return found
 
     def restricted(self, kind: str, *, spare: bool) -> Model:

@@ -138,14 +138,12 @@ class Stem:
     fixed_amplitude: float | None
     shaping: tuple[int, ...]
 
-    def value(self, seeds: Seeds) -> Array:
-        """Return (batch, bin) or (1, bin) events before the sources act."""
-        if self.fixed_amplitude is not None and self.fixed_core is not None:
-            return self.fixed_amplitude * self.fixed_core[None, :]
-        core = self._core(seeds)
+    def value(self, seeds: Seeds, factor: Array | float = 1.0) -> Array:
+        """Return (batch, bin) events, or (1, bin) where nothing moves them, times the sources' factor."""
         if self.fixed_amplitude is not None:
-            return np.atleast_2d(self.fixed_amplitude * core)
-        return np.atleast_2d(self.amplitude(self._arguments(seeds)).value[..., None] * core)
+            return np.atleast_2d((factor * self.fixed_amplitude) * self._core(seeds))
+        amplitude = self.amplitude(self._arguments(seeds)).value[..., None]
+        return np.atleast_2d((factor * amplitude) * self._core(seeds))
 
     def _core(self, seeds: Seeds) -> Array:
         """Return the (batch, bin) core, or one for all; worked out once for points in a row that share it."""
@@ -155,26 +153,29 @@ class Stem:
         core = self.core(self._arguments(distinct)).value
         return core if times is None or core.ndim < 2 else np.repeat(core, times, axis=0)
 
-    def expanded(self, seeds: Seeds, local: tuple[int, ...]) -> tuple[Array, Array, Array]:
+    def expanded(self, seeds: Seeds, local: tuple[int, ...], factor: Array) -> tuple[Array, Array, Array]:
         """Return events (batch, bin) with their derivatives in m coordinates.
 
         Args:
             seeds: (coordinate, batch) parameter values with derivatives.
             local: those of the stem's coordinates in which derivatives are wanted.
+            factor: (batch, 1) or (batch, bin) the sources' factor.
 
         Returns:
             Events, (m, batch, bin) first and (m, m, batch, bin) second derivatives.
         """
         if not local:
-            return self.value(seeds), _NO_FIRST, _NO_SECOND
+            return self.value(seeds, factor), _NO_FIRST, _NO_SECOND
         arguments = self._arguments(seeds, local)
         if self.fixed_amplitude is not None:
-            jet = self.core(arguments) * self.fixed_amplitude
+            jet, factor = self.core(arguments), factor * self.fixed_amplitude
         elif not any(index in local for index in self.shaping):
             jet = self.amplitude(arguments).over_bins() * self._core(seeds)
         else:
             jet = self.amplitude(arguments).over_bins() * self.core(arguments)
-        return np.atleast_2d(jet.value), jet.first, jet.second
+        events, count = factor * np.atleast_2d(jet.value), len(local)
+        first = np.broadcast_to(factor * jet.first, (count, *events.shape))
+        return events, first, np.broadcast_to(factor * jet.second, (count, count, *events.shape))
 
     def _arguments(self, seeds: Seeds, local: tuple[int, ...] = ()) -> dict[str, Jet]:
         """Return the parameters as jets over some of the local coordinates, as constants in the others."""
