@@ -142,6 +142,9 @@ def test_whatever_is_edited_is_saved_with_its_comments_read_back_undone_and_redo
     while editing.undo():
         pass
     assert editing.analysis == first
+    assert file.save(), editing.refusals
+    assert wb.read_analysis(path) == first
+    assert path.read_text(encoding="utf-8").split("\n")[0] == original.split("\n")[0]
     while editing.redo():
         pass
     assert editing.analysis == last

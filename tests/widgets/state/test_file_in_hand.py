@@ -9,8 +9,10 @@ import pytest
 import workbench as wb
 from tests.analyses import counting
 from workbench.widgets.state.editing import Editing
-from workbench.widgets.state.edits import PriorProbability
+from workbench.widgets.state.edits import Edit, HeldParameter, PriorProbability
 from workbench.widgets.state.file_in_hand import OPEN, SAVE, FileInHand
+from workbench.widgets.state.row_edits import RowAdded, RowRemoved
+from workbench.widgets.state.rows import Row
 
 SKERRY = Path(__file__).parents[3] / "data" / "skerry"
 EDIT = PriorProbability("resonance", 0.25)
@@ -131,3 +133,47 @@ def test_a_histogram_alone_becomes_an_analysis_that_can_be_saved(file: FileInHan
     assert file.save(str(tmp_path / "counts.toml"))
     assert wb.read_analysis(tmp_path / "counts.toml") == file.editing.analysis
     assert 'table = "counts.csv"' in (tmp_path / "counts.toml").read_text()
+
+
+LAID_OUT_OTHERWISE = """# the head
+format = 1
+title = "Otherwise"
+[regions.only] # here
+edges = [0, 1, 2]
+observed = [3, 4]
+[parameters]
+strength.prior.uniform = { low = 0, high = 5 } # any
+[processes]
+b = { kind = "background", regions.only = { yield = 5, shape = { uniform = {} } } }
+s = { kind = "signal", factors = ["strength"], regions.only = { yield = 2, shape = { uniform = {} } } } # s
+"""
+
+
+def test_a_file_laid_out_otherwise_keeps_its_comments_through_edits_and_undoing(tmp_path: Path) -> None:
+    """A row that came back in front of others of its source once made the whole file lose its comments."""
+    path = tmp_path / "otherwise.toml"
+    path.write_text(LAID_OUT_OTHERWISE)
+    file = FileInHand(Editing())
+    assert file.open(str(path))
+    first = file.editing.analysis
+    edits: list[Edit] = [
+        RowAdded(Row("size", "b", 0.1)),
+        RowAdded(Row("size", "s", 0.2, -0.1)),
+        RowRemoved(Row("size", "b", 0.1)),
+        PriorProbability("signal plus background", 3.0),
+        HeldParameter("signal plus background", "strength", 1.0),
+    ]
+
+    def save() -> None:
+        assert file.save(), file.editing.refusals
+        assert wb.read_analysis(path) == file.editing.analysis
+        text = path.read_text()
+        assert [one for one in ("# the head", "# here", "# any", "} } } # s") if one not in text] == []
+
+    for edit in edits:
+        assert file.editing.edit(edit), file.editing.refusals
+        save()
+    while file.editing.undo():
+        save()
+    assert file.editing.analysis == first
+    assert "fix" not in path.read_text()

@@ -48,10 +48,33 @@ def _merge(target: MutableMapping[str, Any], content: Content, path: tuple[str, 
             )
             if isinstance(old, MutableMapping) and isinstance(value, Mapping) and value and not is_another:
                 _merge(old, cast("Content", value), (*path, key))
+                if _is_ordered((*path, key)) and list(old) != list(value):
+                    _put_in_order(old, list(value))
+            elif _is_nothing(key, value):
+                del target[key]
             elif not _is_same(old, value):
                 target[key] = _inline(value)
         elif not is_left_out(key, value):
             target[key] = _added(target, (*path, key), value)
+
+
+def _is_nothing(key: str, value: object) -> bool:
+    """Tell whether a key would hold an empty list or table that need not be there."""
+    return isinstance(value, list | Mapping) and not value and is_left_out(key, value)
+
+
+def _is_ordered(path: tuple[str, ...]) -> bool:
+    """Tell whether the order in a table is part of what it says: a source's effects, and their regions."""
+    return path[0] == "uncertainties" and path[2::2] in {("effects",), ("effects", "regions")}
+
+
+def _put_in_order(table: MutableMapping[str, Any], names: list[str]) -> None:
+    """Put the keys of a table into the given order; each keeps the comment on its line."""
+    kept = {name: table[name] for name in names if name in table}
+    for name in kept:
+        del table[name]
+    for name, item in kept.items():
+        table[name] = item
 
 
 def _is_same(old: object, value: object) -> bool:
