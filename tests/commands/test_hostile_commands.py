@@ -122,6 +122,13 @@ def refuse_constant(text: str) -> None:
     raise AssertionError(f"{text} in a record")
 
 
+def end_calmly(capsys: pytest.CaptureFixture[str], words: list[str], *, as_json: bool) -> None:
+    """Hold a command to a calm ending, and to a record of its own where it gives one."""
+    code, out = answer(capsys, words + ["--json"] * as_json)
+    if as_json and code < 2:
+        assert json.loads(out, parse_constant=refuse_constant)["command"] == words[0]
+
+
 @given(st.integers(0, len(FILES) - 1), changes, st.booleans())
 @settings(
     max_examples=110, derandomize=True, deadline=None, database=None, suppress_health_check=list(HealthCheck)
@@ -134,9 +141,7 @@ def test_weighing_a_mutated_file_ends_calmly(
     as_json: bool,
 ) -> None:
     words = ["weigh", str(hostile_file(folder, which, made)), "--pseudo-experiments", "200"]
-    code, out = answer(capsys, words + ["--json"] * as_json)
-    if as_json and code < 2:
-        assert json.loads(out, parse_constant=refuse_constant)["command"] == "weigh"
+    end_calmly(capsys, words, as_json=as_json)
 
 
 @given(changes, st.booleans())
@@ -148,9 +153,7 @@ def test_comparing_backgrounds_of_a_mutated_file_ends_calmly(
 ) -> None:
     doubted = next(place for place, path in enumerate(FILES) if path.stem == "dunlin")
     words = ["backgrounds", str(hostile_file(folder, doubted, made))]
-    code, out = answer(capsys, words + ["--json"] * as_json)
-    if as_json and code < 2:
-        assert json.loads(out, parse_constant=refuse_constant)["command"] == "backgrounds"
+    end_calmly(capsys, words, as_json=as_json)
 
 
 @given(st.integers(0, len(FILES) - 1), changes, st.booleans())
@@ -165,9 +168,7 @@ def test_examining_priors_of_a_mutated_file_ends_calmly(
     as_json: bool,
 ) -> None:
     words = ["priors", str(hostile_file(folder, which, made)), "--pseudo-experiments", "200"]
-    code, out = answer(capsys, words + ["--json"] * as_json)
-    if as_json and code < 2:
-        assert json.loads(out, parse_constant=refuse_constant)["command"] == "priors"
+    end_calmly(capsys, words, as_json=as_json)
 
 
 @given(st.integers(0, len(FILES) - 1), changes, st.booleans())
@@ -182,9 +183,7 @@ def test_taking_the_evidence_of_a_mutated_file_apart_ends_calmly(
     as_json: bool,
 ) -> None:
     words = ["ledger", str(hostile_file(folder, which, made)), "--orders", "2", "--pseudo-experiments", "200"]
-    code, out = answer(capsys, words + ["--json"] * as_json)
-    if as_json and code < 2:
-        assert json.loads(out, parse_constant=refuse_constant)["command"] == "ledger"
+    end_calmly(capsys, words, as_json=as_json)
 
 
 @given(st.integers(0, len(FILES) - 1), changes, st.sampled_from(["check", "fit"]), st.booleans())
@@ -200,10 +199,8 @@ def test_checking_and_fitting_a_mutated_file_end_calmly(
     as_json: bool,
 ) -> None:
     words = [command, str(hostile_file(folder, which, made))]
-    words += ["--pseudo-experiments", "200"] * (command == "check") + ["--json"] * as_json
-    code, out = answer(capsys, words)
-    if as_json and code < 2:
-        assert json.loads(out, parse_constant=refuse_constant)["command"] == command
+    words += ["--pseudo-experiments", "200"] * (command == "check")
+    end_calmly(capsys, words, as_json=as_json)
 
 
 ONCE = {

@@ -108,20 +108,7 @@ def number(option: str) -> Callable[[str], float]:
     Args:
         option: the option's name, for the problem.
     """
-
-    def read(text: str) -> float:
-        try:
-            value = float(text)
-        except ValueError:
-            value = math.nan
-        if not is_workable(value):
-            expected = "a number, such as 3 or -0.5"
-            raise InputError(
-                Problem(f"{option} is not a number", option, quoted(text), expected, f"{option} 3")
-            )
-        return value
-
-    return read
+    return _numbers(option, "a number", "a number, such as 3 or -0.5", "3", is_workable)
 
 
 def one_of(option: str, known: Sequence[str]) -> Callable[[str], str]:
@@ -154,25 +141,10 @@ def probability_between(option: str) -> Callable[[str], float]:
     Args:
         option: the option's name, for the problem.
     """
-
-    def read(text: str) -> float:
-        try:
-            number = float(text)
-        except ValueError:
-            number = math.nan
-        if not 1e-12 <= number <= 1.0 - 1e-12:
-            raise InputError(
-                Problem(
-                    f"{option} is not a probability between 0 and 1",
-                    option,
-                    quoted(text),
-                    "a number above 0 and below 1; 0.99 is ninety-nine per cent",
-                    f"{option} 0.99",
-                )
-            )
-        return number
-
-    return read
+    expected = "a number above 0 and below 1; 0.99 is ninety-nine per cent"
+    return _numbers(
+        option, "a probability between 0 and 1", expected, "0.99", lambda x: 1e-12 <= x <= 1.0 - 1e-12
+    )
 
 
 def relative_size(option: str) -> Callable[[str], float]:
@@ -181,22 +153,26 @@ def relative_size(option: str) -> Callable[[str], float]:
     Args:
         option: the option's name, for the problem.
     """
+    expected = "0, or 1e-100 to 1e6; 0.10 is ten per cent"
+    return _numbers(
+        option, "a relative size", expected, "0.10", lambda x: is_workable(x) and 0.0 <= x <= LARGEST_FACTOR
+    )
+
+
+def _numbers(
+    option: str, what: str, expected: str, example: str, is_allowed: Callable[[float], bool]
+) -> Callable[[str], float]:
+    """Return a reader of numbers of one kind; what is no number at all is not allowed either."""
 
     def read(text: str) -> float:
         try:
-            number = float(text)
+            value = float(text)
         except ValueError:
-            number = math.nan
-        if not (is_workable(number) and 0.0 <= number <= LARGEST_FACTOR):
+            value = math.nan
+        if not is_allowed(value):
             raise InputError(
-                Problem(
-                    f"{option} is not a relative size",
-                    option,
-                    quoted(text),
-                    "0, or 1e-100 to 1e6; 0.10 is ten per cent",
-                    f"{option} 0.10",
-                )
+                Problem(f"{option} is not {what}", option, quoted(text), expected, f"{option} {example}")
             )
-        return number
+        return value
 
     return read
