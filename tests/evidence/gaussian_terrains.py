@@ -8,8 +8,8 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special, stats
 
-from workbench.evidence.annealed_moves import LnLikelihood, Terrain
-from workbench.evidence.exchange import Involutions
+from workbench.evidence.annealing.exchange import Involutions
+from workbench.evidence.annealing.moves import LnLikelihood, Terrain
 
 Array = npt.NDArray[np.float64]
 

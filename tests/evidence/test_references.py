@@ -20,7 +20,7 @@ from tests.evidence.references.cases import SEED, TOTAL, case
 from tests.evidence.references.direct import Direct
 from tests.evidence.references.making import reference
 from tests.evidence.references.pulls import Answer, answered
-from workbench.evidence.proposal import Proposal
+from workbench.evidence.integral.proposal import Proposal
 from workbench.evidence.results import Weighing
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis

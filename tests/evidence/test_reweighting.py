@@ -9,7 +9,7 @@ import pytest
 from scipy import integrate as scipy_integrate
 
 from tests.analyses import counting
-from workbench.evidence.quadrature import integrate
+from workbench.evidence.integral.quadrature import integrate
 from workbench.evidence.reweighting import ln_change
 from workbench.hypotheses.file.reading import read_analysis
 from workbench.hypotheses.priors import Exponential, Gamma, HalfNormal, Prior, Uniform

@@ -23,8 +23,8 @@ from scipy import stats
 from tests.evidence.small_analyses import bump, counting, several_bins, source, templates
 from workbench.ensembles.drawing import draw_counts, draw_parameters
 from workbench.evidence import exact
-from workbench.evidence.quadrature import integrate
-from workbench.evidence.sampling import sample
+from workbench.evidence.integral.quadrature import integrate
+from workbench.evidence.integral.sampling import sample
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import Exponential, Gamma
 from workbench.likelihood.model import Model, compile_model

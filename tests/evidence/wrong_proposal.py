@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.proposal import Proposal
+from workbench.evidence.integral.proposal import Proposal
 
 Array = npt.NDArray[np.float64]
 

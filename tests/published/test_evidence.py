@@ -17,7 +17,7 @@ import pytest
 from scipy import integrate, special
 
 from tests.published.printed import Printed, of_topic
-from workbench.evidence.lattice import shifted_lattices
+from workbench.evidence.integral.lattice import shifted_lattices
 
 Array = npt.NDArray[np.float64]
 

@@ -9,7 +9,7 @@ import numpy.typing as npt
 from scipy import special
 
 from workbench.evidence.central import CENTRAL, Central
-from workbench.evidence.sampling import SCRAMBLES, Sample
+from workbench.evidence.integral.sampling import SCRAMBLES, Sample
 from workbench.evidence.weigh import Weighed
 
 Array = npt.NDArray[np.float64]

@@ -5,11 +5,11 @@ from __future__ import annotations
 import numpy as np
 
 from workbench.evidence.engines import LARGEST_ERROR, TOO_FAR_APART
-from workbench.evidence.nodes import LEAST_LN_HEIGHT
+from workbench.evidence.integral.nodes import LEAST_LN_HEIGHT
+from workbench.evidence.integral.pareto import largest_allowed
+from workbench.evidence.integral.quadrature import Grid
+from workbench.evidence.integral.sampling import Sample
 from workbench.evidence.other_maxima import OTHER_MAXIMUM, share_unreached
-from workbench.evidence.pareto import largest_allowed
-from workbench.evidence.quadrature import Grid
-from workbench.evidence.sampling import Sample
 
 # Beyond this k-hat sampling needs the quadrature, whose own error must then be below the next number.
 _CONFIRMED_ABOVE, _LARGEST_ROUGHNESS = 0.5, 0.5

@@ -12,7 +12,7 @@ from dataclasses import replace
 import numpy as np
 
 from workbench.errors import Caution, quoted
-from workbench.evidence.quadrature import Grid, integrate
+from workbench.evidence.integral.quadrature import Grid, integrate
 from workbench.evidence.results import Comparison
 from workbench.likelihood.model import Model
 

@@ -11,11 +11,11 @@ from dataclasses import replace
 import numpy as np
 
 from workbench.errors import InputError, Problem, nearest, quoted
-from workbench.evidence.annealed import anneal, most_evaluations, terrain_of
+from workbench.evidence.annealing.annealed import anneal, most_evaluations, terrain_of
 from workbench.evidence.drawn import Drawn
+from workbench.evidence.integral.pareto import largest_allowed
 from workbench.evidence.nested import sample_nested
 from workbench.evidence.other_maxima import OTHER_MAXIMUM
-from workbench.evidence.pareto import largest_allowed
 from workbench.evidence.results import Estimate, Evidence
 from workbench.likelihood.model import Model, never_filled
 

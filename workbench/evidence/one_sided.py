@@ -9,8 +9,8 @@ import numpy as np
 
 from workbench.counts.magnitudes import is_workable
 from workbench.errors import Caution, quoted
-from workbench.evidence.quadrature import Grid, integrate
-from workbench.evidence.sampling import sample
+from workbench.evidence.integral.quadrature import Grid, integrate
+from workbench.evidence.integral.sampling import sample
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.likelihood.model import compile_model

@@ -13,9 +13,9 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.nodes import laplace
-from workbench.evidence.proposal import propose
-from workbench.evidence.quadrature import Grid
+from workbench.evidence.integral.nodes import laplace
+from workbench.evidence.integral.proposal import propose
+from workbench.evidence.integral.quadrature import Grid
 from workbench.hypotheses.processes import Process
 from workbench.hypotheses.shapes import Template
 from workbench.hypotheses.uncertainties import Effect, Uncertainty, curvature

@@ -10,7 +10,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.quadrature import Grid
+from workbench.evidence.integral.quadrature import Grid
 from workbench.hypotheses.priors import Prior
 
 Array = npt.NDArray[np.float64]

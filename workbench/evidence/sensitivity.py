@@ -9,7 +9,7 @@ from workbench.evidence.drawn import Drawn
 from workbench.evidence.draws_reweighted import ln_change_of_draws
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
-from workbench.evidence.quadrature import Grid, integrate, integrate_again
+from workbench.evidence.integral.quadrature import Grid, integrate, integrate_again
 from workbench.evidence.results import Evidence, ScaledPrior
 from workbench.evidence.reweighting import ln_change
 from workbench.hypotheses.priors import Prior

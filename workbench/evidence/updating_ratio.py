@@ -13,7 +13,7 @@ import numpy as np
 
 from workbench.errors import InputError, Problem, quoted
 from workbench.evidence.averaging import variant_seed
-from workbench.evidence.quadrature import integrate
+from workbench.evidence.integral.quadrature import integrate
 from workbench.evidence.ratio.asking import chosen_hypothesis, refuse_strangers
 from workbench.evidence.ratio.averages import averaged
 from workbench.evidence.ratio.building import MOST_COLUMNS, build, first_panels

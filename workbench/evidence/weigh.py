@@ -10,21 +10,21 @@ import numpy.typing as npt
 
 from workbench.errors import Caution, InputError, Problem, quoted
 from workbench.evidence.agreement import doubt
+from workbench.evidence.annealing.exchange import like_signal_cautions
 from workbench.evidence.averaging import weigh_variants
 from workbench.evidence.drawn import Drawn
 from workbench.evidence.empty_bins import empty_bin_cautions
 from workbench.evidence.engines import AUTO, answered, refuse_unknown
 from workbench.evidence.exact import linear_rates
 from workbench.evidence.exact import ln_evidence as exact_ln_evidence
-from workbench.evidence.exchange import like_signal_cautions
+from workbench.evidence.integral.nodes import LEAST_LN_HEIGHT
+from workbench.evidence.integral.quadrature import Grid, integrate
+from workbench.evidence.integral.ridge import MOST_FOLLOWED
+from workbench.evidence.integral.sampling import Sample, sampled
 from workbench.evidence.mis_modelling import mis_modelling_cautions
-from workbench.evidence.nodes import LEAST_LN_HEIGHT
 from workbench.evidence.odds import compare, posteriors
 from workbench.evidence.one_sided import one_sided_cautions
-from workbench.evidence.quadrature import Grid, integrate
 from workbench.evidence.results import Estimate, Evidence, Weighing
-from workbench.evidence.ridge import MOST_FOLLOWED
-from workbench.evidence.sampling import Sample, sampled
 from workbench.evidence.sensitivity import sensitivities
 from workbench.hypotheses.alternatives import in_doubt
 from workbench.hypotheses.analysis import Analysis

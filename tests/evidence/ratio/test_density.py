@@ -14,10 +14,10 @@ from tests.evidence.small_analyses import YIELD, bump, counting
 from workbench.ensembles.strengths import weighted_quantiles
 from workbench.errors import InputError
 from workbench.evidence.central import CENTRAL
+from workbench.evidence.integral.sampling import SCRAMBLES
 from workbench.evidence.ratio.at_once import AtOnce
 from workbench.evidence.ratio.density import Density
 from workbench.evidence.ratio.results import Scan
-from workbench.evidence.sampling import SCRAMBLES
 from workbench.evidence.updating_ratio import scan
 from workbench.evidence.weigh import weigh_hypothesis
 from workbench.hypotheses.analysis import Parameter

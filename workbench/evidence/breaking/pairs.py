@@ -11,7 +11,7 @@ import numpy.typing as npt
 from workbench.evidence.breaking.question import Question
 from workbench.evidence.breaking.trials import Anchor, draws_of
 from workbench.evidence.exact import linear_rates
-from workbench.evidence.quadrature import integrate
+from workbench.evidence.integral.quadrature import integrate
 from workbench.evidence.weigh import Weighed, weigh_hypothesis
 from workbench.likelihood.distortions import held_distortion, nominal_background
 from workbench.likelihood.model import Model

@@ -15,11 +15,11 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.lattice import shifted_lattices
+from workbench.evidence.integral.lattice import shifted_lattices
+from workbench.evidence.integral.proposal import Proposal, propose
+from workbench.evidence.integral.quadrature import Grid, integrate
+from workbench.evidence.integral.sampling import SCRAMBLES, sample
 from workbench.evidence.ledger.annealing import annealed
-from workbench.evidence.proposal import Proposal, propose
-from workbench.evidence.quadrature import Grid, integrate
-from workbench.evidence.sampling import SCRAMBLES, sample
 from workbench.likelihood.laws import bin_ln_probability
 from workbench.likelihood.model import Model, compile_model
 from workbench.likelihood.objective import values_at_once

@@ -7,9 +7,9 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.integral.pareto import k_hat
+from workbench.evidence.integral.sampling import SCRAMBLES
 from workbench.evidence.ledger.bridge import Bridge
-from workbench.evidence.pareto import k_hat
-from workbench.evidence.sampling import SCRAMBLES
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]

@@ -7,11 +7,11 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.integral.pareto import k_hat, largest_allowed
+from workbench.evidence.integral.sampling import SCRAMBLES
 from workbench.evidence.ledger.chain import sampling_errors
 from workbench.evidence.ledger.results import AFRESH, EXACT, REWEIGHTED
-from workbench.evidence.pareto import k_hat, largest_allowed
 from workbench.evidence.results import Evidence
-from workbench.evidence.sampling import SCRAMBLES
 
 Array = npt.NDArray[np.float64]
 

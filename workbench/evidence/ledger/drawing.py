@@ -7,10 +7,10 @@ from collections.abc import Sequence
 import numpy as np
 import numpy.typing as npt
 
+from workbench.evidence.integral.sampling import SCRAMBLES
 from workbench.evidence.ledger.bridge import Bridge, bridge, exact_bridge, mixed
 from workbench.evidence.ledger.chain import Chain, chain, sampling_errors
 from workbench.evidence.ledger.members import Member
-from workbench.evidence.sampling import SCRAMBLES
 
 Indices = npt.NDArray[np.intp]
 

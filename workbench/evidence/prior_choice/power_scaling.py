@@ -8,11 +8,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.pareto import k_hat, largest_allowed
+from workbench.evidence.integral.pareto import k_hat, largest_allowed
+from workbench.evidence.integral.sampling import SCRAMBLES
 from workbench.evidence.prior_choice.distance import cumulative_distance
 from workbench.evidence.prior_choice.power import powered
 from workbench.evidence.prior_choice.powers import Driver, PowerChange, PowerScaling
-from workbench.evidence.sampling import SCRAMBLES
 from workbench.evidence.weigh import Weighed, weigh_hypothesis
 from workbench.hypotheses.priors import Prior
 from workbench.likelihood.model import Model

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.axes import lay_out
+from workbench.evidence.integral.axes import lay_out
 from workbench.evidence.ratio.held import FAILED, Held, Holder, Response
 from workbench.evidence.ratio.panels import ORDER, Panels
 from workbench.evidence.ratio.strengths import Strengths, between, doubt_between

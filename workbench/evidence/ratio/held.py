@@ -14,13 +14,13 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.bending import following
-from workbench.evidence.lattice import shifted_lattices
-from workbench.evidence.matrices import upper_roots
-from workbench.evidence.nodes import Integrand, laplace
-from workbench.evidence.quadrature import Grid
-from workbench.evidence.search import Landscape, signal_events, survey
-from workbench.evidence.stretching import stretch_for
+from workbench.evidence.integral.bending import following
+from workbench.evidence.integral.lattice import shifted_lattices
+from workbench.evidence.integral.matrices import upper_roots
+from workbench.evidence.integral.nodes import Integrand, laplace
+from workbench.evidence.integral.quadrature import Grid
+from workbench.evidence.integral.search import Landscape, signal_events, survey
+from workbench.evidence.integral.stretching import stretch_for
 from workbench.hypotheses.priors import Uniform
 from workbench.likelihood.model import Model
 from workbench.likelihood.objective import values_at_once

@@ -6,7 +6,7 @@ import numpy as np
 import numpy.typing as npt
 import pytest
 
-from workbench.evidence.lattice import shifted_lattices
+from workbench.evidence.integral.lattice import shifted_lattices
 
 Array = npt.NDArray[np.float64]
 

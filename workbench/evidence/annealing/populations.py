@@ -15,9 +15,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.annealed_moves import CHOICES, CYCLE, Chains, Dice, Rung, Terrain, adapted, step
-from workbench.evidence.cloud import cloud
-from workbench.evidence.marginals import marginals
+from workbench.evidence.annealing.cloud import cloud
+from workbench.evidence.annealing.marginals import marginals
+from workbench.evidence.annealing.moves import CHOICES, CYCLE, Chains, Dice, Rung, Terrain, adapted, step
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]

@@ -8,11 +8,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.axes import Axis, lay_out, standard
-from workbench.evidence.bending import Bending
-from workbench.evidence.departure import Departure, departure
-from workbench.evidence.nodes import Columns, Integrand
-from workbench.evidence.search import survey
+from workbench.evidence.integral.axes import Axis, lay_out, standard
+from workbench.evidence.integral.bending import Bending
+from workbench.evidence.integral.departure import Departure, departure
+from workbench.evidence.integral.nodes import Columns, Integrand
+from workbench.evidence.integral.search import survey
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]

@@ -12,16 +12,16 @@ import pytest
 from tests.evidence.brute_force import ln_evidence, standard_normal, under
 from tests.evidence.gaussian_terrains import bells, ridge
 from tests.evidence.small_analyses import TAU, YIELD, counting, several_bins, source, templates
-from workbench.evidence import annealed_moves
-from workbench.evidence.annealed import (
+from workbench.evidence.annealing import moves
+from workbench.evidence.annealing.annealed import (
     POPULATIONS,
     anneal,
     disagreement,
     most_evaluations,
     terrain_of,
 )
-from workbench.evidence.annealed_moves import Dice, Rung, Terrain
-from workbench.evidence.annealed_populations import ascend, next_change, scout
+from workbench.evidence.annealing.moves import Dice, Rung, Terrain
+from workbench.evidence.annealing.populations import ascend, next_change, scout
 from workbench.evidence.drawn import Drawn, widened
 from workbench.evidence.formulas import closed_forms, count_mixtures
 from workbench.hypotheses.analysis import Analysis
@@ -165,12 +165,12 @@ def test_the_error_between_populations_is_the_error(name: str) -> None:
 @pytest.mark.slow
 def test_a_careless_move_breaks_the_calibration(monkeypatch: pytest.MonkeyPatch) -> None:
     """The negative control of the engine itself: redrawing that forgets its own density."""
-    fair = annealed_moves._PROPOSALS["redraw"]
+    fair = moves._PROPOSALS["redraw"]
 
     def careless(points: Array, dice: Dice, rung: Rung, terrain: Terrain) -> tuple[Array, Array]:
         return fair(points, dice, rung, terrain)[0], np.zeros(points.shape[:2])
 
-    monkeypatch.setitem(annealed_moves._PROPOSALS, "redraw", careless)
+    monkeypatch.setitem(moves._PROPOSALS, "redraw", careless)
     terrain, exact = CASES["one narrow bell"]()
     found = [anneal(terrain, np.random.SeedSequence((7, seed)), wanted_error=0.1) for seed in range(12)]
     assert abs(np.mean([(one.ln_evidence - exact) / one.error for one in found])) > 4.0 / np.sqrt(12)

@@ -12,7 +12,7 @@ from scipy import special, stats
 
 from tests.evidence.brute_force import ln_evidence, standard_normal, under
 from tests.evidence.small_analyses import YIELD, bump, counting, several_bins, source, templates
-from workbench.evidence.quadrature import Grid, integrate
+from workbench.evidence.integral.quadrature import Grid, integrate
 from workbench.evidence.weigh import weigh
 from workbench.hypotheses.analysis import Analysis, Hypothesis
 from workbench.hypotheses.priors import Exponential, Gamma, HalfNormal, LogNormal, Prior, Uniform

@@ -11,10 +11,10 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.annealed_moves import Terrain
-from workbench.evidence.annealed_populations import STEPS, Populations, ascend, scout
+from workbench.evidence.annealing.exchange import blocks, groups, involutions
+from workbench.evidence.annealing.moves import Terrain
+from workbench.evidence.annealing.populations import STEPS, Populations, ascend, scout
 from workbench.evidence.drawn import Drawn, nothing_drawn, widened
-from workbench.evidence.exchange import blocks, groups, involutions
 from workbench.hypotheses.priors import Beta, Gamma
 from workbench.likelihood.model import Model
 from workbench.likelihood.objective import values_at_once
@@ -64,7 +64,7 @@ def anneal(
         elements in the range; a needle in several dimensions at once that nothing leads to is not.
 
     Source:
-        See `annealed_populations.ascend`.
+        See `populations.ascend`.
     """
     least = _FIRST_ROUNDS * POPULATIONS * _FIRST_CHAINS * STEPS
     if most < least:

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.piecewise import between, distribution, draw
+from workbench.evidence.integral.piecewise import between, distribution, draw
 from workbench.likelihood.newton import maximise
 from workbench.likelihood.objective import Objective
 

@@ -17,13 +17,13 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.axes import Axis, standard
-from workbench.evidence.bending import RidgeMap, TriangularMap, following
-from workbench.evidence.matrices import grouped, unwhitened, upper_roots
-from workbench.evidence.piecewise import between, draw, hat_areas, taken
-from workbench.evidence.quadrature import Grid
-from workbench.evidence.responses import responses
-from workbench.evidence.stretching import Stretch, stretch_for
+from workbench.evidence.integral.axes import Axis, standard
+from workbench.evidence.integral.bending import RidgeMap, TriangularMap, following
+from workbench.evidence.integral.matrices import grouped, unwhitened, upper_roots
+from workbench.evidence.integral.piecewise import between, draw, hat_areas, taken
+from workbench.evidence.integral.quadrature import Grid
+from workbench.evidence.integral.responses import responses
+from workbench.evidence.integral.stretching import Stretch, stretch_for
 
 Array = npt.NDArray[np.float64]
 Indices = npt.NDArray[np.intp]

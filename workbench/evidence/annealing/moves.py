@@ -12,9 +12,9 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.cloud import Cloud
-from workbench.evidence.exchange import Involutions
-from workbench.evidence.marginals import Marginals
+from workbench.evidence.annealing.cloud import Cloud
+from workbench.evidence.annealing.exchange import Involutions
+from workbench.evidence.annealing.marginals import Marginals
 
 Array = npt.NDArray[np.float64]
 Flags = npt.NDArray[np.bool_]

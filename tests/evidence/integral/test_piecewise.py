@@ -7,7 +7,7 @@ import numpy.typing as npt
 import pytest
 from scipy import integrate, stats
 
-from workbench.evidence.piecewise import between, draw, hat_areas
+from workbench.evidence.integral.piecewise import between, draw, hat_areas
 
 Array = npt.NDArray[np.float64]
 

@@ -5,8 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from tests.evidence.small_analyses import bump
-from workbench.evidence.quadrature import integrate
-from workbench.evidence.responses import responses
+from workbench.evidence.integral.quadrature import integrate
+from workbench.evidence.integral.responses import responses
 from workbench.hypotheses.uncertainties import Effect, Uncertainty
 from workbench.likelihood.model import compile_model
 from workbench.likelihood.objective import StandardObjective

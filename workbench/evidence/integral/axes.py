@@ -12,7 +12,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.search import Landscape, signal_events
+from workbench.evidence.integral.search import Landscape, signal_events
 from workbench.likelihood.model import Model
 
 Array = npt.NDArray[np.float64]

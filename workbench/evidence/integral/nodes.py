@@ -13,8 +13,8 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.outlook import DEEP, Outlook
-from workbench.evidence.search import Landscape, signal_events
+from workbench.evidence.integral.outlook import DEEP, Outlook
+from workbench.evidence.integral.search import Landscape, signal_events
 from workbench.likelihood.model import Model
 from workbench.likelihood.newton import Maxima, maximise
 from workbench.likelihood.objective import StandardObjective, rows_at_once

@@ -7,10 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.lattice import shifted_lattices
-from workbench.evidence.pareto import k_hat
-from workbench.evidence.proposal import Proposal, propose
-from workbench.evidence.quadrature import Grid
+from workbench.evidence.integral.lattice import shifted_lattices
+from workbench.evidence.integral.pareto import k_hat
+from workbench.evidence.integral.proposal import Proposal, propose
+from workbench.evidence.integral.quadrature import Grid
 from workbench.likelihood.objective import values_at_once
 
 Array = npt.NDArray[np.float64]

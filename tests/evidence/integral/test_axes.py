@@ -8,9 +8,16 @@ import pytest
 from scipy import special
 
 from tests.evidence.small_analyses import bump
-from workbench.evidence.axes import GAUSS_WEIGHTS, KRONROD_NODES, KRONROD_WEIGHTS, Axis, lay_out, standard
-from workbench.evidence.quadrature import integrate
-from workbench.evidence.search import survey
+from workbench.evidence.integral.axes import (
+    GAUSS_WEIGHTS,
+    KRONROD_NODES,
+    KRONROD_WEIGHTS,
+    Axis,
+    lay_out,
+    standard,
+)
+from workbench.evidence.integral.quadrature import integrate
+from workbench.evidence.integral.search import survey
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import LogUniform, Normal, Prior, Uniform
 from workbench.likelihood.model import Model, compile_model

@@ -8,7 +8,7 @@ import numpy as np
 
 from tests.evidence.resonances import resonances
 from tests.evidence.small_analyses import bump, counting, source
-from workbench.evidence.exchange import (
+from workbench.evidence.annealing.exchange import (
     blocks,
     groups,
     interchangeable,

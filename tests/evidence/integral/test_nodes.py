@@ -9,8 +9,8 @@ import numpy.typing as npt
 import pytest
 
 from tests.evidence.small_analyses import bump, counting, several_bins, source, templates
-from workbench.evidence.nodes import INNER_NODES, Columns, Integrand, laplace
-from workbench.evidence.search import survey
+from workbench.evidence.integral.nodes import INNER_NODES, Columns, Integrand, laplace
+from workbench.evidence.integral.search import survey
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import Exponential, HalfNormal, Prior, Uniform
 from workbench.likelihood.model import compile_model

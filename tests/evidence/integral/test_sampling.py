@@ -12,12 +12,12 @@ from scipy import special
 from tests.evidence.brute_force import ln_evidence, standard_normal, under
 from tests.evidence.small_analyses import TAU, YIELD, bump, counting, several_bins, source, templates
 from tests.evidence.wrong_proposal import Wrong
-from workbench.evidence import sampling
 from workbench.evidence.formulas import closed_forms
-from workbench.evidence.pareto import largest_allowed
-from workbench.evidence.proposal import propose
-from workbench.evidence.quadrature import Grid, integrate
-from workbench.evidence.sampling import SCRAMBLES, Sample, sample
+from workbench.evidence.integral import sampling
+from workbench.evidence.integral.pareto import largest_allowed
+from workbench.evidence.integral.proposal import propose
+from workbench.evidence.integral.quadrature import Grid, integrate
+from workbench.evidence.integral.sampling import SCRAMBLES, Sample, sample
 from workbench.evidence.weigh import weigh, weigh_hypothesis
 from workbench.hypotheses.analysis import Analysis
 from workbench.hypotheses.priors import Exponential, Gamma, Uniform

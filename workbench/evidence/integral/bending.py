@@ -17,7 +17,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
-from workbench.evidence.ridge import Ridge
+from workbench.evidence.integral.ridge import Ridge
 
 Array = npt.NDArray[np.float64]
 

@@ -7,8 +7,8 @@ import numpy.typing as npt
 import pytest
 
 from tests.evidence.resonances import expected, ln_evidences, resonances
-from workbench.evidence import annealed
-from workbench.evidence.annealed import anneal, terrain_of
+from workbench.evidence.annealing import annealed
+from workbench.evidence.annealing.annealed import anneal, terrain_of
 from workbench.likelihood.model import compile_model
 
 Array = npt.NDArray[np.float64]

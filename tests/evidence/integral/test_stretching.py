@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy import integrate
 
-from workbench.evidence.stretching import Stretch, stretch_for
+from workbench.evidence.integral.stretching import Stretch, stretch_for
 
 
 @pytest.mark.parametrize("b", [0.0, 0.05, 0.1])

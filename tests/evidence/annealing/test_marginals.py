@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from scipy import integrate, stats
 
-from workbench.evidence.marginals import Marginals, marginals
+from workbench.evidence.annealing.marginals import Marginals, marginals
 
 GENERATOR = np.random.default_rng(41)
 

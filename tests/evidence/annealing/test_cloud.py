@@ -6,7 +6,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import stats
 
-from workbench.evidence.cloud import Cloud, cloud
+from workbench.evidence.annealing.cloud import Cloud, cloud
 
 Array = npt.NDArray[np.float64]
 

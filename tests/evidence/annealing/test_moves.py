@@ -9,10 +9,10 @@ import numpy.typing as npt
 import pytest
 
 from tests.evidence.gaussian_terrains import bells
-from workbench.evidence import annealed_moves
-from workbench.evidence.annealed_moves import CHOICES, CYCLE, Chains, Dice, Rung, Terrain, step
-from workbench.evidence.cloud import cloud
-from workbench.evidence.marginals import marginals
+from workbench.evidence.annealing import moves
+from workbench.evidence.annealing.cloud import cloud
+from workbench.evidence.annealing.marginals import marginals
+from workbench.evidence.annealing.moves import CHOICES, CYCLE, Chains, Dice, Rung, Terrain, step
 
 Array = npt.NDArray[np.float64]
 
@@ -92,21 +92,21 @@ def test_a_move_brings_what_is_elsewhere_nearer_to_its_target(kind: str) -> None
 def test_a_proposal_whose_own_density_is_forgotten_would_be_seen(
     kind: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    fair = annealed_moves._PROPOSALS[kind]
+    fair = moves._PROPOSALS[kind]
 
     def careless(points: Array, dice: Dice, rung: Rung, terrain: Terrain) -> tuple[Array, Array]:
         proposed, _ = fair(points, dice, rung, terrain)
         return proposed, np.zeros(points.shape[:2])
 
-    monkeypatch.setitem(annealed_moves._PROPOSALS, kind, careless)
+    monkeypatch.setitem(moves._PROPOSALS, kind, careless)
     assert np.abs(deviations(moved(kind, MEAN)[0])).max() > 5.0
 
 
 def test_sizes_grow_where_too_much_is_accepted_and_shrink_where_too_little_is() -> None:
-    grown = annealed_moves.adapted((0.5, 0.5), {"follow": 0.9, "stride": 0.9})
-    shrunk = annealed_moves.adapted((0.5, 0.5), {"follow": 0.0, "stride": 0.0})
+    grown = moves.adapted((0.5, 0.5), {"follow": 0.9, "stride": 0.9})
+    shrunk = moves.adapted((0.5, 0.5), {"follow": 0.0, "stride": 0.0})
     assert min(grown) > 0.5 > max(shrunk)
-    assert annealed_moves.adapted((0.98, 2.0), {"follow": 1.0, "stride": 1.0}) == (0.98, 2.0)
+    assert moves.adapted((0.98, 2.0), {"follow": 1.0, "stride": 1.0}) == (0.98, 2.0)
 
 
 def test_a_move_to_where_nothing_is_possible_is_refused() -> None:

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy import stats
 
-from workbench.evidence.pareto import k_hat, largest_allowed
+from workbench.evidence.integral.pareto import k_hat, largest_allowed
 
 
 def spread_of_k(shape: float, draws: int) -> float:

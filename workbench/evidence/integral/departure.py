@@ -11,9 +11,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
-from workbench.evidence.bending import Bending, bending, partial_bending
-from workbench.evidence.nodes import Columns, Integrand
-from workbench.evidence.ridge import Turned, follow
+from workbench.evidence.integral.bending import Bending, bending, partial_bending
+from workbench.evidence.integral.nodes import Columns, Integrand
+from workbench.evidence.integral.ridge import Turned, follow
 
 Array = npt.NDArray[np.float64]
 

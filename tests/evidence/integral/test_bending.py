@@ -9,7 +9,7 @@ import numpy.typing as npt
 import pytest
 from scipy import special
 
-from workbench.evidence.bending import Bending, bending, following, partial_bending
+from workbench.evidence.integral.bending import Bending, bending, following, partial_bending
 
 Array = npt.NDArray[np.float64]
 

@@ -1,0 +1,1 @@
+"""The integral over signal and nuisance coordinates: quadrature with Laplace, and draws that correct it."""
