@@ -197,3 +197,21 @@ def test_the_error_reported_is_reached_with_more_draws_where_the_first_are_too_f
     (_, evidence) = weigh(bump(np.round(CONTINUUM), uncertainties=(source("size", continuum=0.3),))).evidences
     assert evidence.error is not None
     assert evidence.error <= 0.005
+
+
+@pytest.mark.parametrize("shape", [0.45, 0.65])
+def test_an_error_grows_with_the_weight_of_the_tail_it_was_told_by(shape: float) -> None:
+    """Weights u^-k of uniform u have the mean 1/(1 - k), and from k = 1/2 no variance.
+
+    Their spread alone tells too small an error. 400 repeats: the root mean square of pulls has an error of
+    0.05 or so where they are nearly normal.
+    """
+    generator = np.random.default_rng(3)
+    grown, plain = [], []
+    for _ in range(400):
+        found = sampling._summary(np.zeros((2048, 1)), -shape * np.log(generator.random(2048)))
+        pull = (found.ln_evidence + np.log(1.0 - shape)) / found.error
+        grown.append(pull)
+        plain.append(pull * (1.0 + 3.0 * min(max(found.k_hat - 0.25, 0.0), 1.0)))
+    assert 0.7 < np.sqrt(np.mean(np.square(grown))) < 1.2
+    assert np.sqrt(np.mean(np.square(plain))) > 1.15
