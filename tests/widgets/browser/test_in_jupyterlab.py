@@ -182,34 +182,38 @@ class TestInJupyterLab:
     def test_no_key_pressed_inside_reaches_the_notebook(self, notebook: Notebook) -> None:
         """`d d` on a button deleted the cell that held the bench."""
         page, cells, active = notebook.page, notebook.cells(), notebook.active_cell()
-        for inside in [page.get_by_role("button", name="Break"), picture(notebook), slider(notebook)]:
+        for inside in [
+            page.get_by_role("button", name="Break", exact=True),
+            picture(notebook),
+            slider(notebook),
+        ]:
             inside.focus()
             for key in ["d", "d", "b", "x", "ArrowDown", "ArrowUp", "Shift+Enter", "Control+Enter"]:
                 page.keyboard.press(key)
         assert (notebook.cells(), notebook.active_cell()) == (cells, active)
-        page.get_by_role("button", name="Unprotected").focus()
+        page.get_by_role("button", name="Unprotected", exact=True).focus()
         page.keyboard.press("d")
         page.keyboard.press("d")
         eventually(lambda: notebook.cells() == cells - 1)  # so the test can fail
 
     def test_what_a_callback_raises_or_prints_is_shown_and_can_be_dismissed(self, notebook: Notebook) -> None:
         page = notebook.page
-        page.get_by_role("button", name="Dismiss").click()  # the keys above pressed Break
-        page.get_by_role("button", name="Break").click()
+        page.get_by_role("button", name="Dismiss", exact=True).click()  # the keys above pressed Break
+        page.get_by_role("button", name="Break", exact=True).click()
         page.get_by_role("alert").filter(has_text="ZeroDivisionError: division by zero").wait_for()
-        page.get_by_role("button", name="Talk").click()
+        page.get_by_role("button", name="Talk", exact=True).click()
         page.get_by_text("said aside").wait_for()
         look_at(notebook, "errors")
-        page.get_by_role("button", name="Dismiss").click()
+        page.get_by_role("button", name="Dismiss", exact=True).click()
         page.get_by_text("said aside").wait_for(state="hidden")
 
     def test_cancel_works_while_it_computes_and_so_does_the_slider(self, notebook: Notebook) -> None:
         page = notebook.page
-        page.get_by_role("button", name="Long run").click()
+        page.get_by_role("button", name="Long run", exact=True).click()
         page.get_by_text("50 %").wait_for()
         took = [move(notebook, "ArrowLeft") for _ in range(5)]
         look_at(notebook, "computing")
-        page.get_by_role("button", name="Cancel").click()
+        page.get_by_role("button", name="Cancel", exact=True).click()
         page.get_by_text("Cancelled: a long run").wait_for()
         stopped = seen(notebook, "cancelled")[0] - seen(notebook, "pressed")[-1]
         print(f"while computing: slider {np.median(took):.0f} ms, Cancel {stopped:.0f} ms")
@@ -218,7 +222,7 @@ class TestInJupyterLab:
 
     def test_while_the_next_is_computed_the_last_picture_is_grey_and_named(self, notebook: Notebook) -> None:
         page = notebook.page
-        page.get_by_role("button", name="busy").click()
+        page.get_by_role("button", name="busy", exact=True).click()
         slider(notebook).press("ArrowRight")
         page.get_by_text("Still shown: strength 1.75").wait_for()
         eventually(lambda: float(opacity(notebook)) < 0.5)
@@ -226,7 +230,7 @@ class TestInJupyterLab:
         eventually(lambda: alt_is(notebook, 1.8))
         page.get_by_text("Still shown").wait_for(state="hidden")
         assert float(opacity(notebook)) == 1.0
-        page.get_by_role("button", name="calm").click()
+        page.get_by_role("button", name="calm", exact=True).click()
         move(notebook, "ArrowLeft")
 
     def test_the_picture_follows_the_theme(self, notebook: Notebook) -> None:
@@ -240,7 +244,7 @@ class TestInJupyterLab:
 
     def test_a_page_loaded_again_shows_the_state_and_goes_on(self, notebook: Notebook) -> None:
         page = notebook.page
-        page.get_by_role("button", name="Long run").click()
+        page.get_by_role("button", name="Long run", exact=True).click()
         page.get_by_text("50 %").wait_for()
         notebook.save()
         notebook.reload()
@@ -250,7 +254,7 @@ class TestInJupyterLab:
         assert slider(notebook).get_attribute("aria-valuetext") == "1.75"
         move(notebook, "ArrowRight")
         eventually(lambda: alt_is(notebook, 1.8))
-        page.get_by_role("button", name="Cancel").click()
+        page.get_by_role("button", name="Cancel", exact=True).click()
         page.get_by_text("Cancelled: a long run").wait_for()
 
     def test_the_console_and_the_error_line_stayed_clean(self, notebook: Notebook) -> None:
