@@ -10,6 +10,7 @@ from workbench.evidence.integral.pareto import largest_allowed
 from workbench.evidence.integral.quadrature import Grid
 from workbench.evidence.integral.sampling import Sample
 from workbench.evidence.other_maxima import OTHER_MAXIMUM, share_unreached
+from workbench.evidence.results import largest_gap
 
 # Beyond this k-hat sampling needs the quadrature, whose own error must then be below the next number.
 _CONFIRMED_ABOVE, _LARGEST_ROUGHNESS = 0.5, 0.5
@@ -46,7 +47,7 @@ def _disagreement(grid: Grid, drawn: Sample) -> str:
             "quadrature can't confirm them"
         )
     gap = abs(grid.ln_evidence - drawn.ln_evidence)
-    limit = 0.05 + 3.0 * float(np.hypot(grid.error, drawn.error))
+    limit = largest_gap(grid.error, drawn.error)
     if not gap <= limit:
         return f"quadrature and sampling differ by {gap:.2g}, more than {limit:.2g}"
     return ""

@@ -16,13 +16,12 @@ from workbench.evidence.drawn import Drawn
 from workbench.evidence.integral.pareto import largest_allowed
 from workbench.evidence.nested import sample_nested
 from workbench.evidence.other_maxima import OTHER_MAXIMUM
-from workbench.evidence.results import Estimate, Evidence
-from workbench.likelihood.model import Model, never_filled
+from workbench.evidence.results import Estimate, Evidence, largest_gap
+from workbench.likelihood.model import Model, impossible_bins
 
 AUTO, STANDARD, ANNEALED, NESTED = "auto", "standard", "annealed", "nested"
 ENGINES = (AUTO, STANDARD, ANNEALED, NESTED)
 LARGEST_ERROR = 0.1
-ALLOWED_GAP = 0.05
 TOO_FAR_APART = "its numbers are too far apart for double precision"  # whatever the engine
 _BY_NAME = 20  # times as many evaluations where annealing was asked for
 _CHILD = {ANNEALED: 1_000_001, NESTED: 1_000_002}  # no other child of a hypothesis' seed
@@ -69,7 +68,7 @@ def answered(
     """
     is_final = standard.established or standard.reason == TOO_FAR_APART
     is_settled = engine == STANDARD or (engine == AUTO and is_final)
-    if is_settled or model.observed is None or model.size == 0 or _is_impossible(model):
+    if is_settled or model.observed is None or model.size == 0 or impossible_bins(model).any():
         return standard, None
     which = ANNEALED if engine == AUTO else engine
     own = np.random.SeedSequence(seed.entropy, spawn_key=(*seed.spawn_key, _CHILD[which]))
@@ -149,15 +148,9 @@ def is_in_order(estimate: Estimate) -> bool:
 def agree(first: Estimate, second: Estimate) -> bool:
     """Tell whether two estimates lie within 0.05 and three of their combined errors."""
     gap = abs(first.ln_evidence - second.ln_evidence)
-    return gap <= ALLOWED_GAP + 3.0 * float(np.hypot(first.error, second.error))
+    return gap <= largest_gap(first.error, second.error)
 
 
 def _first_part(reason: str) -> str:
     """Return a reason without the advice that follows it."""
     return reason.split("; ", maxsplit=1)[0]
-
-
-def _is_impossible(model: Model) -> bool:
-    if model.observed is None:
-        return True
-    return bool((never_filled(model) & (model.observed > 0.0) & (model.spare == 0.0)).any())

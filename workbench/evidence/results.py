@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 from workbench.errors import Caution
@@ -170,3 +171,12 @@ class Weighing:
     def evidence_of(self, hypothesis: str) -> Evidence:
         """Return the evidence of the hypothesis of that name."""
         return next(one for one in self.evidences if one.hypothesis == hypothesis)
+
+
+def largest_gap(*errors: float | None) -> float:
+    """Return how far two answers to one question may lie apart: 0.05 and three of their combined errors.
+
+    Args:
+        errors: one standard error of each [nats]; None for an exact one.
+    """
+    return 0.05 + 3.0 * math.hypot(*(error or 0.0 for error in errors))

@@ -28,7 +28,7 @@ from workbench.evidence.results import Estimate, Evidence, Weighing
 from workbench.evidence.sensitivity import sensitivities
 from workbench.hypotheses.alternatives import in_doubt
 from workbench.hypotheses.analysis import Analysis
-from workbench.likelihood.model import Model, compile_model, never_filled
+from workbench.likelihood.model import Model, compile_model, impossible_bins
 
 Array = npt.NDArray[np.float64]
 
@@ -179,7 +179,7 @@ def weigh_hypothesis(
         InputError: if a region has no observed counts.
     """
     counts = observed_counts(model)
-    impossible = never_filled(model) & (counts > 0.0) & (model.spare == 0.0)
+    impossible = impossible_bins(model)
     if impossible.any():
         return Weighed(model, _impossible(model, impossible))
     if model.size == 0:

@@ -276,3 +276,10 @@ def never_filled(model: Model) -> npt.NDArray[np.bool_]:
     spread = np.linspace(-2.0, 2.0, 5)[:, None] * np.ones(model.size)
     total, _ = model.expected(model.seeds(spread))
     return np.asarray((total == 0.0).all(axis=0))
+
+
+def impossible_bins(model: Model) -> npt.NDArray[np.bool_]:
+    """Return (bin,) True where events were observed that no tried parameter value can produce."""
+    if model.observed is None:
+        return np.zeros(model.bins, dtype=bool)
+    return np.asarray(never_filled(model) & (model.observed > 0.0) & (model.spare == 0.0))

@@ -15,6 +15,7 @@ from workbench.evidence.annealing.exchange import blocks, groups, involutions
 from workbench.evidence.annealing.moves import Terrain
 from workbench.evidence.annealing.populations import STEPS, Populations, ascend, scout
 from workbench.evidence.drawn import Drawn, nothing_drawn, widened
+from workbench.evidence.results import largest_gap
 from workbench.hypotheses.priors import Beta, Gamma
 from workbench.likelihood.model import Model
 from workbench.likelihood.objective import values_at_once
@@ -36,7 +37,6 @@ _HOPELESS = 0.1
 _LARGEST_SPREAD = 0.5
 _FAR_AHEAD = 6.0
 _LEAST_LEAD = 0.3
-_ALLOWED_GAP = 0.05
 
 
 @np.errstate(all="ignore")  # an impossible point has ln likelihood -inf
@@ -177,7 +177,7 @@ def disagreement(each: Array) -> str:
     if len(each) > 1:
         means = special.logsumexp(each[-2:], axis=1) - np.log(last.size)
         errors = np.exp(each[-2:] - means[:, None]).std(axis=1, ddof=1) / np.sqrt(last.size)
-        gap, limit = abs(float(means[1] - means[0])), _ALLOWED_GAP + 3.0 * float(np.hypot(*errors))
+        gap, limit = abs(float(means[1] - means[0])), largest_gap(*errors)
         if gap > limit:
             return f"two rounds of annealed populations differ by {gap:.2g}, more than {limit:.2g}"
     return ""

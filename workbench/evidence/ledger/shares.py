@@ -14,7 +14,7 @@ import numpy.typing as npt
 
 from workbench.evidence.ledger.chain import Chain, sampling_errors
 from workbench.evidence.ledger.results import Shares, Sum
-from workbench.evidence.results import Comparison
+from workbench.evidence.results import Comparison, largest_gap
 
 Array = npt.NDArray[np.float64]
 Flags = npt.NDArray[np.bool_]
@@ -153,7 +153,7 @@ def _doubt(how: Shares, comparison: Comparison, largest_error: float) -> str:
         )
     if max(error, largest_error) > _LARGEST_ERROR:
         return f"the sampling error of {max(error, largest_error):.2g} is above {_LARGEST_ERROR}"
-    limit = 0.05 + 3.0 * float(np.hypot(error, comparison.ln_bayes_factor_error or 0.0))
+    limit = largest_gap(error, comparison.ln_bayes_factor_error)
     if abs(total - value) > limit:
         return f"the shares add up to {total:.2f}, ln B is {value:.2f}: they differ by more than {limit:.2g}"
     return ""

@@ -31,6 +31,7 @@ from workbench.evidence.prior_choice.verdicts import (
     crossings,
     needed_prior,
 )
+from workbench.evidence.results import largest_gap
 from workbench.hypotheses.analysis import Analysis
 
 Array = npt.NDArray[np.float64]
@@ -162,7 +163,7 @@ def _disagreement(case: Case, by_curve: Average) -> str:
     if by_curve.ln_bayes_factor is None or value is None:
         return ""
     gap = abs(by_curve.ln_bayes_factor - value)
-    limit = 0.05 + 3.0 * float(np.hypot(by_curve.error or 0.0, error or 0.0))
+    limit = largest_gap(by_curve.error, error)
     if gap <= limit:
         return ""
     return f"the average of R over the declared prior and ln B differ by {gap:.2g}, more than {limit:.2g}"
