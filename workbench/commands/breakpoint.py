@@ -6,8 +6,9 @@ import argparse
 import math
 from dataclasses import replace
 
-from workbench.commands.delivery import add_delivery_options, deliver, refuse_unwritable
+from workbench.commands.delivery import add_delivery_options, deliver
 from workbench.commands.inputs import add_histogram_options, add_seed_option, load, refuse_planning
+from workbench.commands.outputs import refuse_undeliverable
 from workbench.commands.parsing import Parser, number, relative_size, whole_number
 from workbench.commands.terminal import Progress
 from workbench.errors import InputError, Problem
@@ -59,11 +60,7 @@ def add_options(parser: Parser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Find the break point and return the exit code: 0, or 1 when there is no established answer."""
-    refuse_unwritable("--output", options.output)
-    if options.picture is not None:
-        from workbench.commands.pictures import refuse_other_kinds
-
-        refuse_other_kinds("--picture", options.picture)
+    refuse_undeliverable(options)
     outcome = _found(options)
     if options.picture is not None:
         from workbench.commands.pictures import save_figure

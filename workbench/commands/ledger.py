@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from workbench.commands.delivery import add_delivery_options, deliver, refuse_unwritable
+from workbench.commands.delivery import add_delivery_options, deliver
 from workbench.commands.inputs import (
     add_histogram_options,
     add_pseudo_experiments_option,
@@ -14,6 +14,7 @@ from workbench.commands.inputs import (
     refuse_planning,
 )
 from workbench.commands.judging import fits_and_adequacies
+from workbench.commands.outputs import refuse_undeliverable
 from workbench.commands.parsing import Parser, one_of, whole_number
 from workbench.commands.terminal import Progress
 from workbench.evidence.ledger.ledger import BY, LEAST_ORDERS, ORDERS, ledger
@@ -57,11 +58,7 @@ def add_options(parser: Parser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Make the ledger and return the exit code: 0, or 1 when something of it is not established."""
-    refuse_unwritable("--output", options.output)
-    if options.picture is not None:
-        from workbench.commands.pictures import refuse_other_kinds
-
-        refuse_other_kinds("--picture", options.picture)
+    refuse_undeliverable(options)
     outcome = _accounted(options)
     if options.picture is not None:
         from workbench.commands.pictures import save_figure

@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from workbench.commands.delivery import add_delivery_options, deliver, refuse_unwritable
+from workbench.commands.delivery import add_delivery_options, deliver
 from workbench.commands.inputs import (
     add_histogram_options,
     add_pseudo_experiments_option,
@@ -13,6 +13,7 @@ from workbench.commands.inputs import (
     load,
     refuse_planning,
 )
+from workbench.commands.outputs import refuse_undeliverable
 from workbench.commands.parsing import Parser, probability_between
 from workbench.commands.terminal import Progress
 from workbench.ensembles.adequacy import adequacy
@@ -46,11 +47,7 @@ def add_options(parser: Parser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Examine the priors and return the exit code: 0, or 1 when the Bayes factor is not established."""
-    refuse_unwritable("--output", options.output)
-    if options.picture is not None:
-        from workbench.commands.pictures import refuse_other_kinds
-
-        refuse_other_kinds("--picture", options.picture)
+    refuse_undeliverable(options)
     outcome = _examined(options)
     if options.picture is not None:
         from workbench.commands.pictures import save_figure

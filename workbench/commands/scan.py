@@ -5,8 +5,9 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from workbench.commands.delivery import add_delivery_options, deliver, refuse_unwritable
+from workbench.commands.delivery import add_delivery_options, deliver
 from workbench.commands.inputs import add_histogram_options, add_seed_option, load, refuse_planning
+from workbench.commands.outputs import refuse_undeliverable
 from workbench.commands.parsing import Parser
 from workbench.commands.terminal import Progress
 from workbench.evidence.updating_ratio import scan
@@ -36,11 +37,7 @@ def add_options(parser: Parser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Scan and return the exit code: 0, or 1 when the updating ratio is not established."""
-    refuse_unwritable("--output", options.output)
-    if options.picture is not None:
-        from workbench.commands.pictures import refuse_other_kinds
-
-        refuse_other_kinds("--picture", options.picture)
+    refuse_undeliverable(options)
     outcome = _scanned(options)
     if options.picture is not None:
         from workbench.commands.pictures import save_scan
